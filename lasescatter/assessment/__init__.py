@@ -1,0 +1,1 @@
+"""One site in, one assessment out."""

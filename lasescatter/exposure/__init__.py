@@ -1,0 +1,1 @@
+"""The light that reaches a place: scattered, from surfaces, direct."""

@@ -1,0 +1,1 @@
+"""Exposure limits: which hazards are due, and the comparison that gives ratios and verdicts."""

@@ -1,0 +1,1 @@
+"""Single particles, air and their averages: cross sections and scattering matrices. No geometry."""

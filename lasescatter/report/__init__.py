@@ -1,0 +1,1 @@
+"""Paper: draws an assessment as PDF, figures and tables. Computes nothing."""
