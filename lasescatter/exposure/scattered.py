@@ -1,0 +1,288 @@
+"""E2: light scattered once out of a beam's legs to observers, for one line of one beam.
+
+Everything is per watt in the beam at its start. First order only; what higher orders add is judged by the
+optical thickness that `thickness.py` gives.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from lasescatter.assumptions import Assumption
+from lasescatter.exposure.legs import Leg, Swing
+from lasescatter.exposure.quadrature import Panels, integrate
+from lasescatter.exposure.sightline import Sightlines, sightlines, silhouette_angles
+from lasescatter.medium.mixture import Mixture
+
+Floats = NDArray[np.float64]
+Integers = NDArray[np.int64]
+
+FIRST_ORDER = Assumption(
+    name="Light is scattered once (first order)",
+    direction="low",
+    size="orders two and up are 2–11 % of the first at optical thickness 0.1, 6–33 % at 0.3, 10–58 % at 0.5; "
+    "above 0.1 the compared value is raised by 1.5 times the thickness, above 0.5 nothing is below its limit",
+    source="multiple-scattering trials for an open bay; not a published figure",
+)
+PENCIL = Assumption(
+    name="Each leg is a pencil without width",
+    direction="low",
+    size="1–9 % at three beam radii from the axis, less in proportion to the square of radius over distance",
+    source="average over the beam's cross-section compared with its axis",
+)
+NO_SHADOWS = Assumption(
+    name="Nothing stands between beam and observer",
+    direction="high",
+    size="up to all of the light from the hidden part of the beam",
+    source="geometry",
+)
+STAYS_THERE = Assumption(
+    name="Scattered light is computed at the observer's stated position",
+    direction="low",
+    size="beside a long beam it grows as 1/b: by b/(b − reach) for a head that moves its reach towards the beam",
+    source="E3",
+)
+SPECKLE = Assumption(
+    name="Speckle and flicker are averaged over",
+    direction="either",
+    size="single bright spots can exceed the mean several times over areas far smaller than a pupil",
+    source="common practice, no source",
+)
+ASSUMPTIONS = (FIRST_ORDER, PENCIL, NO_SHADOWS, STAYS_THERE, SPECKLE)
+
+# First division of each leg's angles, so that the forward peak and the glory are met by panels of their own size.
+_LADDER = np.array([1e-4, 1e-3, 4e-3, 0.015, 0.04, 0.1, 0.2, 0.4, 0.8, 1.2])
+LADDER = np.concatenate([_LADDER, [np.pi / 2], np.pi - _LADDER[::-1]])
+
+# Relative to the unpolarised value of the leg.
+TOLERANCE = 1e-6
+
+# Observers integrated together: bounds the memory of the nodes.
+MOST_OBSERVERS_AT_ONCE = 256
+
+# Load fractions among which the greatest exposure is sought before it is refined.
+FRACTIONS = np.concatenate([np.geomspace(1e-4, 0.05, 24, endpoint=False), np.linspace(0.05, 1.0, 39)])
+
+
+@dataclass(frozen=True)
+class Nodes:
+    """Quadrature nodes of one leg: enough to integrate again for any load fraction. Axis 0: nodes."""
+
+    owner: Integers
+    """Observer."""
+    theta: Floats
+    weight: Floats
+    """Kronrod weight times the half width. [rad]"""
+    emitted: Floats
+    """beta/b without transmittance, per component, (components, nodes). [m⁻² sr⁻¹]"""
+    unpolarised: Floats
+    """The same with F12 left out, summed over components. [m⁻² sr⁻¹]"""
+    tau_steady: Floats
+    """Optical thickness from the beam's start to the observer that the load fraction leaves alone."""
+    tau_load: Floats
+    """The rest of it."""
+    tau_sight: Floats
+    """Share of both that lies between element and observer."""
+    panels: Panels
+
+
+@dataclass(frozen=True)
+class LegLight:
+    """One leg seen by all observers, per watt at the beam's start."""
+
+    leg: Leg
+    swing: Swing
+    sight: Sightlines
+    nodes: Nodes
+    tau_before: Floats
+    """Optical thickness of each component from the beam's start to the leg's start, (components,)."""
+    by_component: Floats
+    """Irradiance at the stated load, (components, observers). [m⁻²]"""
+    unpolarised: Floats
+    """(observers,) [m⁻²]"""
+    error: Floats
+    """Quadrature error, (observers,). [m⁻²]"""
+
+
+def scattered(
+    legs: tuple[Leg, ...],
+    swings: tuple[Swing, ...],
+    mixture: Mixture,
+    points: Floats,
+    least_offsets: Floats,
+    tolerance: float = TOLERANCE,
+) -> tuple[LegLight, ...]:
+    """Irradiance at each observer from each leg, per watt at the beam's start, facing each element (E2).
+
+    Parameters
+    ----------
+    points : ndarray (observers, 3)
+        [m]
+    least_offsets : ndarray (legs, observers)
+        Least distance from the axis that is integrated: the beam's own radius. [m]
+    tolerance : float
+        Relative to the unpolarised value of each leg.
+    """
+    lights = []
+    tau_before = np.zeros(len(mixture.components))
+    for leg, swing, least in zip(legs, swings, least_offsets, strict=True):
+        lights.append(_leg_light(leg, swing, mixture, points, least, tau_before, tolerance))
+        if np.isfinite(leg.length):
+            tau_before = tau_before + mixture.thicknesses(leg.origin, leg.origin + leg.length * leg.direction)
+    return tuple(lights)
+
+
+def _leg_light(
+    leg: Leg, swing: Swing, mixture: Mixture, points: Floats, least: Floats, tau_before: Floats, tolerance: float
+) -> LegLight:
+    sight = sightlines(leg, points, least)
+    parts = []
+    for start in range(0, len(points), MOST_OBSERVERS_AT_ONCE):
+        chosen = slice(start, start + MOST_OBSERVERS_AT_ONCE)
+        some = sightlines(leg, points[chosen], least[chosen])
+        parts.append(_nodes(leg, swing, mixture, some, points[chosen], tau_before, tolerance, start))
+    nodes = _joined(parts)
+    count = len(points)
+    passed = np.exp(-nodes.tau_steady - nodes.tau_load) * nodes.weight
+    by_component = np.stack([np.bincount(nodes.owner, row * passed, count) for row in nodes.emitted])
+    panels = nodes.panels
+    return LegLight(
+        leg=leg,
+        swing=swing,
+        sight=sight,
+        nodes=nodes,
+        tau_before=tau_before,
+        by_component=by_component,
+        unpolarised=np.bincount(nodes.owner, nodes.unpolarised * passed, count),
+        error=np.bincount(panels.owner, panels.errors(), count),
+    )
+
+
+def breaks_of(leg: Leg, sight: Sightlines, mixture: Mixture) -> Floats:
+    """Angles at which panels break, sorted, (observers, breaks): faces, edges and the ladder, within the leg."""
+    columns = [sight.theta1, sight.theta2]
+    for component in mixture.components:
+        span = component.profile.span(leg.origin, leg.direction, leg.length)
+        if span is not None:
+            columns.extend(sight.angle_at(s) for s in span if np.isfinite(s))
+        starts, ends = component.profile.edges()
+        if len(starts):
+            columns.extend(silhouette_angles(leg, sight, starts, ends).T)
+    columns.extend(np.full_like(sight.b, angle) for angle in LADDER)
+    stacked = np.stack(columns, axis=1)
+    stacked = np.where(np.isnan(stacked), sight.theta1[:, None], stacked)
+    return np.sort(np.clip(stacked, sight.theta1[:, None], sight.theta2[:, None]), axis=1)
+
+
+def _nodes(
+    leg: Leg,
+    swing: Swing,
+    mixture: Mixture,
+    sight: Sightlines,
+    points: Floats,
+    tau_before: Floats,
+    tolerance: float,
+    first_owner: int,
+) -> Nodes:
+    def integrand(owner: Integers, theta: Floats) -> tuple[Floats, Floats]:
+        emitted, plain, tau, _ = elements(leg, swing, mixture, sight, points, tau_before, owner[:, None], theta)
+        passed = np.exp(-tau.sum(axis=0))
+        return emitted.sum(axis=0) * passed, plain * passed
+
+    panels = integrate(integrand, breaks_of(leg, sight, mixture), tolerance)
+    emitted, plain, tau, tau_sight = elements(
+        leg, swing, mixture, sight, points, tau_before, panels.owner[:, None], panels.nodes
+    )
+    steady = mixture.steady
+    components = len(mixture.components)
+    owner = panels.owner + first_owner
+    return Nodes(
+        owner=np.repeat(owner, 15),
+        theta=panels.nodes.ravel(),
+        weight=panels.weights.ravel(),
+        emitted=emitted.reshape(components, -1),
+        unpolarised=plain.ravel(),
+        tau_steady=tau[steady].sum(axis=0).ravel(),
+        tau_load=tau[~steady].sum(axis=0).ravel(),
+        tau_sight=tau_sight.sum(axis=0).ravel(),
+        panels=Panels(owner, panels.low, panels.high, panels.nodes, panels.weights, panels.values),
+    )
+
+
+def elements(
+    leg: Leg,
+    swing: Swing,
+    mixture: Mixture,
+    sight: Sightlines,
+    points: Floats,
+    tau_before: Floats,
+    owner: Integers,
+    theta: Floats,
+) -> tuple[Floats, Floats, Floats, Floats]:
+    """The integrand of E2 in its parts, at angles `theta` for observers `owner` (broadcast together).
+
+    Returns
+    -------
+    emitted : ndarray (components, ...)
+        beta/b, polarization included, mirrors taken off; no transmittance. [m⁻² sr⁻¹]
+    plain : ndarray (...)
+        The same without F12, summed over components.
+    tau : ndarray (components, ...)
+        Optical thickness from the beam's start to the element to the observer.
+    tau_sight : ndarray (components, ...)
+        Its part between element and observer.
+    """
+    b = sight.b[owner]
+    s = sight.s0[owner] - b * np.cos(theta) / np.sin(theta)
+    s = np.clip(s, 0.0, leg.length)
+    places = leg.origin + s[..., None] * leg.direction
+    density = mixture.densities(places) * (leg.reflected / (4 * np.pi) / b)
+    tau_sight = mixture.thicknesses(places, points[owner])
+    tau = tau_before.reshape((-1,) + (1,) * s.ndim) + mixture.thicknesses(leg.origin, places) + tau_sight
+    emitted = np.empty_like(density)
+    plain = np.zeros_like(s)
+    turn = _double_cosine(swing, sight)[owner]
+    for i, component in enumerate(mixture.components):
+        f11, f12 = component.matrix.at(theta)
+        polarised = np.abs(f12) if swing.worst else swing.q * turn * f12
+        emitted[i] = density[i] * (f11 + polarised)
+        plain += density[i] * f11
+    return emitted, plain, tau, tau_sight
+
+
+def azimuths(swing: Swing, sight: Sightlines) -> Floats | None:
+    """phi of E5, from the field axis to the scattering plane [rad], (observers,); None without a known axis."""
+    if swing.axis is None:
+        return None
+    return np.arccos(np.clip(sight.outward @ np.asarray(swing.axis), -1.0, 1.0))
+
+
+def _double_cosine(swing: Swing, sight: Sightlines) -> Floats:
+    if swing.axis is None:
+        return np.zeros_like(sight.b)
+    return 2 * np.square(sight.outward @ np.asarray(swing.axis)) - 1
+
+
+def _joined(parts: list[Nodes]) -> Nodes:
+    panels = [part.panels for part in parts]
+    return Nodes(
+        owner=np.concatenate([part.owner for part in parts]),
+        theta=np.concatenate([part.theta for part in parts]),
+        weight=np.concatenate([part.weight for part in parts]),
+        emitted=np.concatenate([part.emitted for part in parts], axis=1),
+        unpolarised=np.concatenate([part.unpolarised for part in parts]),
+        tau_steady=np.concatenate([part.tau_steady for part in parts]),
+        tau_load=np.concatenate([part.tau_load for part in parts]),
+        tau_sight=np.concatenate([part.tau_sight for part in parts]),
+        panels=Panels(
+            owner=np.concatenate([p.owner for p in panels]),
+            low=np.concatenate([p.low for p in panels]),
+            high=np.concatenate([p.high for p in panels]),
+            nodes=np.concatenate([p.nodes for p in panels]),
+            weights=np.concatenate([p.weights for p in panels]),
+            values=np.concatenate([p.values for p in panels]),
+        ),
+    )

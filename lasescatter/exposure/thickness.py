@@ -1,0 +1,80 @@
+"""How thick the medium is where it matters: the optical thickness that tells where single scattering stops."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from lasescatter.exposure.scattered import LegLight
+from lasescatter.medium.mixture import Mixture
+
+Floats = NDArray[np.float64]
+
+# Of a leg without end, the part that sends this share of its light to the observer counts.
+COUNTED_SHARE = 0.99
+
+SINGLE_SCATTERING_UP_TO = 0.1
+NOTHING_BELOW_ABOVE = 0.5
+HIGHER_ORDERS_PER_THICKNESS = 1.5
+
+
+def optical_thickness(lights: tuple[LegLight, ...], mixture: Mixture, points: Floats) -> Floats:
+    """Largest extinction optical thickness that an observer's scattered light meets, (observers,).
+
+    The largest of: along the beam; along any sight line to it; and across the load by its shortest dimension,
+    or by twice the distance from observer to the farthest part of the beam where that is shorter.
+
+    Parameters
+    ----------
+    points : ndarray (observers, 3)
+        [m]
+    """
+    count = len(points)
+    along = np.zeros(count)
+    sight = np.zeros(count)
+    farthest = np.zeros(count)
+    crossed = np.zeros(len(mixture.components), dtype=bool)
+    for light in lights:
+        leg = light.leg
+        if np.isinf(leg.length):
+            end = _counted_end(light, count)
+        else:
+            end = np.full(count, leg.length)
+        tip = leg.origin + end[:, None] * leg.direction
+        along = np.maximum(along, light.tau_before.sum() + mixture.thicknesses(leg.origin, tip).sum(axis=0))
+        for place in (np.broadcast_to(leg.origin, points.shape), tip):
+            sight = np.maximum(sight, mixture.thicknesses(place, points).sum(axis=0))
+            farthest = np.maximum(farthest, np.linalg.norm(place - points, axis=-1))
+        nodes = light.nodes
+        counted = nodes.theta <= light.sight.angle_at(end)[nodes.owner]
+        np.maximum.at(sight, nodes.owner[counted], nodes.tau_sight[counted])
+        crossed |= np.array(
+            [c.profile.span(leg.origin, leg.direction, leg.length) is not None for c in mixture.components]
+        )
+    across = np.zeros(count)
+    for component, meets in zip(mixture.components, crossed, strict=True):
+        if meets:
+            across += component.extinction * np.minimum(component.profile.shortest_dimension(), 2 * farthest)
+    return np.maximum.reduce([along, sight, across])
+
+
+def _counted_end(light: LegLight, count: int) -> Floats:
+    """Distance along an endless leg up to which COUNTED_SHARE of its light comes, (observers,). [m]"""
+    nodes = light.nodes
+    passed = nodes.weight * nodes.emitted.sum(axis=0) * np.exp(-nodes.tau_steady - nodes.tau_load)
+    order = np.lexsort((nodes.theta, nodes.owner))
+    owner, theta, passed = nodes.owner[order], nodes.theta[order], passed[order]
+    running = np.cumsum(passed)
+    totals = np.bincount(owner, passed, count)
+    before = np.concatenate([[0.0], np.cumsum(totals)[:-1]])
+    reached = (running - before[owner]) >= COUNTED_SHARE * totals[owner]
+    last = np.full(count, np.pi)
+    np.minimum.at(last, owner[reached], theta[reached])
+    ends = light.sight.s0 - light.sight.b / np.tan(np.minimum(last, np.pi - 1e-12))
+    return np.asarray(np.maximum(ends, 0.0))
+
+
+def allowance(tau: Floats | float) -> Floats:
+    """Factor on the first order for the orders that are not computed: 1 up to tau 0.1, then 1 + 1.5 tau."""
+    tau = np.asarray(tau, dtype=float)
+    return np.where(tau > SINGLE_SCATTERING_UP_TO, 1 + HIGHER_ORDERS_PER_THICKNESS * tau, 1.0)

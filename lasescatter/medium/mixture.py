@@ -1,0 +1,48 @@
+"""The medium at one wavelength: a sum of components, each with optics and a shape in space."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from lasescatter.medium.profiles import Profile
+from lasescatter.optics.matrix import ScatteringMatrix
+
+Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Component:
+    """One scatterer of the medium at one wavelength."""
+
+    name: str
+    extinction: float
+    """Where the profile is 1. [m⁻¹]"""
+    scattering: float
+    """[m⁻¹]"""
+    matrix: ScatteringMatrix
+    profile: Profile
+    steady: bool
+    """True for air and for loads that somebody vouches for: the load fraction does not act on it."""
+
+
+@dataclass(frozen=True)
+class Mixture:
+    """All components at one wavelength."""
+
+    components: tuple[Component, ...]
+
+    @property
+    def steady(self) -> NDArray[np.bool_]:
+        """Which components the load fraction leaves alone, shape (components,)."""
+        return np.array([component.steady for component in self.components])
+
+    def thicknesses(self, start: Floats, end: Floats) -> Floats:
+        """Optical thickness of each component along segments (..., 3) to (..., 3), shape (components, ...)."""
+        return np.stack([c.extinction * c.profile.column(start, end) for c in self.components])
+
+    def densities(self, points: Floats) -> Floats:
+        """Scattering coefficient of each component at points (..., 3) [m⁻¹], shape (components, ...)."""
+        return np.stack([c.scattering * c.profile.value(points) for c in self.components])
