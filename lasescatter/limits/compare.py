@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
-from lasescatter.limits.verdict import Verdict
-from lasescatter.scene import Hazard, Mechanism, Quantity, Tissue
+from lasescatter.limits.hazards import hazard_of, within
+from lasescatter.limits.verdict import ABOVE, BELOW, NOT_ESTABLISHED, Verdict
+from lasescatter.scene import QUANTITY_UNITS, Hazard, Limit, Line, Mechanism, Quantity, Tissue
 
 
 @dataclass(frozen=True)
@@ -60,3 +62,150 @@ class HazardJudgement:
     """Per beam line: line, governing limit, ratio."""
     not_judged: str
     """The user's reason where the hazard was left out on purpose, else ""."""
+
+
+@dataclass(frozen=True)
+class Received:
+    """What a limit's detector takes in of one line, per watt in the beam: irradiance [m⁻²] or radiance [m⁻² sr⁻¹]."""
+
+    by_origin: tuple[tuple[str, float], ...]
+    low: float
+    """Lower bound of the sum."""
+    high: float
+    """Upper bound of the sum."""
+    window: tuple[tuple[str, float], ...] | None = None
+    note: str = ""
+
+    @property
+    def total(self) -> float:
+        """Sum over the origins."""
+        return sum(value for _, value in self.by_origin)
+
+
+def covers_time(limit: Limit, time: float) -> bool:
+    """Whether a limit's durations hold a time, ends included."""
+    return limit.durations[0] * (1 - 1e-9) <= time <= limit.durations[1] * (1 + 1e-9)
+
+
+def pulses_within(line: Line, time: float) -> int:
+    """Pulses of a line that can fall within a time, at least one; 0 for continuous light."""
+    if line.pulses is None:
+        return 0
+    if line.pulses.rate is None:
+        return line.pulses.count or 1
+    return max(1, math.ceil(line.pulses.rate * time * (1 - 1e-12)))
+
+
+def compare(
+    limit: Limit, beam: str, line: Line, received: Received, duration: float, time: float
+) -> Comparison | str | None:
+    """One line against one limit.
+
+    Parameters
+    ----------
+    duration : float
+        Longest single exposure, for the record. [s]
+    time : float
+        Exposure time that counts for this hazard. [s]
+
+    Returns
+    -------
+    Comparison, or a sentence that says why the limit cannot be applied, or None where it does not concern the case.
+
+    Notes
+    -----
+    The ratio for a time T is the largest over all times up to T that the limit covers: it never falls with time.
+    Exposure and limit are both powers of time, so the largest is at one end.
+    """
+    if not within(line.wavelength, limit.wavelengths):
+        return None
+    if limit.per == "pulse":
+        return _per_pulse(limit, beam, line, received, duration, time)
+    if limit.durations[0] > time * (1 + 1e-9):
+        return None
+    longest = min(time, limit.durations[1])
+    cases = [(_exposure(limit, line, t), t) for t in {limit.durations[0], longest}]
+    amount, at = max(cases, key=lambda case: case[0] / (limit.value * case[1] ** limit.time_exponent))
+    note = received.note
+    if not covers_time(limit, time):
+        note = _joined(note, f"covers times up to {limit.durations[1]:g} s; the ratio never falls with time")
+    pulses = pulses_within(line, at) or None
+    return _made(limit, beam, line, received, duration, at, amount, limit.value * at**limit.time_exponent, pulses, note)
+
+
+def _exposure(limit: Limit, line: Line, time: float) -> float:
+    """Factor from a per-watt value to the exposure of a limit over a time: W, or J for a dose."""
+    dose = limit.quantity in ("radiant exposure", "radiance dose")
+    if line.pulses is None:
+        return line.power * time if dose else line.power
+    energy = line.pulses.energy * pulses_within(line, time)
+    return energy if dose else energy / time
+
+
+def _per_pulse(
+    limit: Limit, beam: str, line: Line, received: Received, duration: float, time: float
+) -> Comparison | str | None:
+    if line.pulses is None:
+        return None
+    width = line.pulses.duration
+    if not covers_time(limit, width):
+        return None
+    count = pulses_within(line, time)
+    if count > 1 and limit.train is None:
+        return f'limit "{limit.name}" does not say how a train of {count} pulses is judged (train is left out)'
+    factor = count**-0.25 if limit.train == "N^-1/4" else 1.0
+    dose = limit.quantity in ("radiant exposure", "radiance dose")
+    amount = line.pulses.energy if dose else line.pulses.energy / width
+    value = limit.value * width**limit.time_exponent * factor
+    note = _joined(received.note, f"per pulse, train factor {factor:.3g} for {count} pulses")
+    return _made(limit, beam, line, received, duration, width, amount, value, count, note)
+
+
+def _made(
+    limit: Limit,
+    beam: str,
+    line: Line,
+    received: Received,
+    duration: float,
+    time: float,
+    amount: float,
+    value: float,
+    pulses: int | None,
+    note: str,
+) -> Comparison:
+    exposure = amount * received.total
+    ratio, low, high = (amount * part / value for part in (received.total, received.low, received.high))
+    return Comparison(
+        limit=limit.name,
+        beam=beam,
+        line=line.name,
+        hazard=hazard_of(limit),
+        tissue=limit.tissue,
+        mechanism=limit.mechanism,
+        quantity=limit.quantity,
+        unit=QUANTITY_UNITS[limit.quantity],
+        duration=duration,
+        time=time,
+        exposure=exposure,
+        limit_value=value,
+        ratio=ratio,
+        ratio_low=low,
+        ratio_high=high,
+        optical_density=math.log10(ratio) if ratio > 1 else 0.0,
+        by_origin=tuple((origin, amount * part) for origin, part in received.by_origin),
+        window=received.window,
+        pulses=pulses,
+        verdict=verdict_of(low, high),
+        note=note,
+    )
+
+
+def verdict_of(low: float, high: float) -> Verdict:
+    """Verdict from the bounds of a ratio: below needs the upper bound at most 1, above the lower bound over 1."""
+    if low > 1:
+        return ABOVE
+    return BELOW if high <= 1 else NOT_ESTABLISHED
+
+
+def _joined(*notes: str) -> str:
+    return "; ".join(note for note in notes if note)

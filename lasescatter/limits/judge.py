@@ -1,0 +1,225 @@
+"""One observer's verdict: every hazard that is due, the ratios of all beams added, and what stands in the way."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+from lasescatter.limits.compare import Comparison, HazardJudgement, Received, compare, covers_time, verdict_of
+from lasescatter.limits.hazards import (
+    AVERSION_TIME,
+    SHORTEST_PULSE,
+    VISIBLE,
+    dose_time,
+    hazard_of,
+    hazards_due,
+    within,
+)
+from lasescatter.limits.verdict import ABOVE, NOT_ESTABLISHED, Verdict, worst
+from lasescatter.scene import Beam, Hazard, Limit, Line, Observer
+
+HAZARDS: tuple[Hazard, ...] = ("retina thermal", "retina photochemical", "cornea and lens", "skin")
+
+# Gives what a limit's detector takes in of a line, or why that cannot be told.
+ReceivedBy = Callable[[Line, Limit], Received | str]
+
+
+@dataclass(frozen=True)
+class Judgement:
+    """Result of judging one observer."""
+
+    verdict: Verdict
+    ratio: float | None
+    governing: str
+    reasons: tuple[str, ...]
+    comparisons: tuple[Comparison, ...]
+    hazards: tuple[HazardJudgement, ...]
+
+
+def judge(
+    observer: Observer,
+    beams: tuple[Beam, ...],
+    limits: tuple[Limit, ...],
+    received_by: ReceivedBy,
+    not_judged: tuple[tuple[Hazard, str], ...],
+    gates: tuple[str, ...],
+) -> Judgement:
+    """Judge every hazard that is due for one observer.
+
+    Parameters
+    ----------
+    gates : tuple of str
+        Reasons outside the limits for which nothing may be called below: direct light within reach and the like.
+    """
+    left_out = dict(not_judged)
+    comparisons: list[Comparison] = []
+    judged: dict[Hazard, list[HazardJudgement]] = {}
+    for duration in observer.durations:
+        made, due, missing = _over_lines(observer, beams, limits, received_by, duration)
+        comparisons.extend(made)
+        for hazard in HAZARDS:
+            if hazard in left_out or (hazard not in due and not any(c.hazard == hazard for c in made)):
+                continue
+            judged.setdefault(hazard, []).append(_hazard(hazard, made, missing.get(hazard, ())))
+    hazards = [_worst_duration(found) for found in judged.values()]
+    hazards += [
+        HazardJudgement(hazard, None, None, None, NOT_ESTABLISHED, (), (), reason)
+        for hazard, reason in not_judged
+        if any(
+            hazard in hazards_due(line, t, observer.daily)
+            for b in beams
+            for line in b.lines
+            for t in observer.durations
+        )
+    ]
+    counted = [hazard for hazard in hazards if not hazard.not_judged]
+    compared = [hazard for hazard in counted if hazard.ratio is not None]
+    top = max(compared, key=lambda hazard: hazard.ratio or 0.0, default=None)
+    verdict = worst([hazard.verdict for hazard in counted])
+    if gates and verdict != ABOVE:
+        verdict = NOT_ESTABLISHED
+    reasons = gates + tuple(reason for hazard in counted for reason in hazard.reasons)
+    if not counted:
+        reasons += ("every hazard that is due is listed as not judged",)
+    return Judgement(
+        verdict=verdict,
+        ratio=top.ratio if top else None,
+        governing=_governing(top),
+        reasons=tuple(dict.fromkeys(reasons)),
+        comparisons=tuple(comparisons),
+        hazards=tuple(hazards),
+    )
+
+
+def _over_lines(
+    observer: Observer, beams: tuple[Beam, ...], limits: tuple[Limit, ...], received_by: ReceivedBy, duration: float
+) -> tuple[list[Comparison], set[Hazard], dict[Hazard, tuple[str, ...]]]:
+    """Comparisons of one duration, the hazards due, and per hazard what keeps it from being established."""
+    made: list[Comparison] = []
+    due: set[Hazard] = set()
+    missing: dict[Hazard, tuple[str, ...]] = {}
+    for beam in beams:
+        for line in beam.lines:
+            line_due = hazards_due(line, duration, observer.daily)
+            due.update(line_due)
+            for hazard in HAZARDS:
+                time = dose_time(hazard, line, duration, observer.daily)
+                found, faults = _against(beam, line, hazard, limits, received_by, duration, time)
+                made.extend(found)
+                if hazard in line_due:
+                    faults += _uncovered(line, hazard, limits, time)
+                    faults += _time_faults(line, hazard, duration)
+                if faults and (hazard in line_due or found):
+                    missing[hazard] = missing.get(hazard, ()) + tuple(f"{hazard}: {fault}" for fault in faults)
+    return made, due, missing
+
+
+def _against(
+    beam: Beam,
+    line: Line,
+    hazard: Hazard,
+    limits: tuple[Limit, ...],
+    received_by: ReceivedBy,
+    duration: float,
+    time: float,
+) -> tuple[list[Comparison], list[str]]:
+    made, faults = [], []
+    for limit in limits:
+        if hazard_of(limit) != hazard or not within(line.wavelength, limit.wavelengths):
+            continue
+        received = received_by(line, limit)
+        if isinstance(received, str):
+            faults.append(f'limit "{limit.name}": {received}')
+            continue
+        result = compare(limit, beam.name, line, received, duration, time)
+        if isinstance(result, str):
+            faults.append(result)
+        elif result is not None:
+            made.append(result)
+    return made, faults
+
+
+def _uncovered(line: Line, hazard: Hazard, limits: tuple[Limit, ...], time: float) -> list[str]:
+    """What no limit covers: the wavelength, the time, or a pulsed line's pulse or exposure."""
+    here = [limit for limit in limits if hazard_of(limit) == hazard and within(line.wavelength, limit.wavelengths)]
+    name = f"{line.wavelength * 1e9:g} nm"
+    if not here:
+        return [f"no limit covers {name}"]
+    faults = []
+    if not any(limit.per == "exposure" and covers_time(limit, time) for limit in here):
+        faults.append(f"no limit over the exposure covers {name} for {time:g} s")
+    # A photochemical limit is a dose: pulses add up in it and none has a limit of its own.
+    if (
+        line.pulses is not None
+        and hazard != "retina photochemical"
+        and not any(limit.per == "pulse" and covers_time(limit, line.pulses.duration) for limit in here)
+    ):
+        faults.append(f"no limit per pulse covers {name} for a pulse of {line.pulses.duration:g} s")
+    return faults
+
+
+def _time_faults(line: Line, hazard: Hazard, duration: float) -> list[str]:
+    faults = []
+    if line.pulses is not None and line.pulses.duration < SHORTEST_PULSE:
+        faults.append(f'pulses of "{line.name}" are shorter than 100 fs, where no limit is published')
+    if hazard != "skin" and duration <= AVERSION_TIME and not within(line.wavelength, VISIBLE):
+        faults.append(
+            f"0.25 s counts for 400–700 nm only, and {line.wavelength * 1e9:g} nm does not make anybody look away"
+        )
+    return faults
+
+
+def _hazard(hazard: Hazard, made: list[Comparison], missing: tuple[str, ...]) -> HazardJudgement:
+    """Per line the limit with the largest ratio; then the lines are added."""
+    governing: dict[tuple[str, str], Comparison] = {}
+    for comparison in made:
+        if comparison.hazard != hazard:
+            continue
+        key = (comparison.beam, comparison.line)
+        if key not in governing or comparison.ratio > governing[key].ratio:
+            governing[key] = comparison
+    bounds = {
+        key: (
+            max(c.ratio_low for c in made if c.hazard == hazard and (c.beam, c.line) == key),
+            max(c.ratio_high for c in made if c.hazard == hazard and (c.beam, c.line) == key),
+        )
+        for key in governing
+    }
+    parts = tuple((line, c.limit, c.ratio) for (_, line), c in governing.items())
+    if not parts:
+        return HazardJudgement(hazard, None, None, None, NOT_ESTABLISHED, missing, (), "")
+    ratio = sum(part[2] for part in parts)
+    low, high = (sum(bound[i] for bound in bounds.values()) for i in (0, 1))
+    verdict = verdict_of(low, high)
+    reasons = missing
+    if verdict == NOT_ESTABLISHED:
+        reasons += (f"{hazard}: the bounds {low:.3g} and {high:.3g} of the limit lie on both sides of it",)
+    elif verdict != ABOVE and missing:
+        verdict = NOT_ESTABLISHED
+    return HazardJudgement(hazard, ratio, low, high, verdict, reasons, parts, "")
+
+
+def _worst_duration(found: list[HazardJudgement]) -> HazardJudgement:
+    """Of several durations the one with the worst verdict, then the largest ratio; reasons of all are kept."""
+    verdict = worst([hazard.verdict for hazard in found])
+    chosen = max((h for h in found if h.verdict == verdict), key=lambda h: -1.0 if h.ratio is None else h.ratio)
+    reasons = tuple(dict.fromkeys(reason for hazard in found for reason in hazard.reasons))
+    ratios = [h.ratio for h in found if h.ratio is not None]
+    return HazardJudgement(
+        chosen.hazard,
+        max(ratios, default=None),
+        chosen.ratio_low,
+        chosen.ratio_high,
+        verdict,
+        reasons,
+        chosen.parts,
+        "",
+    )
+
+
+def _governing(top: HazardJudgement | None) -> str:
+    if top is None or not top.parts:
+        return ""
+    line, limit, _ = max(top.parts, key=lambda part: part[2])
+    others = f" and {len(top.parts) - 1} more" if len(top.parts) > 1 else ""
+    return f'{top.hazard}, limit "{limit}", {line}{others}'
