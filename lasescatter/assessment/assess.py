@@ -1,0 +1,265 @@
+"""The main job: a scene in, one `Assessment` out."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+from datetime import UTC, datetime
+
+import numpy as np
+from numpy.typing import NDArray
+
+import lasescatter
+from lasescatter.assessment.components import DRY_AIR, SIZE_AVERAGE, SiteOptics
+from lasescatter.assessment.field import LineField, line_field
+from lasescatter.assessment.handcheck import hand_checks
+from lasescatter.assessment.in_the_beam import in_the_beam, nearest_element
+from lasescatter.assessment.outcome import (
+    Assessment,
+    ComponentSummary,
+    HandCheck,
+    LineExposure,
+    ObserverOutcome,
+    Provenance,
+)
+from lasescatter.assumptions import Assumption, merged
+from lasescatter.exposure import direct as direct_light
+from lasescatter.exposure import legs as paths
+from lasescatter.exposure import line as bright
+from lasescatter.exposure import scattered as first_order
+from lasescatter.exposure import surfaces
+from lasescatter.exposure.direct import clearance
+from lasescatter.exposure.thickness import NOTHING_BELOW_ABOVE
+from lasescatter.limits.compare import Received
+from lasescatter.limits.hazards import full_field, hazard_of
+from lasescatter.limits.judge import Judgement, judge
+from lasescatter.limits.verdict import worst
+from lasescatter.medium import load as loads
+from lasescatter.report.cautions import cautions
+from lasescatter.scene import Limit, Line, Observer, Scene
+
+Floats = NDArray[np.float64]
+
+# Beam radii (1/e² or edge) within which an observer counts as reached by direct light.
+REACHED_WITHIN_RADII = 3.0
+# Half of this is added where no limit states an aperture: the dilated pupil. [m]
+PUPIL = 7e-3
+# Above this full angle a beam is no pencil for this program. [rad]
+WIDEST_DIVERGENCE = 10e-3
+
+PULSES_UNSTRETCHED = Assumption(
+    name="Scattered pulses keep the beam's pulse duration",
+    direction="high",
+    size="by the spread of path lengths over the speed of light: a pulse of nanoseconds is stretched several times in a room",
+    source="geometry",
+)
+
+
+def assess(
+    scene: Scene, made_at: datetime | None = None, progress: Callable[[str], None] = lambda step: None
+) -> Assessment:
+    """Assess a scene.
+
+    Parameters
+    ----------
+    made_at : datetime with zone, optional
+        Time stamp of the record; now if left out.
+    progress : callable
+        Told the name of each step as it begins.
+
+    Raises
+    ------
+    SiteError
+        If a value of the scene is outside the data or the range that the physics is made for.
+    """
+    points = np.array([observer.position for observer in scene.observers], dtype=float)
+    optics = SiteOptics(scene)
+    fields: dict[str, LineField] = {}
+    summaries: dict[float, tuple[ComponentSummary, ...]] = {}
+    for beam in scene.beams:
+        for line in beam.lines:
+            progress(f"particles at {line.wavelength * 1e9:g} nm")
+            mixture = optics.mixture(line.wavelength)
+            summaries.setdefault(line.wavelength, optics.summaries(line.wavelength, mixture))
+            progress(f'light of "{line.name}"')
+            fields[line.key] = line_field(beam, line, mixture, points)
+    progress("judgement")
+    powers = {key: _powers(scene.observers, field.line) for key, field in fields.items()}
+    checks = {key: hand_checks(field, powers[key]) for key, field in fields.items()}
+    walls = np.concatenate([points, *[np.array(beam.points) for beam in scene.beams]])
+    observers = tuple(
+        _observer(scene, i, fields, powers, [row for rows in checks.values() for row in rows[i]], walls)
+        for i in range(len(scene.observers))
+    )
+    return Assessment(
+        scene=scene,
+        verdict=worst([observer.verdict for observer in observers]),
+        components=tuple(summary for group in summaries.values() for summary in group),
+        in_the_beam=in_the_beam(scene),
+        observers=observers,
+        assumptions=_assumptions(scene, len(summaries)),
+        cautions=cautions(),
+        provenance=_provenance(made_at),
+    )
+
+
+def _observer(
+    scene: Scene,
+    index: int,
+    fields: dict[str, LineField],
+    powers: dict[str, Floats],
+    checks: list[HandCheck],
+    walls: Floats,
+) -> ObserverOutcome:
+    observer = scene.observers[index]
+    point = np.asarray(observer.position, dtype=float)
+    reached = _direct_within_reach(scene, fields, index)
+    judgement = _judged(scene, observer, index, fields, walls, reached)
+    nearest, beam_name = min(
+        (float(np.linalg.norm(point - leg.origin - along * leg.direction)), beam.name)
+        for beam in scene.beams
+        for leg, along in [nearest_element(paths.legs_of(beam), point)]
+    )
+    return ObserverOutcome(
+        name=observer.name,
+        key=observer.key,
+        position=observer.position,
+        verdict=judgement.verdict,
+        reasons=judgement.reasons,
+        ratio=judgement.ratio,
+        governing=judgement.governing,
+        nearest=nearest,
+        nearest_beam=beam_name,
+        optical_thickness=max(float(field.thickness[index]) for field in fields.values()),
+        direct_reach=reached[0][0] if reached else "",
+        lines=tuple(_line_exposure(field, index, float(powers[key][index])) for key, field in fields.items()),
+        hand_checks=tuple(checks),
+        comparisons=judgement.comparisons,
+        hazards=judgement.hazards,
+    )
+
+
+def _judged(
+    scene: Scene,
+    observer: Observer,
+    index: int,
+    fields: dict[str, LineField],
+    walls: Floats,
+    reached: list[tuple[str, str]],
+) -> Judgement:
+    def received_by(line: Line, limit: Limit) -> Received | str:
+        return fields[line.key].received(index, limit, walls)
+
+    gates = tuple(sentence for _, sentence in reached) + _gates(fields, index)
+    return judge(observer, scene.beams, scene.limits, received_by, scene.not_judged, gates)
+
+
+def _direct_within_reach(scene: Scene, fields: dict[str, LineField], index: int) -> list[tuple[str, str]]:
+    """Beams whose direct light comes nearer than the reach, or than three radii and half an aperture."""
+    observer = scene.observers[index]
+    aperture = max([limit.aperture for limit in scene.limits], default=PUPIL)
+    found: dict[str, str] = {}
+    for field in fields.values():
+        for leg in field.legs:
+            point = field.points[index : index + 1]
+            s0 = float(np.clip((point[0] - leg.origin) @ leg.direction, 0.0, leg.length))
+            distance = float(np.linalg.norm(point[0] - leg.origin - s0 * leg.direction))
+            cone = float(clearance(leg, field.line, point, REACHED_WITHIN_RADII, aperture)[0])
+            if (distance < observer.reach or cone < 0) and field.beam.name not in found:
+                found[field.beam.name] = (
+                    f'direct light of "{field.beam.name}" is within reach: the axis of leg {leg.number} passes '
+                    f"at {distance:.3g} m"
+                )
+    return list(found.items())
+
+
+def _gates(fields: dict[str, LineField], index: int) -> tuple[str, ...]:
+    """Reasons outside the limits for which nothing may be called below."""
+    gates = []
+    for field in fields.values():
+        tau = float(field.thickness[index])
+        if tau > NOTHING_BELOW_ABOVE:
+            gates.append(
+                f"the load is too thick for single scattering at {field.line.wavelength * 1e9:g} nm: optical "
+                f"thickness {tau:.2g}, above {NOTHING_BELOW_ABOVE:g}"
+            )
+        if field.line.divergence > WIDEST_DIVERGENCE:
+            gates.append(
+                f'"{field.line.name}" diverges by {field.line.divergence * 1e3:.3g} mrad: above 10 mrad the average over '
+                "its rays is not computed"
+            )
+        if field.spot is not None and field.stop_compared[index] > 0:
+            r = float(np.linalg.norm(field.points[index] - field.spot))
+            if r < surfaces.LEAST_SPOT_DISTANCES * field.spot_radius:
+                gates.append(f'the spot on the stop of "{field.beam.name}" is nearer than ten of its radii ({r:.3g} m)')
+    return tuple(dict.fromkeys(gates))
+
+
+def _powers(observers: tuple[Observer, ...], line: Line) -> Floats:
+    """Mean power for each observer: counted pulses are averaged over the longest single exposure. [W]"""
+    if line.pulses is None or line.pulses.rate is not None:
+        return np.full(len(observers), line.power)
+    energy = line.pulses.energy * (line.pulses.count or 1)
+    return np.array([energy / max(observer.durations) for observer in observers])
+
+
+def _line_exposure(field: LineField, index: int, power: float) -> LineExposure:
+    line = field.line
+    scattered, diffuse = float(field.scattered[index]), float(field.stop_stated[index])
+    compared, diffuse_compared = float(field.greatest.irradiance[index]), float(field.stop_compared[index])
+    direct = float(field.direct[index])
+    energy = None if line.pulses is None else line.pulses.energy
+    return LineExposure(
+        beam=field.beam.name,
+        line=line.name,
+        wavelength=line.wavelength,
+        scattered=power * scattered,
+        scattered_error=power * float(field.error[index]),
+        scattered_unpolarised=power * float(field.unpolarised[index]),
+        scattered_compared=power * compared,
+        load_fraction=float(field.greatest.fraction[index]),
+        diffuse=power * diffuse,
+        diffuse_compared=power * diffuse_compared,
+        direct=power * direct,
+        pulse_rate=None if line.pulses is None else line.pulses.rate,
+        pulse_scattered=None if energy is None else energy * scattered,
+        pulse_compared=None if energy is None else energy * (compared + diffuse_compared),
+        pulse_direct=None if energy is None else energy * direct,
+    )
+
+
+def _assumptions(scene: Scene, wavelengths: int) -> tuple[Assumption, ...]:
+    found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, DRY_AIR]
+    if scene.loads:
+        found += [SIZE_AVERAGE, direct_light.NO_EXTINCTION]
+    if any(beam.stop for beam in scene.beams):
+        found += [surfaces.MATT_STOP, surfaces.SMALL_SPOT]
+    if any(line.pulses for beam in scene.beams for line in beam.lines):
+        found.append(PULSES_UNSTRETCHED)
+    if any(limit.acceptance is not None or limit.quantity.startswith("radiance") for limit in scene.limits):
+        found.append(bright.LEGS_ADDED)
+    if any(full_field(hazard_of(limit)) for limit in scene.limits):
+        found.append(surfaces.WALLS)
+    return merged(
+        tuple(found),
+        first_order.ASSUMPTIONS,
+        paths.assumptions_of(scene.beams),
+        loads.assumptions_of(scene.loads, wavelengths),
+    )
+
+
+def _provenance(made_at: datetime | None) -> Provenance:
+    import scipy
+
+    return Provenance(
+        version=lasescatter.__version__,
+        numpy=np.__version__,
+        scipy=scipy.__version__,
+        made_at=(made_at or datetime.now(UTC)).replace(microsecond=0).isoformat(),
+        digest="",
+    )
+
+
+def with_digest(assessment: Assessment, digest: str) -> Assessment:
+    """The same assessment carrying the digest of its record."""
+    return replace(assessment, provenance=replace(assessment.provenance, digest=digest))

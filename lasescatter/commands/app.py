@@ -1,0 +1,115 @@
+"""The command line: reads arguments, makes one call each, writes what comes back."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import Annotated
+
+import typer
+
+import lasescatter
+from lasescatter.problems import SiteError
+
+app = typer.Typer(
+    add_completion=False,
+    no_args_is_help=True,
+    pretty_exceptions_enable=False,
+    context_settings={"help_option_names": ["-h", "--help"]},
+    help="Scattered laser light beside a beam, judged against the exposure limits entered in a site file.",
+    epilog="Verdicts hold only for the site as described. The laser safety officer decides.",
+)
+
+SiteFile = Annotated[Path, typer.Argument(metavar="FILE", help="Site file (TOML); - reads standard input.")]
+Quiet = Annotated[bool, typer.Option("--quiet", "-q", help="Print nothing but errors.")]
+AsJson = Annotated[bool, typer.Option("--json", help="Print JSON to standard output.")]
+
+
+def _version(wanted: bool) -> None:
+    if wanted:
+        typer.echo(f"lasescatter {lasescatter.__version__}")
+        raise typer.Exit
+
+
+@app.callback()
+def _common(
+    version: Annotated[
+        bool, typer.Option("--version", callback=_version, is_eager=True, help="Print the version and stop.")
+    ] = False,
+) -> None:
+    pass
+
+
+@app.command("assess")
+def assess_command(
+    file: SiteFile,
+    out: Annotated[
+        Path, typer.Option("--out", metavar="DIR", help="Folder for the files; made if it is missing.")
+    ] = Path("."),
+    page_size: Annotated[str, typer.Option("--page-size", help="A4 or Letter.")] = "A4",
+    verdict_exit: Annotated[
+        bool,
+        typer.Option("--verdict-exit", help="Exit 3 if something is above a limit, 4 if something is not established."),
+    ] = False,
+    as_json: AsJson = False,
+    quiet: Quiet = False,
+) -> None:
+    """Assess a site: PDF, record, table and figures."""
+    from lasescatter.commands.assessing import assess_site
+
+    raise typer.Exit(assess_site(file, out, page_size, verdict_exit, as_json, quiet))
+
+
+@app.command("check")
+def check_command(file: SiteFile, as_json: AsJson = False, quiet: Quiet = False) -> None:
+    """Read and validate a site file; compute nothing."""
+    from lasescatter.commands.checking import check_site
+
+    check_site(file, as_json, quiet)
+
+
+@app.command("new")
+def new_command(
+    file: Annotated[Path, typer.Argument(metavar="FILE", help="Site file to write; it must not exist yet.")],
+    starter: Annotated[str, typer.Option("--starter", metavar="NAME", help="indoor, outdoor or pulsed.")] = "indoor",
+    quiet: Quiet = False,
+) -> None:
+    """Write a commented starter site file that can be assessed as it stands."""
+    from lasescatter.commands.starting import new_site
+
+    new_site(file, starter, quiet)
+
+
+@app.command("schema")
+def schema_command() -> None:
+    """Print the JSON Schema of a site file, for editors."""
+    import json
+
+    from lasescatter.site.schema import site_schema
+
+    typer.echo(json.dumps(site_schema(), indent=2, ensure_ascii=False))
+
+
+def main() -> None:
+    """Entry point: input errors end in one message and status 2, anything unexpected in status 1."""
+    _utf8_streams()
+    try:
+        app(prog_name="lasescatter")
+    except SiteError as fault:
+        typer.echo(str(fault), err=True)
+        sys.exit(2)
+    except BrokenPipeError:
+        # Whoever read our output has gone; there is nobody to tell.
+        sys.stderr.close()
+        sys.exit(1)
+    except OSError as fault:
+        typer.echo(f"{fault.filename or 'file'}: {fault.strerror or fault}", err=True)
+        sys.exit(1)
+
+
+def _utf8_streams() -> None:
+    """Names may hold any character: a terminal that cannot show one gets a replacement, never a crash."""
+    for stream in (sys.stdout, sys.stderr):
+        reconfigure = getattr(stream, "reconfigure", None)
+        if reconfigure is not None:
+            reconfigure(errors="replace")
