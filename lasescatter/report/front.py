@@ -1,0 +1,194 @@
+"""The first page: what was asked, what the beam itself does, the verdicts, what is left out."""
+
+from __future__ import annotations
+
+from datetime import datetime
+from typing import Any
+
+from lasescatter.assessment.outcome import Assessment, BeamSpot, InTheBeam, ObserverOutcome
+from lasescatter.limits.verdict import ABOVE, BELOW, margin
+from lasescatter.report.cautions import not_covered
+from lasescatter.report.page_frame import COLUMN
+from lasescatter.report.quantities import digits, duration, length, line_label, wavelength
+from lasescatter.report.styles import INK, MM, heads, number_cell, paragraph, ruled, verdict_words, words
+from lasescatter.report.typography import SANS, abridged, markup
+
+FRONT_LINES = 6
+"""Beam lines in the short table of the first page; all are in their own section."""
+BRIEF = 230
+NAME = 120
+
+
+def front(assessment: Assessment, made_at: datetime, sections: dict[str, int]) -> list[Any]:
+    """First page."""
+    return [
+        *_title(assessment, made_at),
+        *_beam_lines(assessment, sections),
+        *_verdicts(assessment, sections),
+        *_left_out(assessment, sections),
+    ]
+
+
+def _title(assessment: Assessment, made_at: datetime) -> list[Any]:
+    scene, source = assessment.scene, assessment.provenance
+    facts = [
+        [paragraph("Reference", "cell bold"), words(scene.reference, limit=200), paragraph("Made at", "cell bold"),
+         words(made_at.isoformat(timespec="seconds"))],
+        [paragraph("Prepared by", "cell bold"), words(scene.prepared_by, limit=200), paragraph("Program", "cell bold"),
+         words(f"lasescatter {source.version}, numpy {source.numpy}, scipy {source.scipy}")],
+        [paragraph("Record (sha256)", "cell bold"), words(source.digest or "no record made"), "", ""],
+    ]  # fmt: skip
+    table = ruled(facts, [27, 66, 21, 60], extra=[("SPAN", (1, 2), (3, 2))], head_rows=0)
+    count = len(assessment.observers)
+    who = "the one observer" if count == 1 else f"each of the {count} observers"
+    beams = len(scene.beams)
+    which = "the beam" if beams == 1 else f"the {beams} beams"
+    question = (
+        f"How much light reaches {who} of this site from {which}: scattered on the way, returned by a beam stop, or "
+        "direct? And how does it compare with the exposure limits that were entered for the site?"
+    )
+    return [
+        paragraph("Laser light beside the beam: assessment against entered limits", "kind"),
+        words(scene.title, "title", 300),
+        table,
+        paragraph(f"<b>Question answered.</b> {question}"),
+    ]
+
+
+def multiple(value: float | None) -> str:
+    """Direct exposure as a multiple of its limit."""
+    return digits(value)
+
+
+def _greatest(spots: list[BeamSpot]) -> BeamSpot | None:
+    known = [spot for spot in spots if spot.multiple is not None]
+    return max(known, key=lambda spot: spot.multiple or 0.0, default=None)
+
+
+def _group(line: InTheBeam, word: str) -> list[BeamSpot]:
+    return [spot for spot in line.spots if spot.place.startswith(word)]
+
+
+def _several(spots: list[BeamSpot], absent: str) -> str:
+    """The multiple at one spot, or the greatest of several."""
+    if not spots:
+        return absent
+    top = _greatest(spots)
+    if top is None:
+        return digits(None)
+    return multiple(top.multiple) if len(spots) == 1 else f"{multiple(top.multiple)} at most"
+
+
+def _beam_lines(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
+    unit = assessment.scene.length_unit
+    ordered = sorted(
+        assessment.in_the_beam,
+        key=lambda line: -max((spot.multiple or 0.0 for spot in line.spots), default=0.0),
+    )
+    rows: list[list[Any]] = [
+        heads(
+            "Beam line and the limit judged", "at the start", "at mirrors", "at the stop", "nearest to observers",
+            "white card: below from", "hazard distance", numeric_from=1,
+        )
+    ]  # fmt: skip
+    for line in ordered[:FRONT_LINES]:
+        label = f"<b>{markup(line_label(line.beam, line.line), 90)}</b>, {wavelength(line.wavelength)}"
+        start = _group(line, "start")
+        if line.limit is None:
+            told = f"{label}<br/>no multiple: {markup(line.reason or 'no limit covers it', 160)}"
+        else:
+            told = f"{label}<br/>{markup(line.limit, 90)}, {duration(line.duration)}"
+        card = max((spot.diffuse_distance for spot in line.spots if spot.diffuse_distance is not None), default=None)
+        rows.append(
+            [
+                paragraph(told, "cell"),
+                number_cell(_several(start, "–")),
+                number_cell(_several(_group(line, "mirror"), "none")),
+                number_cell(_several(_group(line, "stop"), "none")),
+                number_cell(_several(_group(line, "nearest"), "–")),
+                number_cell(length(card, unit)),
+                number_cell("below everywhere" if line.hazard_distance == 0 else length(line.hazard_distance, unit)),
+            ]
+        )
+    hidden = len(ordered) - FRONT_LINES
+    more = (
+        f" {hidden} more beam line(s), all weaker against their limits, are in section {sections['beam']}."
+        if hidden > 0
+        else ""
+    )
+    return [
+        paragraph("Somebody in the beam itself", "section"),
+        ruled(rows, [54, 17, 18, 17, 20, 24, 24], numeric=(1, 2, 3, 4, 5, 6)),
+        paragraph(
+            "Direct exposure as a <b>multiple of the limit</b>, whether or not anybody stands there; above 1 is "
+            "above the limit. White card: the distance from a white matt surface held in the beam at which its "
+            "light has fallen to the limit. Hazard distance: along the beam from its start, no loss credited. "
+            f"Every place is in section {sections['beam']}. 1.2e-3 stands for 1.2 × 10⁻³ throughout; – for a "
+            f"value that does not exist.{more}",
+            "note",
+        ),
+    ]
+
+
+def _because(observer: ObserverOutcome) -> str:
+    """Reasons in brief."""
+    told = list(observer.reasons)
+    if observer.governing and (observer.verdict == BELOW or not told):
+        told.insert(0, observer.governing)
+    return markup(abridged("; ".join(told), BRIEF) if told else "")
+
+
+def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
+    from reportlab.lib.colors import HexColor
+    from reportlab.platypus import Table, TableStyle
+
+    box = Table(
+        [[paragraph(f"Site verdict: {verdict_words(assessment.verdict)}", "verdict")]],
+        colWidths=[COLUMN * MM],
+        hAlign="LEFT",
+        style=TableStyle([
+            ("FONT", (0, 0), (-1, -1), SANS, 8),
+            ("BOX", (0, 0), (-1, -1), 1.6 if assessment.verdict == ABOVE else 0.8, HexColor(INK)),
+            ("TOPPADDING", (0, 0), (-1, -1), 3), ("BOTTOMPADDING", (0, 0), (-1, -1), 5),
+        ]),
+        spaceAfter=4,
+    )  # fmt: skip
+    rows: list[list[Any]] = [heads("No.", "Observer", "Verdict", "Greatest summed exposure", "Reasons in brief")]
+    for number, observer in enumerate(assessment.observers, start=1):
+        rows.append(
+            [
+                str(number),
+                words(observer.name, limit=NAME),
+                paragraph(verdict_words(observer.verdict), "cell"),
+                paragraph(margin(observer.ratio), "cell"),
+                paragraph(_because(observer), "cell"),
+            ]
+        )
+    return [
+        paragraph("Verdict beside the beam", "section"),
+        box,
+        ruled(rows, [8, 40, 25, 37, 64]),
+        paragraph(
+            "The site's verdict is the worst of its observers'. A verdict holds for the stated inputs, limits "
+            f"and assumptions only (sections {sections['inputs']} to {sections['cautions']}); reasons in full are "
+            f"in section {sections['comparisons']}.",
+            "note",
+        ),
+    ]
+
+
+def _left_out(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
+    story: list[Any] = [paragraph("Not judged, by the user's decision", "subsection")]
+    if assessment.scene.not_judged:
+        story += [
+            paragraph(f"<b>{hazard}</b>: {markup(reason, 2000)}", "item", bullet="•")
+            for hazard, reason in assessment.scene.not_judged
+        ]
+    else:
+        story.append(paragraph("Nothing: every hazard that is due was to be judged.", "item"))
+    story.append(paragraph("Not covered", "subsection"))
+    story += [paragraph(markup(entry), "item", bullet="•") for entry in not_covered()]
+    story.append(
+        paragraph(f"Read the cautions (section {sections['cautions']}) before relying on any number here.", "aside")
+    )
+    return story

@@ -1,0 +1,138 @@
+"""The result in brief on a terminal: at most 80 columns, readable without colour and through a pipe."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from lasescatter.assessment.outcome import Assessment, BeamSpot, InTheBeam
+from lasescatter.limits.verdict import BELOW, margin
+from lasescatter.report.cautions import foremost
+from lasescatter.report.quantities import digits, duration, length, line_label, wavelength
+from lasescatter.report.typography import abridged, plain
+
+if TYPE_CHECKING:
+    from rich.console import Console
+
+WIDTH = 80
+NAME = 60
+OBSERVERS = 20
+"""More than so many are counted by verdict and only the worst are listed."""
+
+
+def print_summary(assessment: Assessment, console: Console) -> None:
+    """Print the result in brief: somebody in the beam, verdicts, what is left out, the foremost cautions."""
+    page = _Page(console)
+    scene = assessment.scene
+    page.say(abridged(plain(scene.title), 200), style="bold")
+    page.say(abridged(f"Reference {plain(scene.reference)}, prepared by {plain(scene.prepared_by)}", 200))
+    page.gap()
+    page.say("Somebody in the beam itself (multiples of the limit):", style="bold")
+    for line in assessment.in_the_beam:
+        page.item(_in_the_beam(line, assessment))
+    page.gap()
+    page.say(f"Site verdict beside the beam: {assessment.verdict}", style="bold")
+    _observers(assessment, page)
+    for hazard, reason in scene.not_judged:
+        page.item(abridged(f"{hazard}: not judged, {plain(reason)}", 300))
+    page.gap()
+    page.say("Before relying on it:", style="bold")
+    for text in foremost():
+        page.item(plain(text))
+    page.say("All cautions, assumptions and the hand check are in the PDF report; see also SAFETY.md.")
+
+
+def _greatest(spots: list[BeamSpot]) -> BeamSpot | None:
+    known = [spot for spot in spots if spot.multiple is not None]
+    return max(known, key=lambda spot: spot.multiple or 0.0, default=None)
+
+
+def _in_the_beam(line: InTheBeam, assessment: Assessment) -> str:
+    unit = assessment.scene.length_unit
+    name = f"{abridged(plain(line_label(line.beam, line.line)), NAME)}, {wavelength(line.wavelength)}"
+    top = _greatest(list(line.spots))
+    if line.limit is None or top is None:
+        return f"{name}: no multiple, {plain(line.reason) or 'no limit covers it'}"
+    told = [
+        f"{digits(top.multiple)} at the worst place ({abridged(plain(top.place), NAME)}) for {duration(line.duration)}"
+    ]
+    cards = [spot.diffuse_distance for spot in line.spots if spot.diffuse_distance is not None]
+    if cards:
+        told.append(f"a white card in it falls to the limit at {length(max(cards), unit)}")
+    if line.hazard_distance is not None:
+        told.append(
+            "below the limit everywhere"
+            if line.hazard_distance == 0
+            else f"hazard distance {length(line.hazard_distance, unit)}"
+        )
+    return f"{name}: {'; '.join(told)}"
+
+
+def _observers(assessment: Assessment, page: _Page) -> None:
+    shown = list(enumerate(assessment.observers, start=1))
+    if len(shown) > OBSERVERS:
+        counts: dict[str, int] = {}
+        for outcome in assessment.observers:
+            counts[outcome.verdict] = counts.get(outcome.verdict, 0) + 1
+        page.say(f"{len(shown)} observers: " + ", ".join(f"{n} {verdict}" for verdict, n in sorted(counts.items())))
+        order = {"above limit": 0, "not established": 1, "below limit": 2}
+        shown.sort(key=lambda pair: (order[pair[1].verdict], -(pair[1].ratio or 0.0), pair[0]))
+        shown = shown[:OBSERVERS]
+        page.say(f"The {OBSERVERS} to look at first:")
+    for number, outcome in shown:
+        page.say(f"{number:>3}  {abridged(plain(outcome.name), NAME)}: {outcome.verdict}", indent=5)
+        told = [margin(outcome.ratio)]
+        if outcome.governing:
+            told.append(plain(outcome.governing))
+        page.say("     " + "; ".join(told), indent=5)
+        if outcome.verdict != BELOW:
+            for reason in outcome.reasons:
+                page.say("     - " + abridged(plain(reason), 400), indent=7)
+
+
+class _Page:
+    """Lines wrapped by the cells that their characters take, cut at the console's width or 80."""
+
+    def __init__(self, console: Console) -> None:
+        self.console = console
+        self.width = max(20, min(WIDTH, console.width))
+
+    def say(self, text: str, indent: int = 0, style: str = "") -> None:
+        from rich.text import Text
+
+        for line in _wrapped(_encodable(text, self.console.encoding), self.width, indent):
+            self.console.print(Text(line, style=style), soft_wrap=True)
+
+    def item(self, text: str) -> None:
+        self.say(f"  - {text}", indent=4)
+
+    def gap(self) -> None:
+        self.console.print()
+
+
+def _encodable(text: str, encoding: str) -> str:
+    """Text with what the terminal cannot take written as code points."""
+    try:
+        text.encode(encoding)
+    except (UnicodeEncodeError, LookupError):
+        return text.encode("ascii", "backslashreplace").decode("ascii")
+    return text
+
+
+def _wrapped(text: str, width: int, indent: int) -> list[str]:
+    """Lines of at most `width` cells; those after the first are indented."""
+    from rich.cells import cell_len, chop_cells
+
+    lines: list[str] = []
+    head = text[: len(text) - len(text.lstrip(" "))]
+    current, empty = head, True
+    pad = " " * indent
+    for word in text.split():
+        for piece in chop_cells(word, width - max(indent, len(head))) if cell_len(word) > width - indent else [word]:
+            joined = current + piece if empty else f"{current} {piece}"
+            if cell_len(joined) <= width or (empty and current in (head, pad)):
+                current, empty = joined, False
+            else:
+                lines.append(current)
+                current, empty = pad + piece, False
+    lines.append(current)
+    return lines
