@@ -13,7 +13,7 @@ from lasescatter.report.ink import DARK, FAINT, GREY, cut, write
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
-Sign = Literal["beam", "load", "start", "mirror", "stop", "endless", "observer"]
+Sign = Literal["beam", "load", "start", "mirror", "stop", "endless", "towards", "away", "observer"]
 
 ROW = 4.1
 """[mm]"""
@@ -89,5 +89,7 @@ def _sign(axes: Axes, entry: Entry, x: float, y: float) -> None:
     elif entry.sign == "endless":
         symbols.stroke(axes, (x, y), (x + 7, y), DARK, "-")
         symbols.endless(axes, (x + 8, y), (1.0, 0.0), DARK)
+    elif entry.sign in ("towards", "away"):
+        symbols.through_paper(axes, middle, entry.sign == "towards", DARK)
     else:
         symbols.observer(axes, middle, 0.0, entry.verdict)

@@ -36,6 +36,7 @@ SHEET = 174.0
 _LEFT, _TOP, _STRIP = 15.0, 6.5, 19.0
 _NAMED_OBSERVERS = 8
 _NAME_LENGTH = 28
+_LABEL_SHARES = (0.5, 0.36, 0.64, 0.25, 0.75)
 _SQUARE_ON = 0.08
 """Share in the paper below which a leg counts as square to it."""
 
@@ -55,7 +56,7 @@ def draw_site(assessment: Assessment, kind: Kind) -> Figure:
     scene = assessment.scene
     view = views(scene)[kind]
     room = Room(Rect(0.5, 0.5, view.width - 0.5, view.height - 0.5))
-    entries = _beam_entries(assessment) + _load_entries(scene.loads) + _sign_entries(assessment)
+    entries = _beam_entries(assessment) + _load_entries(scene.loads) + _sign_entries(assessment, view)
     unnamed = _unnamed(assessment)
     total = _TOP + view.height + _STRIP + key_height(entries, unnamed)
     figure = sheet(SHEET, total)
@@ -162,19 +163,27 @@ def _exit(view: View, start: Point, along: Point) -> Point:
     return start[0] + share * along[0], start[1] + share * along[1]
 
 
+def _square_on(view: View, beam: Beam, number: int) -> bool:
+    """True for a leg that runs straight through the paper."""
+    return math.hypot(*view.direction(_along(*_legs(beam)[number]))) < _SQUARE_ON
+
+
 def _leg_on_paper(view: View, beam: Beam, number: int) -> tuple[Point, Point, Point]:
     """Start and end as drawn, and the direction in the paper."""
     start, end = _legs(beam)[number]
     along = view.direction(_along(start, end))
     first, last = view.paper(start), view.paper(end)
-    if beam.leaves_site and number == len(beam.points) - 2 and math.hypot(*along) >= _SQUARE_ON:
+    if beam.leaves_site and number == len(beam.points) - 2 and not _square_on(view, beam, number):
         last = _exit(view, first, along)
     return first, last, along
 
 
 def _note_strokes(view: View, beam: Beam, room: Room) -> None:
+    room.mark(view.paper(beam.points[0]), 0.8)
     for number in range(len(beam.points) - 1):
         first, last, _ = _leg_on_paper(view, beam, number)
+        if _square_on(view, beam, number):
+            room.mark(first, 1.3)
         room.stroke(first, last)
 
 
@@ -184,8 +193,10 @@ def _beam(axes: Axes, view: View, beam: Beam, place: int, room: Room) -> None:
     for number, (start, end) in enumerate(_legs(beam)):
         first, last, along = _leg_on_paper(view, beam, number)
         endless = beam.leaves_site and number == len(beam.points) - 2
-        middle = (0.5 * (first[0] + last[0]), 0.5 * (first[1] + last[1]))
-        if math.hypot(*along) < _SQUARE_ON:
+        # Off the middle by turns, so that legs folded over one another keep their labels apart.
+        share = _LABEL_SHARES[number % len(_LABEL_SHARES)]
+        middle = (first[0] + share * (last[0] - first[0]), first[1] + share * (last[1] - first[1]))
+        if _square_on(view, beam, number):
             symbols.through_paper(axes, first, view.towards_reader(_along(start, end)) > 0, ink)
             middle = first
         else:
@@ -210,8 +221,9 @@ def _beam(axes: Axes, view: View, beam: Beam, place: int, room: Room) -> None:
                 zorder=9,
                 bbox=CLEAR,
             )
-    start_mark = view.paper(beam.points[0])
-    axes.plot([start_mark[0]], [start_mark[1]], marker="o", markersize=3.4, color=ink, zorder=6)
+    if not _square_on(view, beam, 0):
+        start_mark = view.paper(beam.points[0])
+        axes.plot([start_mark[0]], [start_mark[1]], marker="o", markersize=3.4, color=ink, zorder=6)
 
 
 def _beam_plates(axes: Axes, view: View, beam: Beam, room: Room) -> None:
@@ -305,9 +317,15 @@ def _load_entries(loads: tuple[Load, ...]) -> list[Entry]:
     ]
 
 
-def _sign_entries(assessment: Assessment) -> list[Entry]:
-    """Signs that occur in the drawings."""
+def _sign_entries(assessment: Assessment, view: View) -> list[Entry]:
+    """Signs that occur in the drawing."""
     beams = assessment.scene.beams
+    through = {
+        view.towards_reader(_along(*leg)) > 0
+        for beam in beams
+        for number, leg in enumerate(_legs(beam))
+        if _square_on(view, beam, number)
+    }
     entries = [Entry("start", "start of a beam")]
     if any(len(beam.points) > 2 for beam in beams):
         entries.append(Entry("mirror", "mirror"))
@@ -315,6 +333,10 @@ def _sign_entries(assessment: Assessment) -> list[Entry]:
         entries.append(Entry("stop", "beam stop"))
     if any(beam.leaves_site for beam in beams):
         entries.append(Entry("endless", "goes on past the drawing"))
+    if True in through:
+        entries.append(Entry("towards", "leg towards the reader"))
+    if False in through:
+        entries.append(Entry("away", "leg away from the reader"))
     found = {outcome.verdict for outcome in assessment.observers}
     entries += [
         Entry("observer", f"observer, {verdict}", verdict=verdict)

@@ -99,7 +99,7 @@ def _shifted(position: Vector, step: float) -> Vector:
 
 
 def extent(scene: Scene) -> tuple[Vector, Vector]:
-    """Low and high corner of what the drawings show; a load's box counts as far as it is near the rest."""
+    """Low and high corner of what the drawings show; a face of a load's box counts where it is near the rest."""
     core = _core(scene)
     low = [min(p[axis] for p in core) for axis in range(3)]
     high = [max(p[axis] for p in core) for axis in range(3)]
@@ -108,8 +108,11 @@ def extent(scene: Scene) -> tuple[Vector, Vector]:
     for load in scene.loads:
         if isinstance(load.region, Box):
             for axis in range(3):
-                bounds_low[axis] = min(bounds_low[axis], max(load.region.low[axis], low[axis] - near))
-                bounds_high[axis] = max(bounds_high[axis], min(load.region.high[axis], high[axis] + near))
+                # A face farther off than that would only make everything else small.
+                if low[axis] - near <= load.region.low[axis]:
+                    bounds_low[axis] = min(bounds_low[axis], load.region.low[axis])
+                if load.region.high[axis] <= high[axis] + near:
+                    bounds_high[axis] = max(bounds_high[axis], load.region.high[axis])
     return (bounds_low[0], bounds_low[1], bounds_low[2]), (bounds_high[0], bounds_high[1], bounds_high[2])
 
 
