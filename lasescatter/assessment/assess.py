@@ -36,6 +36,7 @@ from lasescatter.limits.judge import Judgement, judge
 from lasescatter.limits.verdict import worst
 from lasescatter.medium import load as loads
 from lasescatter.report.cautions import cautions
+from lasescatter.problems import Problem, SiteError
 from lasescatter.scene import Limit, Line, Observer, Scene
 
 Floats = NDArray[np.float64]
@@ -46,11 +47,13 @@ REACHED_WITHIN_RADII = 3.0
 PUPIL = 7e-3
 # Above this full angle a beam is no pencil for this program. [rad]
 WIDEST_DIVERGENCE = 10e-3
+# Sums over legs, lines and scatterers for all observers together.
+MOST_ROWS = 200_000
 
 PULSES_UNSTRETCHED = Assumption(
     name="Scattered pulses keep the beam's pulse duration",
     direction="high",
-    size="by the spread of path lengths over the speed of light: a pulse of nanoseconds is stretched several times in a room",
+    size="by the spread of path lengths over the speed of light: nanoseconds are stretched several times in a room",
     source="geometry",
 )
 
@@ -72,6 +75,7 @@ def assess(
     SiteError
         If a value of the scene is outside the data or the range that the physics is made for.
     """
+    _check_size(scene)
     points = np.array([observer.position for observer in scene.observers], dtype=float)
     optics = SiteOptics(scene)
     fields: dict[str, LineField] = {}
@@ -101,6 +105,21 @@ def assess(
         cautions=cautions(),
         provenance=_provenance(made_at),
     )
+
+
+def _check_size(scene: Scene) -> None:
+    """Refuse a site that would fill the memory, before any is taken.
+
+    Raises
+    ------
+    SiteError
+    """
+    components = 1 + len(scene.loads)
+    parts = sum(len(beam.lines) * (len(beam.points) - 1) for beam in scene.beams)
+    rows = len(scene.observers) * parts * components
+    if rows > MOST_ROWS:
+        wrong = f"{len(scene.observers)} observers × {parts} legs and lines × {components} scatterers make {rows} sums"
+        raise SiteError([Problem("", wrong, f"At most {MOST_ROWS} are computed at once; split the site into several")])
 
 
 def _observer(
@@ -185,8 +204,8 @@ def _gates(fields: dict[str, LineField], index: int) -> tuple[str, ...]:
             )
         if field.line.divergence > WIDEST_DIVERGENCE:
             gates.append(
-                f'"{field.line.name}" diverges by {field.line.divergence * 1e3:.3g} mrad: above 10 mrad the average over '
-                "its rays is not computed"
+                f'"{field.line.name}" diverges by {field.line.divergence * 1e3:.3g} mrad: above 10 mrad the average '
+                "over its rays is not computed"
             )
         if field.spot is not None and field.stop_compared[index] > 0:
             r = float(np.linalg.norm(field.points[index] - field.spot))

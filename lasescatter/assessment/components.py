@@ -29,7 +29,7 @@ DRY_AIR = Assumption(
 SIZE_AVERAGE = Assumption(
     name="The average over particle sizes is a finite sum",
     direction="either",
-    size="by the estimated error printed with each component, kept under 1e-3 of F11 at every angle unless it says otherwise",
+    size="by the error printed with each component, under 1e-3 of F11 at every angle unless it says otherwise",
     source="comparison of N with 2N radii",
 )
 

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Any, TypeVar, cast
 
 import numpy as np
 from numpy.typing import NDArray
@@ -10,8 +12,9 @@ from numpy.typing import NDArray
 from lasescatter.exposure.direct import aperture_mean, beam_radius, irradiance
 from lasescatter.exposure.fraction import Greatest, greatest_over_fraction
 from lasescatter.exposure.legs import Leg, Swing, legs_of, swings_of
-from lasescatter.exposure.line import BrightLine, bright_line, brightest_window, peak_radiance
+from lasescatter.exposure.line import BrightLine, Window, bright_line, brightest_window, peak_radiance
 from lasescatter.exposure.scattered import LegLight, scattered
+from lasescatter.exposure.sightline import Sightlines
 from lasescatter.exposure.surfaces import stop_light, wall_return
 from lasescatter.exposure.thickness import allowance, optical_thickness
 from lasescatter.limits.compare import Received
@@ -20,9 +23,13 @@ from lasescatter.medium.mixture import Mixture
 from lasescatter.scene import Beam, Limit, Line
 
 Floats = NDArray[np.float64]
+T = TypeVar("T")
 
 # Direct light that gives less than this per watt is none: a gaussian's tail [m⁻²].
 NO_DIRECT_LIGHT = 1e-30
+
+# Legs times observers integrated together: bounds the memory of the nodes to some tens of megabytes.
+MOST_LEGS_TIMES_OBSERVERS = 1024
 
 
 @dataclass(frozen=True)
@@ -47,8 +54,14 @@ class LineField:
     spot: Floats | None
     """Where the beam meets its stop, (3,)."""
     spot_radius: float
-    bright_lines: dict[int, BrightLine]
-    """By leg, filled when a limit with an acceptance or a radiance asks."""
+    known: dict[tuple[str, float], Any]
+    """Values for all observers that limits have asked for: by name and aperture, acceptance or leg."""
+
+    def _once(self, name: str, parameter: float, make: Callable[[], T]) -> T:
+        key = (name, parameter)
+        if key not in self.known:
+            self.known[key] = make()
+        return cast("T", self.known[key])
 
     @property
     def scattered(self) -> Floats:
@@ -72,9 +85,11 @@ class LineField:
 
     def direct_mean(self, aperture: float) -> Floats:
         """Direct light averaged over an aperture at each observer, no extinction. [m⁻²]"""
+        return self._once("direct", aperture, lambda: self._direct_mean(aperture))
+
+    def _direct_mean(self, aperture: float) -> Floats:
         total = np.zeros(len(self.points))
-        for light in self.lights:
-            leg = light.leg
+        for leg in self.legs:
             s0, across, alongside = _foot(leg, self.points)
             radius = beam_radius(self.line, leg.path_before + np.clip(s0, 0, None))
             mean = aperture_mean(self.beam.profile, radius, across, aperture)
@@ -83,11 +98,17 @@ class LineField:
 
     def bright(self, index: int) -> BrightLine:
         """Tabulated brightness of one leg at the worst load fraction."""
-        if index not in self.bright_lines:
-            self.bright_lines[index] = bright_line(
-                self.lights[index], self.mixture, self.points, self.greatest.fraction
-            )
-        return self.bright_lines[index]
+        return self._once(
+            "bright", index, lambda: bright_line(self.lights[index], self.mixture, self.points, self.greatest.fraction)
+        )
+
+    def window(self, index: int, acceptance: float) -> Window:
+        """Brightest window of one leg."""
+        return self._once(f"window {index}", acceptance, lambda: brightest_window(self.bright(index), acceptance))
+
+    def peak(self, index: int) -> tuple[Floats, NDArray[np.bool_]]:
+        """Peak radiance of one leg, and where it is void."""
+        return self._once("peak", index, lambda: peak_radiance(self.bright(index), self.line, self.beam.profile))
 
     def received(self, observer: int, limit: Limit, wall_points: Floats) -> Received | str:
         """What one limit takes in at one observer, per watt; a sentence where that cannot be told.
@@ -111,7 +132,7 @@ class LineField:
         elif radiance:
             if direct > 0:
                 return "direct light has no radiance without an acceptance field"
-            peaks = [peak_radiance(self.bright(i), self.line, self.beam.profile) for i in range(len(self.legs))]
+            peaks = [self.peak(i) for i in range(len(self.legs))]
             if any(void[observer] for _, void in peaks):
                 return f'a leg of "{self.beam.name}" is seen so nearly end-on that its radiance is not defined by E4'
             light = float(sum(peak[observer] for peak, _ in peaks))
@@ -127,13 +148,13 @@ class LineField:
         total = light + orders + stop + direct
         high = total + error * float(allowance(self.thickness[observer]))
         if full_field(hazard_of(limit)) and not radiance:
-            high += self._walls(wall_points)
+            high += self._once("walls", 0.0, lambda: self._walls(wall_points))
         return Received(tuple(by_origin), max(0.0, light - error) + stop + direct, high, window)
 
     def _windows(self, observer: int, acceptance: float) -> tuple[float, tuple[tuple[str, float], ...]]:
         total, shown = 0.0, []
         for i, leg in enumerate(self.legs):
-            found = brightest_window(self.bright(i), acceptance)
+            found = self.window(i, acceptance)
             total += float(found.irradiance[observer])
             shown += [(f"leg {leg.number} from", float(found.low[observer])), ("to", float(found.high[observer]))]
         return total, tuple(shown)
@@ -162,12 +183,13 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> Line
     """Compute everything that one line sends to all observers."""
     legs = legs_of(beam)
     swings = swings_of(beam, line, legs)
-    least = []
-    for leg in legs:
-        s0, _, _ = _foot(leg, points)
-        least.append(beam_radius(line, leg.path_before + np.clip(s0, 0, None)))
-    lights = scattered(legs, swings, mixture, points, np.stack(least))
-    spot, spot_radius, stated, compared = _stop(beam, line, legs, mixture, points, lights)
+    together = max(1, MOST_LEGS_TIMES_OBSERVERS // len(legs))
+    parts = [
+        _scattered_part(line, legs, swings, mixture, points[start : start + together])
+        for start in range(0, len(points), together)
+    ]
+    lights = tuple(_joined([part[0][i] for part in parts]) for i in range(len(legs)))
+    spot, spot_radius, stated, compared = _stop(beam, line, legs, mixture, points, lights[-1].tau_before)
     hot = 1.0 if line.pulses is None else line.pulses.hot_spot
     direct = np.zeros(len(points))
     for leg in legs:
@@ -182,26 +204,63 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> Line
         mixture=mixture,
         points=points,
         lights=lights,
-        greatest=greatest_over_fraction(lights, mixture, len(points)),
-        thickness=optical_thickness(lights, mixture, points),
+        greatest=Greatest(
+            irradiance=np.concatenate([part[1].irradiance for part in parts]),
+            fraction=np.concatenate([part[1].fraction for part in parts]),
+            error=np.concatenate([part[1].error for part in parts]),
+        ),
+        thickness=np.concatenate([part[2] for part in parts]),
         stop_stated=stated,
         stop_compared=compared,
         direct=np.where(direct > NO_DIRECT_LIGHT, direct, 0.0),
         spot=spot,
         spot_radius=spot_radius,
-        bright_lines={},
+        known={},
+    )
+
+
+def _scattered_part(
+    line: Line, legs: tuple[Leg, ...], swings: tuple[Swing, ...], mixture: Mixture, points: Floats
+) -> tuple[list[LegLight], Greatest, Floats]:
+    """Scattered light of some observers; the nodes are let go with it."""
+    least = [beam_radius(line, leg.path_before + np.clip(_foot(leg, points)[0], 0, None)) for leg in legs]
+    integrated = scattered(legs, swings, mixture, points, np.stack(least))
+    return (
+        [leg.light for leg in integrated],
+        greatest_over_fraction(integrated, mixture, len(points)),
+        optical_thickness(integrated, mixture, points),
+    )
+
+
+def _joined(parts: list[LegLight]) -> LegLight:
+    """One leg's light of several groups of observers."""
+    sights = [part.sight for part in parts]
+    return LegLight(
+        leg=parts[0].leg,
+        swing=parts[0].swing,
+        sight=Sightlines(
+            s0=np.concatenate([sight.s0 for sight in sights]),
+            b=np.concatenate([sight.b for sight in sights]),
+            outward=np.concatenate([sight.outward for sight in sights]),
+            theta1=np.concatenate([sight.theta1 for sight in sights]),
+            theta2=np.concatenate([sight.theta2 for sight in sights]),
+        ),
+        tau_before=parts[0].tau_before,
+        by_component=np.concatenate([part.by_component for part in parts], axis=1),
+        unpolarised=np.concatenate([part.unpolarised for part in parts]),
+        error=np.concatenate([part.error for part in parts]),
     )
 
 
 def _stop(
-    beam: Beam, line: Line, legs: tuple[Leg, ...], mixture: Mixture, points: Floats, lights: tuple[LegLight, ...]
+    beam: Beam, line: Line, legs: tuple[Leg, ...], mixture: Mixture, points: Floats, tau_before: Floats
 ) -> tuple[Floats | None, float, Floats, Floats]:
     if beam.stop is None:
         return None, 0.0, np.zeros(len(points)), np.zeros(len(points))
     last = legs[-1]
     spot = last.origin + last.length * last.direction
     compared = last.reflected * stop_light(beam.stop, spot, points)
-    tau = lights[-1].tau_before.sum() + mixture.thicknesses(last.origin, spot).sum()
+    tau = tau_before.sum() + mixture.thicknesses(last.origin, spot).sum()
     tau = tau + mixture.thicknesses(spot, points).sum(axis=0)
     radius = float(beam_radius(line, last.path_before + last.length))
     return spot, radius, compared * np.exp(-tau), compared

@@ -19,7 +19,7 @@ Floats = NDArray[np.float64]
 WAIST_AT_START = Assumption(
     name="Each beam is narrowest at the start of its path and widens as a hyperbola",
     direction="high",
-    size="the straight-line law d + divergence × distance gives up to half the irradiance where both terms are alike; "
+    size="the straight-line law d + divergence × distance gives down to half the irradiance where both are alike; "
     "a beam that narrows to a focus along its path is not described",
     source="common practice, no source",
 )
@@ -36,7 +36,7 @@ NO_EXTINCTION = Assumption(
     source="a load thins and clears",
 )
 
-# Beyond this many 1/e² radii from the axis (aperture's edge nearest) a gaussian beam sends nothing that counts: exp(-2 · 8²).
+# A gaussian beam sends nothing that counts beyond this many 1/e² radii from its axis: exp(-2 · 8²).
 NOTHING_BEYOND = 8.0
 
 

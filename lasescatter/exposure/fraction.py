@@ -11,7 +11,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from lasescatter.exposure.scattered import FRACTIONS, LegLight
+from lasescatter.exposure.quadrature import sums_by_owner
+from lasescatter.exposure.scattered import FRACTIONS, IntegratedLeg
 from lasescatter.medium.mixture import Mixture
 
 Floats = NDArray[np.float64]
@@ -31,12 +32,12 @@ class Greatest:
     """Quadrature error there. [m⁻²]"""
 
 
-def greatest_over_fraction(lights: tuple[LegLight, ...], mixture: Mixture, count: int) -> Greatest:
+def greatest_over_fraction(lights: tuple[IntegratedLeg, ...], mixture: Mixture, count: int) -> Greatest:
     """Greatest irradiance of all legs together over the load fraction.
 
     Parameters
     ----------
-    lights : tuple of LegLight
+    lights : tuple of IntegratedLeg
         The legs of one line.
     count : int
         Observers.
@@ -54,7 +55,7 @@ def greatest_over_fraction(lights: tuple[LegLight, ...], mixture: Mixture, count
         return (own + f * load) * np.exp(-tau_own - f * tau_load)
 
     def total(fraction: Floats) -> Floats:
-        return np.bincount(owner, weight * values(fraction), count)
+        return sums_by_owner(owner, weight * values(fraction), count)
 
     best = np.ones(count)
     if not steady.all():
@@ -76,6 +77,6 @@ def greatest_over_fraction(lights: tuple[LegLight, ...], mixture: Mixture, count
         panels = light.nodes.panels
         size = len(light.nodes.owner)
         some = at_best[offset : offset + size].reshape(-1, 15)
-        error += np.bincount(panels.owner, panels.errors(some), count)
+        error += sums_by_owner(panels.owner, panels.errors(some), count)
         offset += size
     return Greatest(irradiance, best, error)

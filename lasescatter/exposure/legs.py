@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -54,7 +55,7 @@ WORST_AXIS = Assumption(
     source="E5 with F11 + |F12|",
 )
 
-# Within this angle of the s or p direction a real mirror keeps linear light linear enough for its axis to count as known.
+# Within this angle of the s or p direction the axis after a real mirror counts as known.
 KNOWN_AXIS_WITHIN = math.radians(1.0)
 
 
@@ -127,7 +128,7 @@ def swings_of(beam: Beam, line: Line, legs: tuple[Leg, ...]) -> tuple[Swing, ...
     within 1° of its s or p direction, the axis after it counts as unknown, and so it does for circular light.
     """
     swings = [_first_swing(line)]
-    for before, after in zip(legs[:-1], legs[1:], strict=True):
+    for before, after in pairwise(legs):
         swings.append(_after_mirror(beam, line, swings[-1], before, after))
     return tuple(swings)
 

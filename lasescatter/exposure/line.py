@@ -30,6 +30,8 @@ LEGS_ADDED = Assumption(
 TABULATED = 2048
 # A window of fewer steps than this is judged by its brightest element.
 LEAST_STEPS = 8
+# Observers tabulated together: bounds the memory.
+MOST_OBSERVERS_AT_ONCE = 64
 
 # Peak over mean radiance across the beam: of a gaussian with d at 1/e, 2/sqrt(pi); of a top-hat, 4/pi.
 PEAK_OVER_MEAN: dict[Profile, float] = {"gaussian": 2 / np.sqrt(np.pi), "top-hat": 4 / np.pi}
@@ -58,7 +60,18 @@ class Window:
 
 def bright_line(light: LegLight, mixture: Mixture, points: Floats, fraction: Floats) -> BrightLine:
     """Tabulate a leg's brightness at a load fraction per observer (E2's integrand)."""
-    sight = light.sight
+    parts = []
+    for start in range(0, len(points), MOST_OBSERVERS_AT_ONCE):
+        chosen = slice(start, start + MOST_OBSERVERS_AT_ONCE)
+        parts.append(_brightness(light, mixture, points[chosen], fraction[chosen], chosen))
+    theta, brightness = (np.concatenate(arrays) for arrays in zip(*parts, strict=True))
+    return BrightLine(light, theta, brightness)
+
+
+def _brightness(
+    light: LegLight, mixture: Mixture, points: Floats, fraction: Floats, chosen: slice
+) -> tuple[Floats, Floats]:
+    sight = light.sight.only(chosen)
     even = np.linspace(0.0, 1.0, TABULATED)
     inner = sight.theta1[:, None] + (sight.theta2 - sight.theta1)[:, None] * even
     theta = np.sort(np.concatenate([inner, breaks_of(light.leg, sight, mixture)], axis=1), axis=1)
@@ -69,7 +82,7 @@ def bright_line(light: LegLight, mixture: Mixture, points: Floats, fraction: Flo
     steady = mixture.steady
     f = fraction[:, None]
     passed = np.exp(-tau[steady].sum(axis=0) - f * tau[~steady].sum(axis=0))
-    return BrightLine(light, theta, (emitted[steady].sum(axis=0) + f * emitted[~steady].sum(axis=0)) * passed)
+    return theta, (emitted[steady].sum(axis=0) + f * emitted[~steady].sum(axis=0)) * passed
 
 
 def brightest_window(line: BrightLine, acceptance: float) -> Window:
@@ -117,4 +130,4 @@ def peak_radiance(line: BrightLine, beam_line: Line, profile: Profile) -> tuple[
     sine = np.sin(line.theta)
     holds = width <= leg.length * sine
     radiance = line.brightness * sight.b[:, None] / (width * sine) * PEAK_OVER_MEAN[profile]
-    return np.where(holds, radiance, 0.0).max(axis=1), ~holds.all(axis=1)
+    return np.where(holds, radiance, 0.0).max(axis=1), np.logical_not(np.all(holds, axis=1))

@@ -54,6 +54,11 @@ MOST_PANELS = 2_000
 MOST_PASSES = 40
 
 
+def sums_by_owner(owner: Integers, values: Floats, count: int) -> Floats:
+    """Sum of values (n,) for each of `count` owners."""
+    return np.asarray(np.bincount(owner, values, count), dtype=np.float64)
+
+
 @dataclass(frozen=True)
 class Panels:
     """Converged panels. Axis 0: panels, in no special order."""
@@ -129,17 +134,17 @@ def integrate(
         values, scales = integrand(owner, nodes)
         errors = panel_errors(values, half)
         amounts = (scales @ KRONROD) * half
-        total_scale = scale + np.bincount(owner, amounts, count)
+        total_scale = scale + sums_by_owner(owner, amounts, count)
         allowed = tolerance * total_scale
-        open_error = np.bincount(owner, errors, count)
+        open_error = sums_by_owner(owner, errors, count)
         panels = used + np.bincount(owner, minlength=count)
         finished = (settled_error + open_error <= allowed) | (panels > MOST_PANELS)
         # A panel that errs by less than its even share of half the allowance needs no more work.
         share = 0.5 * allowed / np.maximum(panels, 1)
         keep = finished[owner] | (errors <= share[owner]) | (half < 1e-15)
         done.append((owner[keep], low[keep], high[keep], nodes[keep], values[keep]))
-        settled_error += np.bincount(owner[keep], errors[keep], count)
-        scale += np.bincount(owner[keep], amounts[keep], count)
+        settled_error += sums_by_owner(owner[keep], errors[keep], count)
+        scale += sums_by_owner(owner[keep], amounts[keep], count)
         used += np.bincount(owner[keep], minlength=count)
         owner, low, high = owner[~keep], low[~keep], high[~keep]
         middle = (low + high) / 2

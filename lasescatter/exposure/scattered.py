@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from lasescatter.assumptions import Assumption
 from lasescatter.exposure.legs import Leg, Swing
-from lasescatter.exposure.quadrature import Panels, integrate
+from lasescatter.exposure.quadrature import Panels, integrate, sums_by_owner
 from lasescatter.exposure.sightline import Sightlines, sightlines, silhouette_angles
 from lasescatter.medium.mixture import Mixture
 
@@ -60,9 +60,6 @@ LADDER = np.concatenate([_LADDER, [np.pi / 2], np.pi - _LADDER[::-1]])
 # Relative to the unpolarised value of the leg.
 TOLERANCE = 1e-6
 
-# Observers integrated together: bounds the memory of the nodes.
-MOST_OBSERVERS_AT_ONCE = 256
-
 # Load fractions among which the greatest exposure is sought before it is refined.
 FRACTIONS = np.concatenate([np.geomspace(1e-4, 0.05, 24, endpoint=False), np.linspace(0.05, 1.0, 39)])
 
@@ -96,7 +93,6 @@ class LegLight:
     leg: Leg
     swing: Swing
     sight: Sightlines
-    nodes: Nodes
     tau_before: Floats
     """Optical thickness of each component from the beam's start to the leg's start, (components,)."""
     by_component: Floats
@@ -107,6 +103,14 @@ class LegLight:
     """Quadrature error, (observers,). [m⁻²]"""
 
 
+@dataclass(frozen=True)
+class IntegratedLeg:
+    """A leg's light with the nodes it was summed from."""
+
+    light: LegLight
+    nodes: Nodes
+
+
 def scattered(
     legs: tuple[Leg, ...],
     swings: tuple[Swing, ...],
@@ -114,7 +118,7 @@ def scattered(
     points: Floats,
     least_offsets: Floats,
     tolerance: float = TOLERANCE,
-) -> tuple[LegLight, ...]:
+) -> tuple[IntegratedLeg, ...]:
     """Irradiance at each observer from each leg, per watt at the beam's start, facing each element (E2).
 
     Parameters
@@ -126,38 +130,27 @@ def scattered(
     tolerance : float
         Relative to the unpolarised value of each leg.
     """
-    lights = []
+    found = []
     tau_before = np.zeros(len(mixture.components))
     for leg, swing, least in zip(legs, swings, least_offsets, strict=True):
-        lights.append(_leg_light(leg, swing, mixture, points, least, tau_before, tolerance))
+        sight = sightlines(leg, points, least)
+        nodes = _nodes(leg, swing, mixture, sight, points, tau_before, tolerance)
+        found.append(IntegratedLeg(_summed(leg, swing, sight, tau_before, nodes, len(points)), nodes))
         if np.isfinite(leg.length):
             tau_before = tau_before + mixture.thicknesses(leg.origin, leg.origin + leg.length * leg.direction)
-    return tuple(lights)
+    return tuple(found)
 
 
-def _leg_light(
-    leg: Leg, swing: Swing, mixture: Mixture, points: Floats, least: Floats, tau_before: Floats, tolerance: float
-) -> LegLight:
-    sight = sightlines(leg, points, least)
-    parts = []
-    for start in range(0, len(points), MOST_OBSERVERS_AT_ONCE):
-        chosen = slice(start, start + MOST_OBSERVERS_AT_ONCE)
-        some = sightlines(leg, points[chosen], least[chosen])
-        parts.append(_nodes(leg, swing, mixture, some, points[chosen], tau_before, tolerance, start))
-    nodes = _joined(parts)
-    count = len(points)
+def _summed(leg: Leg, swing: Swing, sight: Sightlines, tau_before: Floats, nodes: Nodes, count: int) -> LegLight:
     passed = np.exp(-nodes.tau_steady - nodes.tau_load) * nodes.weight
-    by_component = np.stack([np.bincount(nodes.owner, row * passed, count) for row in nodes.emitted])
-    panels = nodes.panels
     return LegLight(
         leg=leg,
         swing=swing,
         sight=sight,
-        nodes=nodes,
         tau_before=tau_before,
-        by_component=by_component,
-        unpolarised=np.bincount(nodes.owner, nodes.unpolarised * passed, count),
-        error=np.bincount(panels.owner, panels.errors(), count),
+        by_component=np.stack([sums_by_owner(nodes.owner, row * passed, count) for row in nodes.emitted]),
+        unpolarised=sums_by_owner(nodes.owner, nodes.unpolarised * passed, count),
+        error=sums_by_owner(nodes.panels.owner, nodes.panels.errors(), count),
     )
 
 
@@ -185,7 +178,6 @@ def _nodes(
     points: Floats,
     tau_before: Floats,
     tolerance: float,
-    first_owner: int,
 ) -> Nodes:
     def integrand(owner: Integers, theta: Floats) -> tuple[Floats, Floats]:
         emitted, plain, tau, _ = elements(leg, swing, mixture, sight, points, tau_before, owner[:, None], theta)
@@ -198,9 +190,8 @@ def _nodes(
     )
     steady = mixture.steady
     components = len(mixture.components)
-    owner = panels.owner + first_owner
     return Nodes(
-        owner=np.repeat(owner, 15),
+        owner=np.repeat(panels.owner, 15),
         theta=panels.nodes.ravel(),
         weight=panels.weights.ravel(),
         emitted=emitted.reshape(components, -1),
@@ -208,7 +199,7 @@ def _nodes(
         tau_steady=tau[steady].sum(axis=0).ravel(),
         tau_load=tau[~steady].sum(axis=0).ravel(),
         tau_sight=tau_sight.sum(axis=0).ravel(),
-        panels=Panels(owner, panels.low, panels.high, panels.nodes, panels.weights, panels.values),
+        panels=panels,
     )
 
 
@@ -264,25 +255,3 @@ def _double_cosine(swing: Swing, sight: Sightlines) -> Floats:
     if swing.axis is None:
         return np.zeros_like(sight.b)
     return 2 * np.square(sight.outward @ np.asarray(swing.axis)) - 1
-
-
-def _joined(parts: list[Nodes]) -> Nodes:
-    panels = [part.panels for part in parts]
-    return Nodes(
-        owner=np.concatenate([part.owner for part in parts]),
-        theta=np.concatenate([part.theta for part in parts]),
-        weight=np.concatenate([part.weight for part in parts]),
-        emitted=np.concatenate([part.emitted for part in parts], axis=1),
-        unpolarised=np.concatenate([part.unpolarised for part in parts]),
-        tau_steady=np.concatenate([part.tau_steady for part in parts]),
-        tau_load=np.concatenate([part.tau_load for part in parts]),
-        tau_sight=np.concatenate([part.tau_sight for part in parts]),
-        panels=Panels(
-            owner=np.concatenate([p.owner for p in panels]),
-            low=np.concatenate([p.low for p in panels]),
-            high=np.concatenate([p.high for p in panels]),
-            nodes=np.concatenate([p.nodes for p in panels]),
-            weights=np.concatenate([p.weights for p in panels]),
-            values=np.concatenate([p.values for p in panels]),
-        ),
-    )

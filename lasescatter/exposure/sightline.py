@@ -35,6 +35,12 @@ class Sightlines:
         """Scattering angle of the element at s. [rad]"""
         return np.arctan2(self.b, self.s0 - s)
 
+    def only(self, chosen: slice) -> Sightlines:
+        """Some of the observers."""
+        return Sightlines(
+            self.s0[chosen], self.b[chosen], self.outward[chosen], self.theta1[chosen], self.theta2[chosen]
+        )
+
 
 def sightlines(leg: Leg, points: Floats, least_offset: Floats | float = 0.0) -> Sightlines:
     """Place observers beside a leg.

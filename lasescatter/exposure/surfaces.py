@@ -25,8 +25,8 @@ SMALL_SPOT = Assumption(
 WALLS = Assumption(
     name="Walls, floor and ceiling return no light",
     direction="low",
-    size="nothing within a retinal gaze; for cornea, lens and skin up to several times the scattered light. There the upper "
-    "bound adds the return of a room drawn tightly round beams and observers, with walls of reflectance 0.5",
+    size="nothing within a retinal gaze; for cornea, lens and skin up to several times the scattered light. There the "
+    "upper bound adds the return of a room drawn tightly round beams and observers, with walls of reflectance 0.5",
     source="integrating-sphere estimate 4 rho (P_scattered + rho_stop P)/(A (1 − rho))",
 )
 

@@ -5,7 +5,8 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from lasescatter.exposure.scattered import LegLight
+from lasescatter.exposure.quadrature import sums_by_owner
+from lasescatter.exposure.scattered import IntegratedLeg
 from lasescatter.medium.mixture import Mixture
 
 Floats = NDArray[np.float64]
@@ -18,7 +19,7 @@ NOTHING_BELOW_ABOVE = 0.5
 HIGHER_ORDERS_PER_THICKNESS = 1.5
 
 
-def optical_thickness(lights: tuple[LegLight, ...], mixture: Mixture, points: Floats) -> Floats:
+def optical_thickness(lights: tuple[IntegratedLeg, ...], mixture: Mixture, points: Floats) -> Floats:
     """Largest extinction optical thickness that an observer's scattered light meets, (observers,).
 
     The largest of: along the beam; along any sight line to it; and across the load by its shortest dimension,
@@ -35,18 +36,15 @@ def optical_thickness(lights: tuple[LegLight, ...], mixture: Mixture, points: Fl
     farthest = np.zeros(count)
     crossed = np.zeros(len(mixture.components), dtype=bool)
     for light in lights:
-        leg = light.leg
-        if np.isinf(leg.length):
-            end = _counted_end(light, count)
-        else:
-            end = np.full(count, leg.length)
+        leg = light.light.leg
+        end = _counted_end(light, count) if np.isinf(leg.length) else np.full(count, leg.length)
         tip = leg.origin + end[:, None] * leg.direction
-        along = np.maximum(along, light.tau_before.sum() + mixture.thicknesses(leg.origin, tip).sum(axis=0))
+        along = np.maximum(along, light.light.tau_before.sum() + mixture.thicknesses(leg.origin, tip).sum(axis=0))
         for place in (np.broadcast_to(leg.origin, points.shape), tip):
             sight = np.maximum(sight, mixture.thicknesses(place, points).sum(axis=0))
             farthest = np.maximum(farthest, np.linalg.norm(place - points, axis=-1))
         nodes = light.nodes
-        counted = nodes.theta <= light.sight.angle_at(end)[nodes.owner]
+        counted = nodes.theta <= light.light.sight.angle_at(end)[nodes.owner]
         np.maximum.at(sight, nodes.owner[counted], nodes.tau_sight[counted])
         crossed |= np.array(
             [c.profile.span(leg.origin, leg.direction, leg.length) is not None for c in mixture.components]
@@ -58,19 +56,20 @@ def optical_thickness(lights: tuple[LegLight, ...], mixture: Mixture, points: Fl
     return np.maximum.reduce([along, sight, across])
 
 
-def _counted_end(light: LegLight, count: int) -> Floats:
+def _counted_end(light: IntegratedLeg, count: int) -> Floats:
     """Distance along an endless leg up to which COUNTED_SHARE of its light comes, (observers,). [m]"""
     nodes = light.nodes
     passed = nodes.weight * nodes.emitted.sum(axis=0) * np.exp(-nodes.tau_steady - nodes.tau_load)
     order = np.lexsort((nodes.theta, nodes.owner))
     owner, theta, passed = nodes.owner[order], nodes.theta[order], passed[order]
     running = np.cumsum(passed)
-    totals = np.bincount(owner, passed, count)
+    totals = sums_by_owner(owner, passed, count)
     before = np.concatenate([[0.0], np.cumsum(totals)[:-1]])
     reached = (running - before[owner]) >= COUNTED_SHARE * totals[owner]
     last = np.full(count, np.pi)
     np.minimum.at(last, owner[reached], theta[reached])
-    ends = light.sight.s0 - light.sight.b / np.tan(np.minimum(last, np.pi - 1e-12))
+    sight = light.light.sight
+    ends = sight.s0 - sight.b / np.tan(np.minimum(last, np.pi - 1e-12))
     return np.asarray(np.maximum(ends, 0.0))
 
 

@@ -18,7 +18,7 @@ PUFFS = Assumption(
 FORWARD_LIGHT = Assumption(
     name="An extinction reading is free of forward-scattered light",
     direction="low",
-    size="an instrument that collects forward light reads the load too low, more so for drops larger than the wavelength",
+    size="an instrument that collects forward light reads too low, more so for drops larger than the wavelength",
     source="common practice, no source",
 )
 ONE_INDEX = Assumption(

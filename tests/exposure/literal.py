@@ -34,7 +34,7 @@ def literal_sum(start, end, observer, scatterers, elements=200_000, axis=None, p
     for scattering, extinction, f11, f12, inside in scatterers:
         here = inside(x).astype(float)
         if extinction:
-            tau += extinction * np.cumsum(here) * length / elements
+            tau += extinction * (np.cumsum(here) - here / 2) * length / elements
             path = np.zeros(elements)
             for t in sample:
                 path += inside(x + t * towards)

@@ -1,4 +1,4 @@
-"""Limits and observers for the tests of judgement. Values are entries of an invented site unless a test names a source."""
+"""Limits and observers for the tests of judgement: entries of an invented site unless a test names a source."""
 
 from __future__ import annotations
 

@@ -39,7 +39,7 @@ def judged(limits=EYE_BLUE_SKIN, value=1.0, beams=None, not_judged=(), gates=(),
     ],
 )
 def test_hazards_due_by_wavelength(nanometres, expected):
-    """Bands of the published limits (ICNIRP 2013 Tables 5 and 7, table numbers from memory; stricter side at boundaries)."""
+    """Bands of the published limits (ICNIRP 2013, from memory; stricter side at boundaries)."""
     assert set(hazards_due(line(wavelength=nanometres * 1e-9), 10.0, None)) == expected
 
 
@@ -128,7 +128,7 @@ def test_pulsed_line_needs_a_limit_per_pulse_and_one_over_the_exposure():
     short = {"quantity": "radiant exposure", "durations": (1e-9, 18e-6), "per": "pulse", "train": "none"}
     both = (*over, limit(name="eye pulse", value=5e-3, **short), skin(name="skin pulse", value=200.0, **short))
     assert judged(both, value=1e-6, beams=(pulsed,)).verdict == "below limit"
-    only = tuple(entry for entry in both if entry.per == "pulse") + (blue(),)
+    only = (*(entry for entry in both if entry.per == "pulse"), blue())
     assert any("no limit over the exposure" in reason for reason in judged(only, value=1e-6, beams=(pulsed,)).reasons)
 
 

@@ -1,0 +1,5 @@
+"""`python -m lasescatter`."""
+
+from lasescatter.commands.app import main
+
+main()

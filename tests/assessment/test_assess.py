@@ -1,0 +1,295 @@
+"""Whole assessments: a folded case by hand, gates, invariance, and what makes a verdict."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+import pytest
+from assessment.sites import Everywhere, LoadReading, bay, beam, haze, limit, line, observer, replace, skin
+from numpy.testing import assert_allclose
+
+from lasescatter.assessment.assess import assess
+from lasescatter.problems import SiteError
+from lasescatter.scene import Lognormal, Pulses, SingleSize, SizeMode, Stop
+
+
+def only(scene):
+    return assess(scene).observers[0]
+
+
+def test_bay_is_below_and_about_a_thousandth_of_the_eye_limit():
+    """Side scatter of 2 W in thin haze is about a thousandth of an eye limit (common practice, no source)."""
+    found = only(bay())
+    assert found.verdict == "below limit"
+    thermal = [c for c in found.comparisons if c.hazard == "retina thermal"][0]
+    scattered = dict(thermal.by_origin)["scattered"] / thermal.limit_value
+    assert 1e-4 < scattered < 1e-2
+
+
+def test_mirror_folded_linear_beam_by_hand():
+    """Air only, 532 nm, vertical field, a fold of 90°: E3 on both legs with the running integral of the depolarised
+    dipole pattern in closed form (Chandrasekhar's phase function; Delta and beta for 288.15 K as in the reference values
+    computed from Bodhaine et al. 1999: Delta 0.957969, beta 1.316e-5 m⁻¹), s-polarised at the mirror."""
+    green = line(power=5.0, polarization="linear", electric_field=(0.0, 0.0, 1.0), key="k", name="b")
+    path = beam((0.0, 0.0, 0.0), (6.0, 0.0, 0.0), (6.0, 4.0, 0.0), lines=(green,), name="b", leaves_site=False,
+                stop=Stop(0.0, (0.0, -1.0, 0.0)), mirror_reflectance=(0.95,))  # fmt: skip
+    place = np.array([2.0, 1.5, 0.4])
+    scene = bay(beams=(path,), loads=(), observers=(observer(position=tuple(place)),),
+                air=bay().air.__class__(288.15, 101_325.0, 0.0))  # fmt: skip
+    delta, beta, purity = 0.957969, 1.316e-5, 99 / 101
+
+    def running(theta, double):
+        """Integral of F11 + q cos(2 phi) F12 over theta, over 4 pi."""
+        dipole = 0.75 * (1.5 * theta + math.sin(2 * theta) / 4)
+        other = -0.75 * (theta / 2 - math.sin(2 * theta) / 4)
+        return (delta * dipole + (1 - delta) * theta + purity * double * delta * other) / (4 * math.pi)
+
+    total = 0.0
+    for start, direction, length, power in (
+        ([0, 0, 0], [1, 0, 0], 6.0, 5.0),
+        ([6, 0, 0], [0, 1, 0], 4.0, 5.0 * 0.95),
+    ):
+        relative = place - np.array(start, dtype=float)
+        s0 = float(relative @ direction)
+        across = relative - s0 * np.array(direction)
+        b = float(np.linalg.norm(across))
+        double = 2 * (across[2] / b) ** 2 - 1
+        angles = math.atan2(b, s0), math.atan2(b, s0 - length)
+        total += power * beta / b * (running(angles[1], double) - running(angles[0], double))
+    # Extinction by air over ten metres is 1e-4; the inputs have four digits.
+    assert_allclose(only(scene).total("scattered"), total, rtol=1e-3)
+
+
+def test_polydisperse_case_against_a_literal_sum():
+    """Haze of Mie spheres summed sphere size by sphere size with miepython, element by element in Cartesian
+    coordinates, against the whole program."""
+    import miepython
+    from exposure.literal import literal_sum
+
+    median, sd, index, wavelength = 0.2e-6, 1.4, 1.45 + 0.001j, 532e-9
+    load = haze(sizes=(SizeMode(Lognormal(median, sd)),), index=index, reading=LoadReading("number", 5e9),
+                region=Everywhere(), density=None)  # fmt: skip
+    scene = bay(loads=(load,))
+    grid = np.radians(np.linspace(0, 180, 721))
+    logs = np.linspace(-6, 6, 301) * math.log(sd)
+    weight = np.exp(-0.5 * (logs / math.log(sd)) ** 2)
+    weight /= weight.sum()
+    f11, f12 = np.zeros_like(grid), np.zeros_like(grid)
+    extinction = scattering = 0.0
+    for log, w in zip(logs, weight, strict=True):
+        radius = median * math.exp(log)
+        x = 2 * math.pi * radius / wavelength
+        q_ext, q_sca, _, _ = miepython.efficiencies_mx(complex(index.real, -index.imag), x)
+        s1, s2 = miepython.S1_S2(complex(index.real, -index.imag), x, np.cos(grid), norm="wiscombe")
+        area = math.pi * radius**2
+        extinction += w * q_ext * area
+        scattering += w * q_sca * area
+        k = 2 * math.pi / wavelength
+        f11 += w * (abs(s1) ** 2 + abs(s2) ** 2) / 2 * 4 * math.pi / k**2
+        f12 += w * (abs(s2) ** 2 - abs(s1) ** 2) / 2 * 4 * math.pi / k**2
+    f11, f12 = f11 / scattering, f12 / scattering
+    number = 5e9
+    everywhere = lambda x: np.ones(x.shape[:-1])  # noqa: E731
+    slow = literal_sum(
+        [0, 0, 1.2], [9, 0, 1.2], [4, 1.5, 1.6],
+        [(number * scattering, number * extinction, lambda t: np.interp(t, grid, f11), lambda t: np.interp(t, grid, f12),
+          everywhere)],
+        elements=40_000, axis=[0, 0, 1], purity=99 / 101,
+    )  # fmt: skip
+    found = only(scene)
+    ours = sum(row.program for row in found.hand_checks if row.component == "test haze") / 2.0
+    # Air's own extinction (1.3e-5 /m over ten metres) is not in the literal sum: 2e-4.
+    assert_allclose(ours, slow, rtol=5e-4)
+
+
+def test_translating_and_turning_the_site_changes_nothing():
+    """A quarter turn about z and a shift: box faces stay square to the axes."""
+    scene = bay()
+    here = only(scene)
+
+    def moved(p):
+        return (-p[1] + 5.0, p[0] - 3.0, p[2] + 0.5)
+
+    low, high = moved((1.0, -2.0, 0.0)), moved((8.0, 2.0, 3.0))
+    box = scene.loads[0].region.__class__(
+        tuple(map(min, zip(low, high, strict=True))), tuple(map(max, zip(low, high, strict=True)))
+    )
+    path = scene.beams[0]
+    path = replace(path, points=tuple(moved(p) for p in path.points), stop=Stop(0.3, (0.0, -1.0, 0.0)))
+    there = only(
+        bay(
+            beams=(path,), loads=(replace(scene.loads[0], region=box),),
+            observers=(replace(scene.observers[0], position=moved(scene.observers[0].position)),),
+        )
+    )  # fmt: skip
+    for name in ("scattered", "scattered_compared", "diffuse"):
+        assert_allclose(there.total(name), here.total(name), rtol=1e-6)
+
+
+def test_mirror_image_places_of_an_unpolarized_beam_get_the_same():
+    scene = bay()
+    plain = replace(scene.beams[0].lines[0], polarization="unpolarized", electric_field=None)
+    path = replace(scene.beams[0], lines=(plain,))
+    sides = tuple(observer(name=str(y), key=str(y), position=(4.0, y, 1.6)) for y in (1.5, -1.5))
+    found = assess(bay(beams=(path,), observers=sides)).observers
+    assert_allclose(found[0].total("scattered"), found[1].total("scattered"), rtol=1e-9)
+
+
+def test_direct_beam_within_reach_is_not_established_and_in_it_is_above():
+    near = only(bay(observers=(observer(position=(4.0, 0.2, 1.2)),)))
+    assert near.verdict == "not established"
+    assert any("within reach" in reason for reason in near.reasons)
+    inside = only(bay(observers=(observer(position=(4.0, 0.001, 1.2)),)))
+    assert inside.verdict == "above limit"
+    assert dict(inside.comparisons[0].by_origin)["direct"] > 1e4
+
+
+def test_stop_light_is_lamberts_law():
+    """E = rho P cos/(pi r²), here seen at an angle from two metres (Lambert's law)."""
+    place = np.array([7.2, 0.8, 1.2])
+    found = only(bay(observers=(observer(position=tuple(place)),)))
+    towards = place - np.array([9, 0, 1.2])
+    r = np.linalg.norm(towards)
+    expected = 0.3 * 2.0 * (-towards[0] / r) / (math.pi * r**2)
+    assert_allclose(sum(line.diffuse_compared for line in found.lines), expected, rtol=1e-9)
+    assert found.total("diffuse") < expected
+
+
+def test_thick_load_is_never_below():
+    thick = haze(reading=LoadReading("extinction", 0.2, 532e-9))
+    found = only(bay(loads=(thick,)))
+    assert found.optical_thickness > 0.5
+    assert found.verdict == "not established"
+    assert any("too thick" in reason for reason in found.reasons)
+
+
+def test_between_a_tenth_and_a_half_the_first_order_is_raised():
+    found = only(bay(loads=(haze(reading=LoadReading("extinction", 0.04, 532e-9)),)))
+    tau = found.optical_thickness
+    assert 0.1 < tau < 0.5
+    origins = dict(found.comparisons[0].by_origin)
+    assert_allclose(origins["allowance for higher orders"] / origins["scattered"], 1.5 * tau, rtol=1e-9)
+
+
+def test_wide_beam_is_not_established():
+    wide = replace(bay().beams[0].lines[0], divergence=12e-3)
+    found = only(bay(beams=(replace(bay().beams[0], lines=(wide,)),)))
+    assert found.verdict == "not established"
+    assert any("10 mrad" in reason for reason in found.reasons)
+
+
+def test_more_power_never_lowers_any_ratio():
+    ratios = []
+    for power in (0.5, 2.0, 8.0, 1e4):
+        stronger = replace(bay().beams[0].lines[0], power=power)
+        ratios.append(only(bay(beams=(replace(bay().beams[0], lines=(stronger,)),))).ratio)
+    assert ratios == sorted(ratios)
+    assert_allclose(ratios[1] / ratios[0], 4.0, rtol=1e-9)
+
+
+def test_extinction_of_the_load_comes_out_as_stated():
+    for reading in (LoadReading("extinction", 0.01, 532e-9),):
+        component = next(c for c in assess(bay(loads=(haze(reading=reading),))).components if c.name == "test haze")
+        assert_allclose(component.extinction, 0.01, rtol=1e-12)
+        again = haze(reading=LoadReading("mass", component.mass))
+        by_mass = next(c for c in assess(bay(loads=(again,))).components if c.name == "test haze")
+        assert_allclose(by_mass.extinction, 0.01, rtol=1e-9)
+        number = haze(reading=LoadReading("number", component.number), density=None)
+        by_number = next(c for c in assess(bay(loads=(number,))).components if c.name == "test haze")
+        assert_allclose(by_number.extinction, 0.01, rtol=1e-9)
+        assert by_number.mass is None
+
+
+def test_glycol_haze_mass_extinction_is_the_tabulated_one():
+    """Droplets of mass-median diameter 0.7 µm, GSD 1.5, 1.06 g/cm³, n = 1.42: 6.28 m²/g and g = 0.760 at 532 nm
+    (computed reference table for non-absorbing droplets, mark K)."""
+    median = 0.35e-6 * math.exp(-3 * math.log(1.5) ** 2)
+    load = haze(sizes=(SizeMode(Lognormal(median, 1.5)),), index=1.42 + 0j, reading=LoadReading("mass", 1e-6))
+    component = next(c for c in assess(bay(loads=(load,))).components if c.name == "test haze")
+    assert component.mass_extinction == pytest.approx(6280, rel=0, abs=5)
+    assert component.asymmetry == pytest.approx(0.760, rel=0, abs=5e-4)
+
+
+def test_sizes_outside_the_range_name_their_key():
+    with pytest.raises(SiteError, match=r'particles\["test haze"\]\.sizes'):
+        assess(bay(loads=(haze(sizes=(SizeMode(SingleSize(5e-3)),)),)))
+
+
+def test_pulsed_beam_per_pulse_and_mean():
+    pulsed = replace(bay().beams[0].lines[0], power=0.2, pulses=Pulses(10e-3, 8e-9, 20.0, None))
+    found = only(bay(beams=(replace(bay().beams[0], lines=(pulsed,)),)))
+    (one,) = found.lines
+    assert_allclose(one.pulse_scattered * 20.0, one.scattered, rtol=1e-12)
+    assert_allclose(one.pulse_compared * 20.0, one.scattered_compared + one.diffuse_compared, rtol=1e-12)
+
+
+def test_single_shot_is_averaged_over_the_exposure():
+    shot = replace(bay().beams[0].lines[0], power=0.0, pulses=Pulses(10e-3, 8e-9, None, 1))
+    found = only(bay(beams=(replace(bay().beams[0], lines=(shot,)),)))
+    (one,) = found.lines
+    assert_allclose(one.scattered, one.pulse_scattered / 10.0, rtol=1e-12)
+
+
+def test_in_the_beam_lines():
+    (entry,) = assess(bay()).in_the_beam
+    assert [spot.place for spot in entry.spots] == ["start", "stop", "nearest to console operator"]
+    assert entry.spots[0].multiple > 1000
+    # sqrt(P/(pi EL)) for a white card with the strictest limit, 10 W/m² here.
+    assert_allclose(entry.spots[0].diffuse_distance, math.sqrt(2.0 / (math.pi * 10.0)), rtol=1e-9)
+    radius = math.hypot(3e-3, 1e-3 * entry.hazard_distance) / 2
+    assert_allclose(2.0 * (1 - math.exp(-2 * (3.5e-3 / radius) ** 2)) / (math.pi * 3.5e-3**2), 10.0, rtol=1e-9)
+
+
+def test_in_the_beam_without_limits_says_why():
+    (entry,) = assess(bay(limits=())).in_the_beam
+    assert entry.limit is None and "no entered limit" in entry.reason
+    assert entry.spots[0].multiple is None
+
+
+def test_walls_count_in_the_upper_bound_of_skin_only():
+    found = only(bay())
+    by_hazard = {c.hazard: c for c in found.comparisons}
+    assert by_hazard["skin"].ratio_high > 1.5 * by_hazard["skin"].ratio
+    assert by_hazard["retina thermal"].ratio_high == pytest.approx(by_hazard["retina thermal"].ratio, rel=1e-3)
+
+
+def test_acceptance_field_takes_less_than_the_full_field():
+    field = limit(name="narrow", acceptance=0.1)
+    found = only(bay(limits=(limit(), field, skin())))
+    wide, narrow = (next(c for c in found.comparisons if c.limit == name) for name in ("eye", "narrow"))
+    assert dict(narrow.by_origin)["scattered"] < 0.3 * dict(wide.by_origin)["scattered"]
+    assert narrow.window is not None
+
+
+def test_radiance_limit_is_compared_with_the_peak():
+    """L = P beta T/(d sin theta) × 2/sqrt(pi), largest along the leg, from the hand-check factors."""
+    found = only(bay(limits=(limit(name="bright", quantity="radiance", value=1e6),), loads=()))
+    (comparison,) = found.comparisons
+    (row,) = found.hand_checks
+    d = math.hypot(3e-3, 1e-3 * 0.0) / math.sqrt(2)
+    sine = math.sin(row.theta1)
+    f11 = 0.957969 * 0.75 * (1 + math.cos(row.theta1) ** 2) + (1 - 0.957969)
+    f12 = -0.957969 * 0.75 * sine**2
+    beta = row.scattering / (4 * math.pi) * (f11 + row.q * math.cos(2 * row.phi) * f12)
+    at_start = 2.0 * beta / (d * sine) * 2 / math.sqrt(math.pi)
+    assert dict(comparison.by_origin)["scattered"] == pytest.approx(at_start, rel=2e-3)
+
+
+def test_many_observers_are_computed_in_parts_like_one_by_one():
+    places = np.random.default_rng(1).uniform([-1, 0.6, 0.2], [10, 3, 2], (1100, 3))
+    people = tuple(observer(name=f"p{i}", key=f"p{i}", position=tuple(p)) for i, p in enumerate(places))
+    together = assess(bay(observers=people, limits=())).observers
+    for i in (0, 1023, 1024, 1099):
+        alone = only(bay(observers=(people[i],), limits=()))
+        assert_allclose(together[i].total("scattered"), alone.total("scattered"), rtol=1e-12)
+        assert together[i].optical_thickness == pytest.approx(alone.optical_thickness, rel=1e-12)
+
+
+def test_a_site_that_would_fill_the_memory_is_refused_first():
+    lines = tuple(line(name=str(i), key=str(i), wavelength=(400 + i) * 1e-9) for i in range(50))
+    points = tuple((float(i), float(i % 2), 0.0) for i in range(150))
+    path = beam(*points, lines=lines, mirror_reflectance=(1.0,) * 148)
+    people = tuple(observer(name=str(i), key=str(i)) for i in range(100))
+    with pytest.raises(SiteError, match="split the site"):
+        assess(bay(beams=(path,), observers=people))
