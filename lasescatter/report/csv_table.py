@@ -16,10 +16,14 @@ OBSERVER_HEADS = (
 )  # fmt: skip
 COMPARISON_HEADS = (
     "limit", "beam", "line", "wavelength_m", "hazard", "tissue", "mechanism", "quantity", "unit", "duration_s",
-    "time_s", "exposure_in_unit", "scattered_in_unit", "stop_in_unit", "direct_in_unit", "limit_in_unit", "ratio",
+    "time_s", "exposure_in_unit", "scattered_in_unit", "higher_orders_allowance_in_unit",
+    "stop_in_unit", "direct_in_unit", "limit_in_unit", "ratio",
     "ratio_low", "ratio_high", "optical_density", "pulses", "verdict", "note",
 )  # fmt: skip
 HEADS = OBSERVER_HEADS + COMPARISON_HEADS
+
+# Names of the origins in the order of their columns.
+ORIGINS = ("scattered", "allowance for higher orders", "stop", "direct")
 
 # A spreadsheet takes a cell that starts so for a formula and would run it.
 _FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
@@ -74,7 +78,7 @@ def _observer_cells(number: int, observer: ObserverOutcome) -> list[str]:
 def _comparison_cells(entry: Comparison, line: LineExposure | None) -> list[str]:
     origins = dict(entry.by_origin)
     wavelength = line.wavelength if line else None
-    by_origin = [_number(origins.get(word)) for word in ("scattered", "stop", "direct")]
+    by_origin = [_number(origins.get(word)) for word in ORIGINS]
     return [
         text_cell(entry.limit), text_cell(entry.beam), text_cell(entry.line), _number(wavelength), entry.hazard,
         entry.tissue, entry.mechanism, entry.quantity, entry.unit, _number(entry.duration), _number(entry.time),

@@ -14,7 +14,7 @@ if TYPE_CHECKING:
     from rich.console import Console
 
 WIDTH = 80
-NAME = 60
+NAME = 100
 OBSERVERS = 20
 """More than so many are counted by verdict and only the worst are listed."""
 

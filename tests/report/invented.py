@@ -47,6 +47,7 @@ from lasescatter.scene import (
 
 HOSTILE = '<b>&amp;</b> <a href="https://example.invalid">漢字</a> 😀 $x_1$'
 LONG = "bench at the far end of the bay where the second shift keeps its trolleys, " * 2 + "x" * 90
+OFFICER = "duty laser safety officer"
 METRE = LengthUnit("m", 1.0)
 ANGLES = np.radians(np.arange(0.0, 180.25, 0.5))
 
@@ -86,15 +87,15 @@ LOADS = (
 LIMITS = (
     Limit(
         "eye, green, ten seconds", "retina", "thermal", "irradiance", 10.0, 0.0, (400e-9, 700e-9), (10.0, 30000.0),
-        7e-3, "exposure", None, None, "edition held on site, clause 5, table 3", "duty laser safety officer", "limit[1]",
+        7e-3, "exposure", None, None, "edition held on site, clause 5, table 3", OFFICER, "limit[1]",
     ),
     Limit(
         "eye, infrared pulses", "retina", "thermal", "radiant exposure", 2e-2, 0.0, (1050e-9, 1400e-9), (1e-9, 1.3e-5),
-        7e-3, "pulse", "N^-1/4", None, "edition held on site, <clause 6>", "duty laser safety officer", "limit[2]",
+        7e-3, "pulse", "N^-1/4", None, "edition held on site, <clause 6>", OFFICER, "limit[2]",
     ),
     Limit(
         "eye, infrared, long", "retina", "thermal", "irradiance", 50.0, 0.0, (1050e-9, 1400e-9), (10.0, 30000.0),
-        7e-3, "exposure", None, 0.1, "edition held on site, clause 5, table 3", "duty laser safety officer", "limit[3]",
+        7e-3, "exposure", None, 0.1, "edition held on site, clause 5, table 3", OFFICER, "limit[3]",
     ),
 )  # fmt: skip
 
@@ -148,12 +149,17 @@ def running(values: np.ndarray) -> np.ndarray:
 def component(name: str, wavelength: float) -> ComponentSummary:
     f11, f12 = phase(name, wavelength)
     scattering = {"air": 1.3e-5, "test haze": 0.01, LOADS[1].name: 5e-5}[name] * (532e-9 / wavelength)
-    is_air = name == "air"
-    return ComponentSummary(
-        name, wavelength, scattering * (1 if is_air else 1.0001), scattering, 1.0 if is_air else 0.9999, 0.0 if is_air else 0.72,
-        None if is_air else 5.4e9, None if is_air or name != "test haze" else 6.1e-6, None if is_air else 1650.0,
-        None if is_air else 8.7e-7, None if is_air else 641, None if is_air else 4.2e-4, None if is_air else 3e-5,
+    curves = (
         tuple(ANGLES), tuple(f11), tuple(f12), tuple(running(f11)), tuple(running(f12)), tuple(running(np.abs(f12))),
+    )  # fmt: skip
+    if name == "air":
+        return ComponentSummary(
+            name, wavelength, scattering, scattering, 1.0, 0.0, None, None, None, None, None, None, None, *curves
+        )
+    mass = 6.1e-6 if name == "test haze" else None
+    return ComponentSummary(
+        name, wavelength, scattering * 1.0001, scattering, 0.9999, 0.72, 5.4e9, mass, 1650.0, 8.7e-7, 641, 4.2e-4, 3e-5,
+        *curves,
     )  # fmt: skip
 
 
@@ -257,6 +263,11 @@ def comparisons(lines: tuple[LineExposure, ...], direct: float) -> tuple[Compari
     return tuple(found)
 
 
+LEFT_OUT = HazardJudgement(
+    "skin", None, None, None, NOT_ESTABLISHED, (), (), "covered by the clothing rule for this bay"
+)
+
+
 def outcome(observer: Observer, place: int) -> ObserverOutcome:
     """Every third observer has direct light, every third none that can be judged."""
     kind = place % 3
@@ -274,15 +285,13 @@ def outcome(observer: Observer, place: int) -> ObserverOutcome:
             "the direct beam of ranging <i>& pulses is within reach (0.25 m)",
         ),
     }[verdict]
+    low, high = (None, None) if ratio is None else (ratio * 0.99, ratio * 1.04)
     parts = tuple((c.line, c.limit, c.ratio) for c in found)
     return ObserverOutcome(
         observer.name, observer.key, observer.position, verdict, reasons, ratio,
         "retina thermal, by eye, green, ten seconds" if found else "", 1.23 + 0.01 * place, "alignment beam", 0.083,
         "ranging <i>& pulses" if kind == 2 else "", lines, checks, found,
-        (
-            HazardJudgement("retina thermal", ratio, ratio and ratio * 0.99, ratio and ratio * 1.04, verdict, reasons, parts, ""),
-            HazardJudgement("skin", None, None, None, NOT_ESTABLISHED, (), (), "covered by the clothing rule for this bay"),
-        ),
+        (HazardJudgement("retina thermal", ratio, low, high, verdict, reasons, parts, ""), LEFT_OUT),
     )  # fmt: skip
 
 
@@ -299,6 +308,17 @@ def spots(beam: Beam, places: tuple[str, ...], limit: float | None) -> tuple[Bea
     )  # fmt: skip
 
 
+def in_the_beam(names: tuple[str, ...]) -> tuple[InTheBeam, ...]:
+    green, train, red = (spots(BEAMS[0], names, 10.0), spots(BEAMS[1], names, 5e-3), spots(BEAMS[1], names, None))
+    none = "no limit covers 650 nm for 10 s"
+    other = BEAMS[1].name
+    return (
+        InTheBeam(BEAMS[0].name, GREEN.name, 532e-9, LIMITS[0].name, "W/m²", 10.0, 10.0, 504.6, "", green),
+        InTheBeam(other, TRAIN.name, 1064e-9, LIMITS[1].name, "J/m²", 8e-9, 5.3e-3, 5034.0, "", train),
+        InTheBeam(other, RED.name, 650e-9, None, "", None, None, None, none, red),
+    )
+
+
 def assessment(places: tuple[tuple[str, Vector], ...] = PLACES, unit: LengthUnit = METRE) -> Assessment:
     """The invented result."""
     site = scene(places, unit)
@@ -306,15 +326,10 @@ def assessment(places: tuple[tuple[str, Vector], ...] = PLACES, unit: LengthUnit
     names = tuple(observer.name for observer in observers)
     return Assessment(
         site, worst(o.verdict for o in observers), COMPONENTS,
-        (
-            InTheBeam(BEAMS[0].name, GREEN.name, GREEN.wavelength, LIMITS[0].name, "W/m²", 10.0, 10.0, 504.6, "", spots(BEAMS[0], names, 10.0)),
-            InTheBeam(BEAMS[1].name, TRAIN.name, TRAIN.wavelength, LIMITS[1].name, "J/m²", 8e-9, 5.3e-3, 5034.0, "", spots(BEAMS[1], names, 5e-3)),
-            InTheBeam(BEAMS[1].name, RED.name, RED.wavelength, None, "", None, None, None, "no limit covers 650 nm for 10 s", spots(BEAMS[1], names, None)),
-        ),
-        observers,
+        in_the_beam(names), observers,
         (
             Assumption("particles puff above the mean load", "low", "up to several times", "physics, section 10"),
-            Assumption("spheres stand for every particle", "low", "to the side, up to 3 times", "Mishchenko et al. 1997"),
+            Assumption("spheres for every particle", "low", "to the side, up to 3 times", "invented for this test"),
             Assumption("speckle averages out", "either", "not known", "common practice, no source"),
             Assumption("nothing stands between beam and observer", "high", "not known", "by construction"),
         ),

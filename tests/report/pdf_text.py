@@ -1,0 +1,47 @@
+"""Reading the report back: nothing here knows the assessment, only the page's text."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+
+from pypdf import PdfReader
+
+HEAD = re.compile(r"^\s*Hand check (\d+): (.*)$")
+ITEM = re.compile(r"(\w+) = (\S+)(?: (W/m²|W|m|deg|1/m)(?=\s|$))?")
+
+
+def hand_check_blocks(pages: list[str]) -> dict[int, dict[str, str]]:
+    """The items of every hand-check block, as printed, by its number; its heading under "head"."""
+    found: dict[int, dict[str, str]] = {}
+    current: dict[str, str] | None = None
+    for line in "\n".join(pages).splitlines():
+        head = HEAD.match(line)
+        if head:
+            current = found.setdefault(int(head[1]), {"head": head[2]})
+        elif current is not None and line.strip().startswith("remark:"):
+            current["remark"] = line.strip()
+        elif current is not None and " = " in line:
+            for label, value, _unit in ITEM.findall(line):
+                current.setdefault(label, value)
+            if "E_program" in current and "E_program" in line:
+                continue
+        elif current is not None and "E_program" in current and "remark" not in current:
+            current = None
+    return found
+
+
+def resources(reader: PdfReader) -> Iterator[dict]:
+    """Every resource dictionary of the document, those of forms inside forms included."""
+    waiting = [page["/Resources"].get_object() for page in reader.pages]
+    seen: set[int] = set()
+    while waiting:
+        found = waiting.pop()
+        if id(found) in seen:
+            continue
+        seen.add(id(found))
+        yield found
+        for form in (found.get("/XObject") or {}).values():
+            inner = form.get_object().get("/Resources")
+            if inner is not None:
+                waiting.append(inner.get_object())
