@@ -1,0 +1,153 @@
+"""The keys and words of the site file's format that this version does not act on yet.
+
+A key of the format that is read but ignored would be a silent lie, so each of these is refused by name,
+with what to do meanwhile. The list is data; a test walks it.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+TableName = tuple[str, ...]
+
+_LEAVE = "Leave it out of the file"
+_BY_EXTINCTION = "Give the load as extinction, with at"
+
+
+@dataclass(frozen=True)
+class NotBuilt:
+    """One key of the format that is refused by name."""
+
+    table: TableName
+    """Tables that lead to it: ("particles", "load")."""
+    key: str
+    example: str
+    """A value as the format allows it, in TOML."""
+    what: str
+    """What it would do, in a few words."""
+    mend: str = _LEAVE
+    wrong: str = ""
+    """Wording in full, where "not built yet" does not say enough."""
+    instead_of: tuple[str, ...] = ()
+    """Keys that it would stand for: they are not reported missing as well."""
+
+    @property
+    def message(self) -> str:
+        """What is wrong, for the user."""
+        return self.wrong or f"not built yet ({self.what})"
+
+
+_POINT = "[0, 0, 2]"
+_TOP: TableName = ()
+_AIR: TableName = ("air",)
+_BEAM: TableName = ("beam",)
+_LINE: TableName = ("beam", "line")
+_STOP: TableName = ("beam", "beam_stop")
+_PARTICLES: TableName = ("particles",)
+_SIZES: TableName = ("particles", "sizes")
+_LOAD: TableName = ("particles", "load")
+_REGION: TableName = ("particles", "region")
+_OBSERVER: TableName = ("observer",)
+_LIMIT: TableName = ("limit",)
+
+_GEOMETRY = "Give the beam's points as path"
+_SPHERES = "Describe the particles as spheres, by sizes, index and density"
+_BOXES = 'Use shape = "everywhere", or a box that holds the whole load'
+
+NOT_BUILT: tuple[NotBuilt, ...] = (
+    NotBuilt(_TOP, "limit_set", '{ sets = ["icnirp-2013"], confirmed_by = "duty officer" }', "published limit sets",
+             "Enter the limits that apply as [[limit]], from the edition held on site"),
+    NotBuilt(_TOP, "map", '[{ plane = "horizontal", height = 1.6, from = [0, -4], to = [10, 4] }]', "maps of a plane",
+             "Put an observer at each place that matters"),
+    NotBuilt(_TOP, "room", "{ from = [0, -4, 0], to = [10, 4, 3], reflectance = 0.5 }", "light returned by walls"),
+    NotBuilt(_TOP, "reading", '[{ position = [4, 1.5, 1.6], instrument = "meter" }]', "measured values in the report"),
+    NotBuilt(_TOP, "revision", '[{ what = "first issue" }]', "the list of revisions", "Name the revision in reference"),
+    NotBuilt(_TOP, "control", '[{ what = "door interlock", who = "duty officer" }]', "control measures in the report"),
+    NotBuilt(_TOP, "visual_level", '[{ name = "glare", value = "5 uW/cm^2" }]', "interference with sight"),
+    NotBuilt(_TOP, "effort", '{ time = "1 min" }', "how long the computation may take"),
+    NotBuilt(_TOP, "datum", '{ height = "120 m" }', "a site datum", "Count heights from z = 0"),
+    NotBuilt(_TOP, "screen", "[{ from = [0, 0, 0], to = [1, 0, 2] }]", "screens and partitions"),
+    NotBuilt(_TOP, "eyewear", '[{ optical_density = 4 }]', "protective eyewear",
+             "Leave it out: the report prints the optical density that brings an exposure to its limit"),
+    NotBuilt(_TOP, "scan", '{ rate = "50 Hz" }', "moving beams", "Assess a moving beam by another method",
+             "moving beams are not computed; do not put a fixed path in their place"),
+    NotBuilt(_AIR, "model", '"standard atmosphere"', "air that changes with height",
+             "State temperature and pressure at the site; air is taken as uniform"),
+    NotBuilt(_AIR, "ground_altitude", '"120 m"', "air that changes with height",
+             "State the pressure at the site's own altitude instead"),
+    NotBuilt(_BEAM, "from", _POINT, "a path by azimuth and elevation", _GEOMETRY,
+             instead_of=("path",)),
+    NotBuilt(_BEAM, "azimuth", '"35 deg"', "a path by azimuth and elevation", _GEOMETRY,
+             instead_of=("path",)),
+    NotBuilt(_BEAM, "elevation", '"20 deg"', "a path by azimuth and elevation", _GEOMETRY,
+             instead_of=("path",)),
+    NotBuilt(_BEAM, "length", '"6 km"', "a path by azimuth and elevation", _GEOMETRY,
+             instead_of=("path",)),
+    NotBuilt(_BEAM, "axis_after", '["vertical"]', "the polarization axis after each mirror",
+             'Leave it out: after a mirror the worst axis is used where the axis is not certain'),
+    NotBuilt(_BEAM, "waist_at", '"2 m"', "beams that are focused along the path",
+             "Give diameter at the start of the path and a divergence; a converging beam is not computed"),
+    NotBuilt(_BEAM, "scan", '{ rate = "50 Hz" }', "moving beams", "Assess a moving beam by another method",
+             "moving beams are not computed; do not put a fixed path in their place"),
+    NotBuilt(_PARTICLES, "kind", '"glycol haze"', "kinds of particles from a catalogue", _SPHERES,
+             instead_of=("sizes", "index")),
+    NotBuilt(_PARTICLES, "index_file", '"index.csv"', "an index read from a file",
+             "Give the refractive index at the laser's wavelength as index", instead_of=("index",)),
+    NotBuilt(_PARTICLES, "matrix_file", '"matrix.csv"', "a measured scattering matrix", _SPHERES,
+             instead_of=("sizes", "index")),
+    NotBuilt(_PARTICLES, "henyey_greenstein", "0.8", "a stand-in for the scattering matrix", _SPHERES,
+             instead_of=("sizes", "index")),
+    NotBuilt(_PARTICLES, "albedo", "0.95", "an albedo beside a measured matrix",
+             "Leave it out: albedo follows from sizes and index"),
+    NotBuilt(_SIZES, "file", '"sizes.csv"', "a size table from a file",
+             'Use shape = "lognormal", "modified gamma" or "single"'),
+    NotBuilt(_LOAD, "meteorological_optical_range", '"120 m"', "a load by meteorological optical range",
+             'Give extinction = 2.996 divided by the range (5 % contrast), with at = "550 nm"',
+             instead_of=("extinction",)),
+    NotBuilt(_LOAD, "visual_range", '"150 m"', "a load by visual range",
+             'Give extinction = 3.912 divided by the range (2 % contrast), with at = "550 nm"',
+             instead_of=("extinction",)),
+    NotBuilt(_LOAD, "visibility", '"100 m"', "a load by visibility",
+             'Find out which is meant, and give extinction with at = "550 nm": 2.996 divided by the range for '
+             "5 % contrast, 3.912 divided by the range for 2 %; where nobody knows, the larger value",
+             "a bare visibility can mean two things: the meteorological_optical_range, at which contrast falls to "
+             "5 %, or the visual_range, at which it falls to 2 %; neither is built yet",
+             ("extinction",)),
+    NotBuilt(_LOAD, "obscuration", '"5 %/ft"', "a load by obscuration per length",
+             f"{_BY_EXTINCTION}: -ln(1 - obscuration) divided by the length",
+             instead_of=("extinction",)),
+    NotBuilt(_LOAD, "optical_density", '"0.1 /m"', "a load by optical density per length",
+             f"{_BY_EXTINCTION}: 2.303 times the optical density per length",
+             instead_of=("extinction",)),
+    NotBuilt(_LOAD, "attenuation", '"3 dB/m"', "a load by decibels per length",
+             f"{_BY_EXTINCTION}: 0.2303 times the decibels per length",
+             instead_of=("extinction",)),
+    NotBuilt(_LOAD, "transmittance", "0.8", "a load by transmittance over a length",
+             f"{_BY_EXTINCTION}: -ln(transmittance) divided by the length", instead_of=("extinction",)),
+    NotBuilt(_LOAD, "over", '"3 m"', "a load by transmittance over a length",
+             f"{_BY_EXTINCTION}: -ln(transmittance) divided by the length"),
+    NotBuilt(_LOAD, "as", '"dry"', "dry mass with growth in moist air",
+             "Give the mass of the particles as they float in the air, water included"),
+    *(NotBuilt(_REGION, key, example, "regions other than everywhere and box", _BOXES) for key, example in (
+        ("base", _POINT), ("radius", '"1 m"'), ("height", '"2 m"'), ("centre", _POINT), ("bottom", '"0 m"'),
+        ("top", '"3 m"'), ("scale_height", '"8 km"'), ("file", '"profile.csv"'))),
+    NotBuilt(_OBSERVER, "within", '{ shape = "box", from = [0, 0, 0], to = [1, 1, 2] }', "search of a region",
+             "Give position, and enough observers for the places that people can reach", instead_of=("position",)),
+    NotBuilt(_OBSERVER, "looking", "[9, 0, 1.2]", "a direction of gaze", "Leave it out: the worst direction is used"),
+    NotBuilt(_OBSERVER, "background", '"80 cd/m^2"', "visibility of the beam"),
+    NotBuilt(_OBSERVER, "optical_aid", '{ objective = "50 mm", magnification = 7 }', "binoculars and telescopes",
+             "Do not rely on this result where optical aids are used, and leave the table out"),
+    NotBuilt(_OBSERVER, "eyewear", '{ optical_density = 4 }', "protective eyewear",
+             "Leave it out: the report prints the optical density that brings an exposure to its limit"),
+    NotBuilt(_LIMIT, "replaces", '["RT-4"]', "standing in for published rows"),
+    NotBuilt(_LIMIT, "because", '"read in the edition held on site"', "standing in for published rows"),
+)  # fmt: skip
+
+NOT_BUILT_STOPS = tuple(
+    (word, 'Only finish = "matt" is computed; a mirror-like reflection must be assessed by another method')
+    for word in ("glossy", "unknown")
+)
+NOT_BUILT_SIZES = (("table", 'Use shape = "lognormal", "modified gamma" or "single"'),)
+NOT_BUILT_REGIONS = tuple(
+    (word, _BOXES) for word in ("cylinder", "sphere", "layer", "exponential", "standard atmosphere", "table")
+)

@@ -1,0 +1,117 @@
+"""Reading a site file: text to scene, or all that is wrong with it at once."""
+
+from __future__ import annotations
+
+import unicodedata
+from collections.abc import Iterator, Mapping
+from dataclasses import replace
+from pathlib import Path
+from typing import Any
+
+from pydantic import ValidationError
+
+from lasescatter.problems import Problem, SiteError
+from lasescatter.scene import Scene
+from lasescatter.site.document import SiteTable, length_unit
+from lasescatter.site.faults import Fault, Place, quoted
+from lasescatter.site.fields import Reading
+from lasescatter.site.ledger import Ledger
+from lasescatter.site.spelling import with_placeholders
+from lasescatter.site.syntax import LARGEST_FILE, decoded, parsed
+from lasescatter.site.wording import known_fields, problem_of, problems_of
+
+MOST_PROBLEMS = 300
+MOST_ENTRIES: Mapping[str, int] = {"beam": 100, "particles": 50, "observer": 1000, "limit": 500}
+MOST_LINES = 50
+
+
+def read_site(path: Path) -> Scene:
+    """Read a site file.
+
+    Raises
+    ------
+    SiteError
+        With every fault of the file: line, key path, what is wrong, what would be right.
+    """
+    file = str(path)
+    try:
+        if not path.is_file():
+            what = "this is a folder" if path.is_dir() else "there is no such file"
+            raise SiteError([Problem("", what, "Give the path of a site file")], file)
+        size = path.stat().st_size
+        if size > LARGEST_FILE:
+            raise SiteError([Problem("", f"the file has {size / 1e6:.1f} MB",
+                                     f"A site file has at most {LARGEST_FILE / 1e6:g} MB")], file)  # fmt: skip
+        content = path.read_bytes()
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or str(error)
+        raise SiteError(
+            [Problem("", f"the file cannot be read ({reason})", "Check path and permissions")], file
+        ) from None
+    return read_site_text(decoded(content, file), file)
+
+
+def read_site_text(text: str, file: str = "standard input") -> Scene:
+    """Read a site file's text; `file` names it in errors. Raises SiteError like `read_site`."""
+    document, index = parsed(text, file)
+    crowded = [problem_of(fault, document, index) for fault in _crowded_lists(document)]
+    if crowded:
+        raise SiteError(crowded, file)
+    problems = [problem_of(fault, document, index) for fault in _repeated_names(document)]
+    reading = Reading(length_unit(document.get("lengths_in")))
+    site = None
+    try:
+        site = SiteTable.model_validate(with_placeholders(document, known_fields()), context=reading)
+    except ValidationError as error:
+        problems += problems_of(error.errors(include_url=False), document, index)
+    if reading.bare_lengths and "lengths_in" not in document:
+        fault = Fault(("lengths_in",), "the key is missing and points are given as plain numbers",
+                      'Say in which unit they are, for example lengths_in = "m"')  # fmt: skip
+        problems.append(problem_of(fault, document, index))
+    if site is None or problems:
+        raise SiteError(_shortened(problems), file)
+    ledger = Ledger(document, index)
+    scene = site.to_scene(ledger)
+    return replace(scene, inputs=ledger.lines(site), source=document)
+
+
+def _shortened(problems: list[Problem]) -> list[Problem]:
+    ordered = list(SiteError(problems).problems)
+    if len(ordered) <= MOST_PROBLEMS:
+        return ordered
+    rest = len(ordered) - MOST_PROBLEMS
+    return [*ordered[:MOST_PROBLEMS], Problem("", f"{rest} more faults are not listed", "Mend those above first")]
+
+
+def _lists(document: Mapping[str, Any]) -> Iterator[tuple[Place, list[Any], int]]:
+    """The lists of tables, each with its place and the most entries it may have."""
+    for name, most in MOST_ENTRIES.items():
+        entries = document.get(name)
+        if isinstance(entries, list):
+            yield (name,), entries, most
+    beams = document.get("beam")
+    for number, beam in enumerate(beams if isinstance(beams, list) else ()):
+        if isinstance(beam, Mapping) and isinstance(beam.get("line"), list):
+            yield ("beam", number, "line"), beam["line"], MOST_LINES
+
+
+def _crowded_lists(document: Mapping[str, Any]) -> Iterator[Fault]:
+    """Lists with more entries than any work is done for."""
+    for place, entries, most in _lists(document):
+        if len(entries) > most:
+            yield Fault((*place, most), f"there are {len(entries)} entries", f"Keep it to {most}")
+
+
+def _repeated_names(document: Mapping[str, Any]) -> Iterator[Fault]:
+    """Names that stand for two things; names that look the same are the same."""
+    for place, entries, _ in _lists(document):
+        seen = set()
+        for number, entry in enumerate(entries):
+            name = entry.get("name") if isinstance(entry, Mapping) else None
+            if not isinstance(name, str) or not name.strip():
+                continue
+            same = unicodedata.normalize("NFC", name.strip())
+            if same in seen:
+                yield Fault((*place, number, "name"), f"{quoted(name)} is used twice",
+                            "Give each entry a name of its own: results are told by name")  # fmt: skip
+            seen.add(same)

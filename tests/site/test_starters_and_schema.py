@@ -1,0 +1,100 @@
+"""Starter files read as they are, and the schema agrees with the reader."""
+
+from __future__ import annotations
+
+import tomllib
+from pathlib import Path
+
+import jsonschema
+import pytest
+from site_cases import GOOD
+
+from lasescatter.site.reading import read_site_text
+from lasescatter.site.schema import site_schema
+from lasescatter.site.starters import STARTERS, starter_text
+
+SAMPLES = sorted((Path(__file__).parents[2] / "sample_sites").glob("*.toml"))
+TEXTS = {
+    **GOOD,
+    **{name: starter_text(name) for name in STARTERS},
+    **{file.name: file.read_text(encoding="utf-8") for file in SAMPLES},
+}
+VALIDATOR = jsonschema.Draft202012Validator(site_schema())
+
+
+def test_the_schema_is_a_schema():
+    jsonschema.Draft202012Validator.check_schema(site_schema())
+
+
+@pytest.mark.parametrize("name", list(TEXTS))
+def test_good_files_satisfy_the_schema(name):
+    read_site_text(TEXTS[name])
+    VALIDATOR.validate(tomllib.loads(TEXTS[name]))
+
+
+@pytest.mark.parametrize(
+    ("old", "new"),
+    [
+        ('power = "2 W"', "power = 2"),
+        ('power = "2 W"', 'power = "W"'),
+        ('power = "2 W"', 'powr = "2 W"'),
+        ('finish = "matt"', 'finish = "glossy"'),
+        ('name = "main beam"\n', ""),
+        ("position = [4, 1.5, 1.6]", "position = [4, 1.5]"),
+        ("reflectance = 0.3", "reflectance = 3"),
+        ("geometric_sd = 1.6", "geometric_sd = 1"),
+        ('"lasescatter site 1"', '"lasescatter site 2"'),
+        ('shape = "lognormal"', 'shape = "table"'),
+        ('"skin" =', '"scalp" ='),
+        ("[[observer]]", "[[people]]"),
+    ],
+)
+def test_bad_files_do_not(old, new):
+    text = GOOD["good_continuous"]
+    assert text.count(old) == 1
+    with pytest.raises(jsonschema.ValidationError):
+        VALIDATOR.validate(tomllib.loads(text.replace(old, new)))
+
+
+def test_every_key_of_the_schema_is_explained_with_an_example():
+    schema = site_schema()
+    tables = {"": schema, **schema["$defs"]}
+    assert len(tables) >= 12
+    for name, table in tables.items():
+        assert table["additionalProperties"] is False, name
+        for key, field in table["properties"].items():
+            assert field.get("description") and field.get("examples"), (name, key)
+
+
+def test_the_examples_satisfy_their_own_key():
+    schema = site_schema()
+    for name, table in {"": schema, **schema["$defs"]}.items():
+        for key, field in table["properties"].items():
+            if "$ref" in str(field):
+                continue  # an example of a whole table shows only its first keys
+            for example in field["examples"]:
+                assert not list(jsonschema.Draft202012Validator(field).iter_errors(example)), (name, key, example)
+
+
+def test_the_schema_knows_no_null():
+    assert "'null'" not in str(site_schema())
+
+
+# Keys whose example value says all there is to say.
+PLAIN = {"title", "reference", "prepared_by", "temperature", "pressure", "relative_humidity", "name", "power", "source"}
+PLAIN |= {"entered_by", "mirror_reflectance", '"skin"'}
+
+
+@pytest.mark.parametrize("name", STARTERS)
+def test_starters_are_commented_and_narrow(name):
+    """Each key has a remark on its line or above it where it first occurs."""
+    lines = starter_text(name).split("\n")
+    assert all(len(line) <= 100 for line in lines)
+    explained = {line.split(" = ")[0] for line in lines if " = " in line and " # " in line}
+    keys = {line.split(" = ")[0] for line in lines if " = " in line and not line.startswith("#")}
+    assert keys - explained <= PLAIN
+
+
+def test_there_is_no_other_starter():
+    with pytest.raises(ValueError, match="indoor, outdoor, pulsed"):
+        starter_text("space")
