@@ -10,12 +10,15 @@ from lasescatter.limits.verdict import ABOVE, BELOW, margin
 from lasescatter.report.cautions import not_covered
 from lasescatter.report.page_frame import COLUMN
 from lasescatter.report.quantities import digits, duration, length, line_label, wavelength
+from lasescatter.report.ranking import counted, greatest, worst_first
 from lasescatter.report.styles import INK, MM, heads, number_cell, paragraph, ruled, verdict_words, words
 from lasescatter.report.typography import SANS, abridged, markup
 
 FRONT_LINES = 6
 """Beam lines in the short table of the first page; all are in their own section."""
-BRIEF = 230
+FRONT_OBSERVERS = 8
+"""Observers in the table of the first page; where there are more, a full table follows."""
+BRIEF = 200
 NAME = 120
 
 
@@ -26,6 +29,7 @@ def front(assessment: Assessment, made_at: datetime, sections: dict[str, int]) -
         *_beam_lines(assessment, sections),
         *_verdicts(assessment, sections),
         *_left_out(assessment, sections),
+        *_every_verdict(assessment),
     ]
 
 
@@ -60,11 +64,6 @@ def multiple(value: float | None) -> str:
     return digits(value)
 
 
-def _greatest(spots: list[BeamSpot]) -> BeamSpot | None:
-    known = [spot for spot in spots if spot.multiple is not None]
-    return max(known, key=lambda spot: spot.multiple or 0.0, default=None)
-
-
 def _group(line: InTheBeam, word: str) -> list[BeamSpot]:
     return [spot for spot in line.spots if spot.place.startswith(word)]
 
@@ -73,7 +72,7 @@ def _several(spots: list[BeamSpot], absent: str) -> str:
     """The multiple at one spot, or the greatest of several."""
     if not spots:
         return absent
-    top = _greatest(spots)
+    top = greatest(spots)
     if top is None:
         return digits(None)
     return multiple(top.multiple) if len(spots) == 1 else f"{multiple(top.multiple)} at most"
@@ -153,8 +152,32 @@ def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
         ]),
         spaceAfter=4,
     )  # fmt: skip
+    numbered = list(enumerate(assessment.observers, start=1))
+    story: list[Any] = [paragraph("Verdict beside the beam", "section"), box]
+    if len(numbered) > FRONT_OBSERVERS:
+        counts = ", ".join(f"{count} {verdict}" for verdict, count in counted(assessment).items())
+        story.append(
+            paragraph(
+                f"{len(numbered)} observers: {counts}. The {FRONT_OBSERVERS} to look at first are below, "
+                "all are listed after this page."
+            )
+        )
+        numbered = worst_first(assessment)[:FRONT_OBSERVERS]
+    story += [
+        _verdict_table(numbered),
+        paragraph(
+            "The site's verdict is the worst of its observers'. A verdict holds for the stated inputs, limits and "
+            f"assumptions only (sections {sections['inputs']} to {sections['cautions']}); reasons in full are in "
+            f"section {sections['comparisons']}.",
+            "note",
+        ),
+    ]
+    return story
+
+
+def _verdict_table(numbered: list[tuple[int, ObserverOutcome]]) -> Any:
     rows: list[list[Any]] = [heads("No.", "Observer", "Verdict", "Greatest summed exposure", "Reasons in brief")]
-    for number, observer in enumerate(assessment.observers, start=1):
+    for number, observer in numbered:
         rows.append(
             [
                 str(number),
@@ -164,16 +187,19 @@ def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
                 paragraph(_because(observer), "cell"),
             ]
         )
+    return ruled(rows, [8, 40, 25, 37, 64])
+
+
+def _every_verdict(assessment: Assessment) -> list[Any]:
+    """The full list, where the first page has room for some only."""
+    if len(assessment.observers) <= FRONT_OBSERVERS:
+        return []
+    from reportlab.platypus import PageBreak
+
     return [
-        paragraph("Verdict beside the beam", "section"),
-        box,
-        ruled(rows, [8, 40, 25, 37, 64]),
-        paragraph(
-            "The site's verdict is the worst of its observers'. A verdict holds for the stated inputs, limits "
-            f"and assumptions only (sections {sections['inputs']} to {sections['cautions']}); reasons in full are "
-            f"in section {sections['comparisons']}.",
-            "note",
-        ),
+        PageBreak(),
+        paragraph("Verdict of every observer", "section"),
+        _verdict_table(list(enumerate(assessment.observers, start=1))),
     ]
 
 

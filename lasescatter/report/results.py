@@ -95,7 +95,7 @@ def exposure_section(assessment: Assessment) -> list[Any]:
             "the whole beam in view, on a surface that faces each element (E2); beside it the same with F12 left "
             "out, as if the light were unpolarised. <b>Compared</b>: the greatest over every part of the load "
             "that may be present, since a load that thins may let more light through; no loss in the load is "
-            "credited to stop and direct light. ± is the numerical error alone. 1 W/m² = 0.1 mW/cm²."
+            "credited to stop and direct light. ± is the numerical error alone. 1&nbsp;W/m²&nbsp;= 0.1&nbsp;mW/cm²."
         )
     ]
     for number, observer in enumerate(assessment.observers, start=1):

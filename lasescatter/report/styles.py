@@ -56,7 +56,7 @@ def paragraph_styles() -> dict[str, ParagraphStyle]:
         "head": {"fontName": BOLD, "fontSize": 7, "leading": 8.6, "spaceAfter": 0},
         "head number": {"fontName": BOLD, "fontSize": 7, "leading": 8.6, "spaceAfter": 0, "alignment": 2},
         "verdict": {"fontName": BOLD, "fontSize": 11.5, "leading": 15, "spaceAfter": 0},
-        "item": {"leftIndent": 11, "bulletIndent": 1, "spaceAfter": 1.5, "fontSize": 8, "leading": 10.6},
+        "item": {"leftIndent": 11, "bulletIndent": 1, "spaceAfter": 1, "fontSize": 8, "leading": 10.6},
         "equation": {"leftIndent": 14, "fontSize": 9, "leading": 14.5, "spaceAfter": 1},
         "mono": {"fontName": MONO, "fontSize": 6.9, "leading": 8.8, "spaceAfter": 0},
         "aside": {"fontName": OBLIQUE, "fontSize": 7.4, "leading": 9.8},

@@ -4,10 +4,11 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from lasescatter.assessment.outcome import Assessment, BeamSpot, InTheBeam
+from lasescatter.assessment.outcome import Assessment, InTheBeam
 from lasescatter.limits.verdict import BELOW, margin
 from lasescatter.report.cautions import foremost
 from lasescatter.report.quantities import digits, duration, length, line_label, wavelength
+from lasescatter.report.ranking import counted, greatest, worst_first
 from lasescatter.report.typography import abridged, plain
 
 if TYPE_CHECKING:
@@ -41,15 +42,10 @@ def print_summary(assessment: Assessment, console: Console) -> None:
     page.say("All cautions, assumptions and the hand check are in the PDF report; see also SAFETY.md.")
 
 
-def _greatest(spots: list[BeamSpot]) -> BeamSpot | None:
-    known = [spot for spot in spots if spot.multiple is not None]
-    return max(known, key=lambda spot: spot.multiple or 0.0, default=None)
-
-
 def _in_the_beam(line: InTheBeam, assessment: Assessment) -> str:
     unit = assessment.scene.length_unit
     name = f"{abridged(plain(line_label(line.beam, line.line)), NAME)}, {wavelength(line.wavelength)}"
-    top = _greatest(list(line.spots))
+    top = greatest(list(line.spots))
     if line.limit is None or top is None:
         return f"{name}: no multiple, {plain(line.reason) or 'no limit covers it'}"
     told = [
@@ -70,16 +66,12 @@ def _in_the_beam(line: InTheBeam, assessment: Assessment) -> str:
 def _observers(assessment: Assessment, page: _Page) -> None:
     shown = list(enumerate(assessment.observers, start=1))
     if len(shown) > OBSERVERS:
-        counts: dict[str, int] = {}
-        for outcome in assessment.observers:
-            counts[outcome.verdict] = counts.get(outcome.verdict, 0) + 1
-        page.say(f"{len(shown)} observers: " + ", ".join(f"{n} {verdict}" for verdict, n in sorted(counts.items())))
-        order = {"above limit": 0, "not established": 1, "below limit": 2}
-        shown.sort(key=lambda pair: (order[pair[1].verdict], -(pair[1].ratio or 0.0), pair[0]))
-        shown = shown[:OBSERVERS]
+        counts = ", ".join(f"{count} {verdict}" for verdict, count in counted(assessment).items())
+        page.say(f"{len(shown)} observers: {counts}")
+        shown = worst_first(assessment)[:OBSERVERS]
         page.say(f"The {OBSERVERS} to look at first:")
     for number, outcome in shown:
-        page.say(f"{number:>3}  {abridged(plain(outcome.name), NAME)}: {outcome.verdict}", indent=5)
+        page.say(f"{number:>3}  {outcome.verdict}: {abridged(plain(outcome.name), NAME)}", indent=5)
         told = [margin(outcome.ratio)]
         if outcome.governing:
             told.append(plain(outcome.governing))

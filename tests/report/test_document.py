@@ -10,6 +10,7 @@ from collections.abc import Iterator
 from dataclasses import replace
 from datetime import UTC, datetime
 from io import BytesIO
+from pathlib import Path
 
 import numpy as np
 import pypdfium2
@@ -109,8 +110,9 @@ def test_components_are_printed(result: Assessment, text: str) -> None:
 
 
 @pytest.mark.parametrize("page_size", ["A4", "Letter"])
-def test_head_on_every_page(result: Assessment, page_size: str) -> None:
-    reader = PdfReader(BytesIO(pdf_bytes(result, page_size, MADE_AT)))
+def test_head_on_every_page(result: Assessment, document: bytes, page_size: str) -> None:
+    data = document if page_size == "A4" else pdf_bytes(result, page_size, MADE_AT)
+    reader = PdfReader(BytesIO(data))
     count = len(reader.pages)
     for number, page in enumerate(reader.pages, start=1):
         shown = " ".join(page.extract_text().split())
@@ -173,8 +175,16 @@ def test_metadata(result: Assessment, reader: PdfReader) -> None:
     assert info["/CreationDate"] == info["/ModDate"] == "D:20261201102030Z"
 
 
-def test_same_bytes_for_the_same_time(result: Assessment, document: bytes, tmp_path) -> None:
-    write_pdf(assessment(), tmp_path / "again.pdf", "A4", MADE_AT)
+def test_same_bytes_for_the_same_time(document: bytes, tmp_path: Path) -> None:
+    """Also: a time left out is that of the assessment; and the time it takes, with everything loaded.
+
+    The goal is 3 s; twice that is allowed for a machine that does other work.
+    """
+    made = assessment()
+    assert datetime.fromisoformat(made.provenance.made_at) == MADE_AT
+    started = time.perf_counter()
+    write_pdf(made, tmp_path / "again.pdf")
+    assert time.perf_counter() - started < 6.0
     assert (tmp_path / "again.pdf").read_bytes() == document
 
 
@@ -182,12 +192,6 @@ def test_time_changes_the_date_only(pages: list[str], result: Assessment) -> Non
     later = datetime(2027, 1, 2, 3, 4, 5, tzinfo=UTC)
     other = [page.extract_text() for page in PdfReader(BytesIO(pdf_bytes(result, "A4", later))).pages]
     assert [page.replace("2027-01-02T03:04:05", "2026-12-01T10:20:30") for page in other] == pages
-
-
-def test_time_left_out_is_that_of_the_assessment(result: Assessment) -> None:
-    reader = PdfReader(BytesIO(pdf_bytes(result)))
-    assert reader.metadata is not None
-    assert reader.metadata["/CreationDate"] == "D:20261201102030Z"
 
 
 # ------------------------------------------------------------------ hand check
@@ -385,20 +389,15 @@ def test_a_hundred_observers() -> None:
     took = time.perf_counter() - started
     assert took < 40
     pages = [page.extract_text() for page in reader.pages]
-    assert "Site verdict" in pages[0]
+    for wanted in ("Site verdict", "100 observers: 33 above limit, 33 not established, 34 below limit", "Not covered"):
+        assert wanted in " ".join(pages[0].split())
+    assert "Read the cautions" in pages[0]
     assert len(hand_check_blocks(pages)) == sum(len(observer.hand_checks) for observer in made.observers)
-    # The verdict table goes on over the page with its head repeated.
-    assert "Greatest summed" in pages[1]
+    # The full list goes on over the page with its head repeated.
+    assert "Verdict of every observer" in pages[1]
+    assert "Greatest summed" in pages[1] and "Greatest summed" in pages[2]
     for number, observer in enumerate(made.observers, start=1):
         assert any(f"Observer {number}: {observer.name}" in page for page in pages)
-
-
-def test_a_sample_sized_document_is_quick(result: Assessment, document: bytes) -> None:
-    """Goal of 3 s with everything loaded; twice that is allowed for a machine that does other work."""
-    assert document
-    started = time.perf_counter()
-    pdf_bytes(result, "A4", MADE_AT)
-    assert time.perf_counter() - started < 6.0
 
 
 def test_the_places_are_those_of_the_fixture(result: Assessment) -> None:
