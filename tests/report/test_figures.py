@@ -28,29 +28,30 @@ from .invented import BEAMS, GREEN, LOADS, assessment, many, scene
 POINTS_PER_MM = 72 / 25.4
 
 
-def test_files_and_their_names(result: Assessment, tmp_path: Path) -> None:
-    written = write_figures(result, tmp_path, "bay")
+@pytest.fixture(scope="module")
+def written(result: Assessment, tmp_path_factory: pytest.TempPathFactory) -> list[Path]:
+    return write_figures(result, tmp_path_factory.mktemp("figures"), "bay")
+
+
+def test_files_and_their_names(written: list[Path]) -> None:
     assert [path.name for path in written] == [
         "bay_plan.svg", "bay_plan.png", "bay_elevation.svg", "bay_elevation.png", "bay_phase.svg", "bay_phase.png",
     ]  # fmt: skip
-    assert sorted(path.name for path in tmp_path.iterdir()) == sorted(path.name for path in written)
+    assert sorted(written[0].parent.iterdir()) == sorted(written)
 
 
 def test_no_phase_figure_without_components(result: Assessment, tmp_path: Path) -> None:
     assert len(write_figures(replace(result, components=()), tmp_path, "bay")) == 4
 
 
-def test_same_files_every_time(result: Assessment, tmp_path: Path) -> None:
-    first, second = tmp_path / "a", tmp_path / "b"
-    first.mkdir()
-    second.mkdir()
-    for one, other in zip(write_figures(result, first, "s"), write_figures(result, second, "s"), strict=True):
+def test_same_files_every_time(result: Assessment, written: list[Path], tmp_path: Path) -> None:
+    for one, other in zip(written, write_figures(result, tmp_path, "bay"), strict=True):
         assert one.read_bytes() == other.read_bytes(), one.name
 
 
-def test_vector_files_stand_alone(result: Assessment, tmp_path: Path) -> None:
+def test_vector_files_stand_alone(written: list[Path]) -> None:
     """Well-formed, no raster inside, no reference outside, letters as outlines."""
-    for path in write_figures(result, tmp_path, "s"):
+    for path in written:
         if path.suffix != ".svg":
             continue
         root = ElementTree.parse(path).getroot()
@@ -62,11 +63,11 @@ def test_vector_files_stand_alone(result: Assessment, tmp_path: Path) -> None:
                     assert value.startswith("#")
 
 
-def test_pictures_have_ink_and_no_colour_carries_meaning_alone(result: Assessment, tmp_path: Path) -> None:
-    """The two beams stay apart in grey: their inks differ in lightness, and their strokes in pattern."""
+def test_pictures_have_ink_and_no_colour_carries_meaning_alone(written: list[Path]) -> None:
+    """Beams stay apart without colour: every ink has its own stroke pattern."""
     from lasescatter.report.ink import BEAM_DASHES, BEAM_INKS
 
-    for path in write_figures(result, tmp_path, "s"):
+    for path in written:
         if path.suffix == ".png":
             grey = np.asarray(Image.open(path).convert("L"))
             assert grey.shape[1] == pytest.approx(SHEET / 25.4 * 200, abs=1, rel=0)
