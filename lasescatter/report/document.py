@@ -26,6 +26,9 @@ SECTIONS = {
     "review": "Review and sign-off",
 }
 
+_LEAST_ROOM = 130
+"""Left on a page, a section begins there. [pt]"""
+
 
 def write_pdf(assessment: Assessment, path: Path, page_size: str = "A4", made_at: datetime | None = None) -> None:
     """Write the report.
@@ -83,7 +86,7 @@ def _story(assessment: Assessment, moment: datetime, sizes: dict[str, tuple[floa
     def head(name: str) -> Any:
         return SectionHead(numbers[name], SECTIONS[name])
 
-    from reportlab.platypus import PageBreak
+    from reportlab.platypus import CondPageBreak, PageBreak
 
     bodies: dict[str, list[Any]] = {
         "drawings": site_section(assessment, sizes),
@@ -103,5 +106,5 @@ def _story(assessment: Assessment, moment: datetime, sizes: dict[str, tuple[floa
     for name, body in bodies.items():
         if name in ("drawings", "hand", "inputs", "review"):
             story.append(PageBreak())
-        story += [head(name), *body]
+        story += [CondPageBreak(_LEAST_ROOM), head(name), *body]
     return story

@@ -11,8 +11,6 @@ from lasescatter.report.styles import heads, paragraph, ruled, words
 from lasescatter.report.typography import SANS, markup
 from lasescatter.scene import QUANTITY_UNITS, Limit
 
-ERRS = {"low": "low: the true exposure can be larger", "either": "either way", "high": "high: errs on the careful side"}
-
 
 def input_section(assessment: Assessment) -> list[Any]:
     """Every value of the site file, as written and as read."""
@@ -56,12 +54,17 @@ def limit_section(assessment: Assessment) -> list[Any]:
     ]
 
 
+def _together(text: str) -> str:
+    """A number and its unit, not to be parted at a line's end."""
+    return text.replace(" ", "\u00a0")
+
+
 def _value(limit: Limit) -> str:
     unit = QUANTITY_UNITS[limit.quantity]
-    text = f"{trimmed(limit.value)} {unit}"
+    text = _together(f"{trimmed(limit.value)} {unit}")
     other = per_square_centimetre(limit.value, unit)
     if other:
-        text += f" ({other})"
+        text += f" ({_together(other)})"
     if limit.time_exponent:
         text += f" × (t / 1 s)^{trimmed(limit.time_exponent)}"
     return text
@@ -75,7 +78,7 @@ def _cover(limit: Limit) -> str:
 
 
 def _averaging(limit: Limit) -> str:
-    told = [f"{small_length(limit.aperture, None)} aperture"]
+    told = [f"{_together(small_length(limit.aperture, None))} aperture"]
     if limit.acceptance is not None:
         told.append(f"{trimmed(limit.acceptance * 1e3)} mrad field")
     if limit.per == "pulse":
@@ -86,11 +89,11 @@ def _averaging(limit: Limit) -> str:
 def assumption_section(assessment: Assessment) -> list[Any]:
     """Approximations in force, those that err low first."""
     order = {"low": 0, "either": 1, "high": 2}
-    rows: list[list[Any]] = [heads("Estimate errs", "Assumption", "By how much", "Source")]
+    rows: list[list[Any]] = [heads("Estimate", "Assumption", "By how much", "Source")]
     for entry in sorted(assessment.assumptions, key=lambda entry: order[entry.direction]):
         rows.append(
             [
-                paragraph(ERRS[entry.direction], "cell bold" if entry.direction == "low" else "cell"),
+                paragraph(entry.direction, "cell bold" if entry.direction == "low" else "cell"),
                 words(entry.name, limit=900),
                 words(entry.size, limit=900),
                 words(entry.source, limit=400),
@@ -100,9 +103,10 @@ def assumption_section(assessment: Assessment) -> list[Any]:
         return [paragraph("None is on record.")]
     return [
         paragraph(
-            "“Low” makes the printed exposure smaller than the true one and can hide a hazard; these come first."
+            "“Low”: the true exposure can be larger than printed, which can hide a hazard; these come first. “High”: "
+            "it errs on the careful side. “Either”: both can happen."
         ),
-        ruled(rows, [34, 66, 40, 34]),
+        ruled(rows, [15, 55, 66, 38]),
     ]
 
 

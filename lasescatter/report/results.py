@@ -223,7 +223,7 @@ def _judged(number: int, observer: ObserverOutcome) -> list[Any]:
     ]  # fmt: skip
     rows[0][-1] = heads("Verdict")[0]
     rows += [_comparison_row(entry) for entry in observer.comparisons]
-    story.append(ruled(rows, [30, 24, 16, 20, 18, 14, 22, 8, 22], numeric=(3, 4, 5, 6, 7)))
+    story.append(ruled(rows, [30, 21, 16, 22, 20, 13, 22, 8, 22], numeric=(3, 4, 5, 6, 7)))
     return story
 
 

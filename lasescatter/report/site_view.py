@@ -12,6 +12,7 @@ Kind = Literal["plan", "elevation"]
 Point = tuple[float, float]
 
 NICE = (1.0, 2.0, 2.5, 5.0)
+SCALES = (1.0, 2.0, 2.5, 5.0, 7.5)
 MARGIN = 9.0
 """Kept free around what is drawn. [mm]"""
 WIDTH = 156.0
@@ -63,11 +64,11 @@ class View:
         return _HIDDEN[self.axes]
 
 
-def nice_at_least(value: float) -> float:
-    """The least of 1, 2, 2.5, 5 × 10^k that is not below a value."""
+def nice_at_least(value: float, digits: tuple[float, ...] = NICE) -> float:
+    """The least digit × 10^k that is not below a value; digits in rising order, from 1."""
     power = math.floor(math.log10(value)) - 1
     for exponent in range(power, power + 4):
-        for digit in NICE:
+        for digit in digits:
             candidate = digit * 10.0**exponent
             if candidate >= value * (1 - 1e-9):
                 return candidate
@@ -128,7 +129,7 @@ def views(scene: Scene) -> dict[Kind, View]:
     # The elevation looks square at the longer of the two level extents.
     side = (0, 2) if high[0] - low[0] >= high[1] - low[1] else (1, 2)
     shown: dict[Kind, tuple[int, int]] = {"plan": (0, 1), "elevation": side}
-    scales = {kind: nice_at_least(_needed(low, high, axes, kind)) for kind, axes in shown.items()}
+    scales = {kind: nice_at_least(_needed(low, high, axes, kind), SCALES) for kind, axes in shown.items()}
     if max(scales.values()) <= 2.5 * min(scales.values()):
         scales = dict.fromkeys(scales, max(scales.values()))
     return {kind: _view(kind, axes, scales[kind], low, high) for kind, axes in shown.items()}

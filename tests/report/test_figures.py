@@ -123,7 +123,9 @@ def test_unit_of_the_site(tmp_path: Path) -> None:
     assert figure.axes[0].get_xlabel() == "x [ft]"
     told = [text.get_text() for text in figure.axes[1].texts]
     bar = next(text for text in told if re.fullmatch(r"[\d.]+ ft", text))
-    assert float(bar.split()[0]) * 304.8 / 100 <= 55
+    scale = float(next(re.search(r"1 : (\d+)", text)[1] for text in told if "1 : " in text))
+    # 1 ft = 304.8 mm.
+    assert 15 <= float(bar.split()[0]) * 304.8 / scale <= 55
 
 
 def site_with(*beams: Beam, box: Box | None = None) -> Scene:
