@@ -101,7 +101,7 @@ def assess(
         components=tuple(summary for group in summaries.values() for summary in group),
         in_the_beam=in_the_beam(scene),
         observers=observers,
-        assumptions=_assumptions(scene, len(summaries)),
+        assumptions=_assumptions(scene, set(summaries)),
         cautions=cautions(),
         provenance=_provenance(made_at),
     )
@@ -247,7 +247,7 @@ def _line_exposure(field: LineField, index: int, power: float) -> LineExposure:
     )
 
 
-def _assumptions(scene: Scene, wavelengths: int) -> tuple[Assumption, ...]:
+def _assumptions(scene: Scene, wavelengths: set[float]) -> tuple[Assumption, ...]:
     found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, DRY_AIR]
     if scene.loads:
         found += [SIZE_AVERAGE, direct_light.NO_EXTINCTION]

@@ -38,6 +38,8 @@ CURVE_ANGLES = np.radians(
     np.concatenate([np.arange(0, 2, 0.25), np.arange(2, 10, 0.5), np.arange(10, 180, 1.0), [180.0]])
 )
 
+ROUNDING = 1e-12
+
 
 class SiteOptics:
     """Particle optics of a scene, each load and wavelength computed once."""
@@ -115,6 +117,8 @@ def _summary(
 ) -> ComponentSummary:
     mass = None if amount is None else amount.mass
     f11, f12 = component.matrix.at(CURVE_ANGLES)
+    # F12 is 0 straight on and straight back by symmetry: rounding is not printed as a number.
+    f12 = np.where(np.abs(f12) < ROUNDING * f11.max(), 0.0, f12)
     running, running_12, running_12_abs = component.matrix.running(CURVE_ANGLES)
     return ComponentSummary(
         name=component.name,
@@ -140,4 +144,5 @@ def _summary(
 
 
 def _asymmetry(matrix: ScatteringMatrix) -> float:
-    return float(matrix.asymmetry)
+    asymmetry = float(matrix.asymmetry)
+    return 0.0 if abs(asymmetry) < ROUNDING else asymmetry

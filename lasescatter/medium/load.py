@@ -84,13 +84,14 @@ def concentration(load: Load, optics_at: Callable[[float], ParticleOptics], any_
     return Concentration(number, mass)
 
 
-def assumptions_of(loads: tuple[Load, ...], wavelengths: int) -> tuple[Assumption, ...]:
-    """What the loads' optics rest on."""
+def assumptions_of(loads: tuple[Load, ...], wavelengths: set[float]) -> tuple[Assumption, ...]:
+    """What the loads' optics rest on, for beams of some wavelengths [m]."""
     if not loads:
         return ()
     found = [PUFFS, SPHERES]
     if any(load.reading.kind == "extinction" for load in loads):
         found.append(FORWARD_LIGHT)
-    if wavelengths > 1 or any(load.reading.kind == "extinction" and load.reading.at for load in loads):
+    used = wavelengths | {load.reading.at for load in loads if load.reading.at is not None}
+    if len(used) > 1:
         found.append(ONE_INDEX)
     return tuple(found)
