@@ -34,6 +34,7 @@ if TYPE_CHECKING:
 SHEET = 174.0
 """Width of a figure. [mm]"""
 _LEFT, _TOP, _STRIP = 15.0, 6.5, 19.0
+_LONGEST_BAR = 70.0
 _NAMED_OBSERVERS = 8
 _NAME_LENGTH = 28
 _LABEL_SHARES = (0.5, 0.36, 0.64, 0.25, 0.75)
@@ -106,8 +107,8 @@ def _frame(axes: Axes, view: View, unit: LengthUnit) -> None:
 def _scale_bar(axes: Axes, view: View, unit: LengthUnit, y: float) -> None:
     """A bar of a round length in the site's unit."""
     per_unit = 1000.0 * unit.metres / view.scale
-    power = math.floor(math.log10(55.0 / per_unit))
-    size = max(digit * 10.0**power for digit in (1.0, 2.0, 5.0) if digit * 10.0**power * per_unit <= 55.0)
+    power = math.floor(math.log10(_LONGEST_BAR / per_unit))
+    size = max(digit * 10.0**power for digit in (1.0, 2.0, 5.0) if digit * 10.0**power * per_unit <= _LONGEST_BAR)
     length = size * per_unit
     parts = 5 if f"{size:.0e}"[0] == "5" else 4 if f"{size:.0e}"[0] == "2" else 5
     for i in range(parts):

@@ -125,7 +125,7 @@ def test_unit_of_the_site(tmp_path: Path) -> None:
     bar = next(text for text in told if re.fullmatch(r"[\d.]+ ft", text))
     scale = float(next(re.search(r"1 : (\d+)", text)[1] for text in told if "1 : " in text))
     # 1 ft = 304.8 mm.
-    assert 15 <= float(bar.split()[0]) * 304.8 / scale <= 55
+    assert 15 <= float(bar.split()[0]) * 304.8 / scale <= 70
 
 
 def site_with(*beams: Beam, box: Box | None = None) -> Scene:
