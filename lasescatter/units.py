@@ -38,9 +38,7 @@ _NAMES: Mapping[str, str] = {
 }
 
 UNITS: Mapping[str, tuple[str, str]] = {
-    name: (sort, long)
-    for sort, pairs in _NAMES.items()
-    for name, long in (pair.split("=") for pair in pairs.split())
+    name: (sort, long) for sort, pairs in _NAMES.items() for name, long in (pair.split("=") for pair in pairs.split())
 }
 """Unit name as typed: what it measures, and its name in the unit library."""
 

@@ -8,7 +8,7 @@ import string
 from decimal import Decimal
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from lasescatter.units import KINDS, UNITS, QuantityError, fitting_units, parse_quantity, si_text
@@ -183,6 +183,7 @@ def test_both_readings_of_a_wrong_case_are_offered():
     assert "mW or MW" in caught.value.mend
 
 
+@settings(deadline=None)
 @given(
     number=st.decimals(allow_nan=False, allow_infinity=False, min_value=-(10**9), max_value=10**9, places=6),
     kind=st.sampled_from([kind for kind in KINDS if kind != "temperature"]),
@@ -197,6 +198,7 @@ def test_numbers_survive_any_fitting_unit(number, kind, data):
     assert value == pytest.approx(float(number * one), rel=4e-16, abs=0)
 
 
+@settings(deadline=None)
 @given(value=st.floats(min_value=1e-30, max_value=1e30), kind=st.sampled_from(list(KINDS)))
 def test_what_is_printed_reads_back(value, kind):
     """SI text has nine digits and is itself a value that reads, except for the bare fraction."""
@@ -210,6 +212,7 @@ def test_what_is_printed_reads_back(value, kind):
 NEARLY = st.text(alphabet="0123456789.eE+-/*^() \tWmJskgcnuµr²·%±" + string.ascii_lowercase[:6], max_size=30)
 
 
+@settings(deadline=None)
 @given(text=st.one_of(st.text(max_size=60), NEARLY), kind=st.sampled_from(list(KINDS)))
 def test_junk_raises_nothing_but_its_own_error(text, kind):
     try:

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import json
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -17,7 +17,7 @@ from pydantic_core import PydanticCustomError
 
 Place = tuple[str | int, ...]
 
-_BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
+_BARE_KEY = re.compile(r"[A-Za-z0-9_-]{1,60}")
 _SHOWN = 60
 
 
@@ -67,18 +67,21 @@ def quoted(value: Any) -> str:
     return f"a date or time ({value})"
 
 
-def spelled(place: Place, document: Any) -> str:
-    """A place in the contract's spelling. `document` is the file as parsed; it lends the names."""
+def spelled(place: Place, document: Any, spell: Callable[[str], str] = escaped) -> str:
+    """A place in the contract's spelling. `document` is the file as parsed; it lends the names.
+
+    `spell` writes a name: in full, or with `quoted` short enough for a message.
+    """
     words, here = "", document
     for step in place:
         here = _below(here, step)
         if isinstance(step, int):
             name = here.get("name") if isinstance(here, Mapping) else None
-            words += f"[{escaped(name)}]" if isinstance(name, str) and name.strip() else f"[{step + 1}]"
+            words += f"[{spell(name)}]" if isinstance(name, str) and name.strip() else f"[{step + 1}]"
         elif _BARE_KEY.fullmatch(step):
             words += f".{step}" if words else step
         else:
-            words += f"[{escaped(step)}]"
+            words += f"[{spell(step)}]"
     return words
 
 

@@ -35,20 +35,20 @@ class Ledger:
     def lines(self, site: Table) -> tuple[InputLine, ...]:
         """All inputs in the order of the file; the defaults of a table follow what it states."""
         entries = []
+        ends = self._ends()
         for place, value in _values((), site):
             where = place_in_file(place, self.document)
             spot = self.index.spots.get(where)
-            written = self._written(where, value)
-            line = InputLine(self.spell(where), written, self._explained.get(place) or as_read(value))
+            line = InputLine(self.spell(where), self._written(where), self._explained.get(place) or as_read(value))
             entries.append((spot.start if spot else len(self.index.text), 0, line))
         for place, text in self._taken:
             where = place_in_file(place, self.document)
             line = InputLine(self.spell(where), "", text, stated=False)
-            entries.append((self._end_of(where[:-1]), 1, line))
+            entries.append((ends.get(where[:-1], len(self.index.text)), 1, line))
         entries.sort(key=lambda entry: entry[:2])
         return tuple(line for _, _, line in entries)
 
-    def _written(self, where: Place, value: Any) -> str:
+    def _written(self, where: Place) -> str:
         raw: Any = self.document
         for step in where:
             raw = raw[step]
@@ -56,9 +56,14 @@ class Ledger:
             return raw
         return self.index.written(where) or _as_toml(raw)
 
-    def _end_of(self, table: Place) -> int:
-        starts = [spot.start for place, spot in self.index.spots.items() if place[: len(table)] == table]
-        return max(starts, default=len(self.index.text))
+    def _ends(self) -> dict[Place, int]:
+        """Where the last value of each table begins."""
+        ends: dict[Place, int] = {}
+        for place, spot in self.index.spots.items():
+            for length in range(len(place)):
+                table = place[:length]
+                ends[table] = max(ends.get(table, 0), spot.start)
+        return ends
 
 
 def as_read(value: Any) -> str:
@@ -98,8 +103,5 @@ def _values(place: Place, value: Any) -> Iterator[tuple[Place, Any]]:
     elif isinstance(value, tuple) and value and all(isinstance(entry, Table) for entry in value):
         for number, entry in enumerate(value):
             yield from _values((*place, number), entry)
-    elif isinstance(value, Mapping):
-        for name, entry in value.items():
-            yield (*place, name), entry
-    elif not (isinstance(value, tuple) and not value and place and place[-1] in ("beam", "particles")):
+    else:
         yield place, value

@@ -5,6 +5,7 @@ from __future__ import annotations
 import unicodedata
 from collections.abc import Iterator, Mapping
 from dataclasses import replace
+from itertools import islice
 from pathlib import Path
 from typing import Any
 
@@ -21,6 +22,9 @@ from lasescatter.site.syntax import LARGEST_FILE, decoded, parsed
 from lasescatter.site.wording import known_fields, problem_of, problems_of
 
 MOST_PROBLEMS = 300
+"""Problems that are told."""
+MOST_WORDED = 1000
+"""Faults that are put into words at all: a site with that many is no site."""
 MOST_ENTRIES: Mapping[str, int] = {"beam": 100, "particles": 50, "observer": 1000, "limit": 500}
 MOST_LINES = 50
 
@@ -63,7 +67,7 @@ def read_site_text(text: str, file: str = "standard input") -> Scene:
     try:
         site = SiteTable.model_validate(with_placeholders(document, known_fields()), context=reading)
     except ValidationError as error:
-        problems += problems_of(error.errors(include_url=False), document, index)
+        problems += islice(problems_of(error.errors(include_url=False), document, index), MOST_WORDED)
     if reading.bare_lengths and "lengths_in" not in document:
         fault = Fault(("lengths_in",), "the key is missing and points are given as plain numbers",
                       'Say in which unit they are, for example lengths_in = "m"')  # fmt: skip
@@ -79,8 +83,7 @@ def _shortened(problems: list[Problem]) -> list[Problem]:
     ordered = list(SiteError(problems).problems)
     if len(ordered) <= MOST_PROBLEMS:
         return ordered
-    rest = len(ordered) - MOST_PROBLEMS
-    return [*ordered[:MOST_PROBLEMS], Problem("", f"{rest} more faults are not listed", "Mend those above first")]
+    return [*ordered[:MOST_PROBLEMS], Problem("", "further faults are not listed", "Mend those above first")]
 
 
 def _lists(document: Mapping[str, Any]) -> Iterator[tuple[Place, list[Any], int]]:

@@ -14,6 +14,9 @@ from typing import Any
 
 from lasescatter.site.contract import NOT_BUILT, NotBuilt, TableName
 
+MOST_GUESSES = 100
+"""Unknown keys of one table whose meaning is guessed."""
+
 _LISTS = {("beam",), ("beam", "line"), ("particles",), ("observer",), ("limit",)}
 
 # Other names and spellings, to the key that may be meant.
@@ -81,9 +84,8 @@ def unknown_key(table: TableName, key: str, known: Mapping[TableName, Collection
         return wrong, f"It belongs in {header(elsewhere[0])}" if elsewhere[0] else "It belongs at the top of the file"
     entry = next((entry for entry in NOT_BUILT if entry.key == key), None)
     if entry:
-        return f"{entry.message}; it would belong in {header(entry.table) if entry.table else 'the top of the file'}", (
-            entry.mend
-        )
+        home = header(entry.table) if entry.table else "the top of the file"
+        return f"{entry.message}; it would belong in {home}", entry.mend
     return wrong, f"Known here are {', '.join(read)}"
 
 
@@ -115,9 +117,7 @@ def with_placeholders(
             ]
         else:
             result[key] = value
-    for key in document:
-        if key in keys:
-            continue
+    for key in [key for key in document if key not in keys][:MOST_GUESSES]:
         entry = not_built(table, key)
         near = nearest(key, list(keys)) if entry is None else None
         stood_for = [name for name in (entry.instead_of if entry else (near,)) if name and name not in result]

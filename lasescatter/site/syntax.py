@@ -55,8 +55,8 @@ def parsed(text: str, file: str) -> tuple[dict[str, Any], LineIndex]:
         except tomllib.TOMLDecodeError as error:
             problem = _syntax_problem(error, text, index)
         except (ValueError, RecursionError):
-            problem = Problem("", "a number or date on this line cannot be read",
-                              "Check the digits on this line", index.stopped)  # fmt: skip
+            problem = Problem("", "the file holds a number that is far too long to be read",
+                              "Look for a number of thousands of digits", index.stopped)  # fmt: skip
     raise SiteError([problem], file)
 
 
@@ -73,6 +73,9 @@ def _beyond_bounds(index: LineIndex) -> Problem | None:
                        index.too_many)  # fmt: skip
     return None
 
+
+_LONGEST_LINE = 300
+"""Characters of a line that is looked at more closely."""
 
 _PLACE = re.compile(r"\(at (?:line (\d+), column (\d+)|end of document)\)\s*$")
 _BARE_VALUE = re.compile(
@@ -125,12 +128,13 @@ def _syntax_problem(error: tomllib.TOMLDecodeError, text: str, index: LineIndex)
     lines = text.split("\n")
     here = lines[line - 1] if line <= len(lines) else ""
     unread = said.startswith(("Invalid value", "Expected newline", "Invalid date"))
-    bare = _BARE_VALUE.match(here)
-    if bare and unread:
+    unread = unread and len(here) <= _LONGEST_LINE
+    bare = _BARE_VALUE.match(here) if unread else None
+    if bare:
         return Problem("", f"the value of {bare['key']} has a unit but no quotes",
                        f'Write {bare["key"]} = "{bare["value"]}"', line)  # fmt: skip
-    word = _BARE_WORD.match(here)
-    if word and unread:
+    word = _BARE_WORD.match(here) if unread else None
+    if word:
         return Problem("", f"the value of {word['key']} is text but has no quotes",
                        f'Write {word["key"]} = "{word["value"]}"', line)  # fmt: skip
     for begins, (wrong, mend) in _PARSER_SAYS.items():

@@ -44,7 +44,7 @@ class Seen:
 class Table(BaseModel):
     """One table of the site file. Its last field must have a default: the rules run there."""
 
-    model_config = ConfigDict(frozen=True, extra="forbid", validate_default=True, populate_by_name=False)
+    model_config = ConfigDict(frozen=True, extra="forbid", validate_default=True)
 
     @classmethod
     def rules(cls, seen: Seen) -> Iterator[Fault]:
@@ -73,10 +73,9 @@ def key(description: str, example: Any, *, alias: str | None = None, default: An
 
 
 def choice(one: str, other: str, seen: Seen, example: str, why: str = "") -> Iterator[Fault]:
-    """Exactly one of two keys must be stated."""
-    first, second = one.removesuffix("_"), other.removesuffix("_")
+    """Exactly one of two keys must be stated; `why` follows the advice."""
     if seen.stated(one) and seen.stated(other):
-        yield Fault((second,), f"both {first} and {second} are given, and only one of them can hold",
+        yield Fault((other,), f"both {one} and {other} are given, and only one of them can hold",
                     f"Keep one and leave the other out{why}")  # fmt: skip
     elif not seen.stated(one) and not seen.stated(other):
-        yield Fault((first,), f"neither {first} nor {second} is given", f"Add one of them, for example {example}{why}")
+        yield Fault((one,), f"neither {one} nor {other} is given", f"Add one of them, for example {example}{why}")

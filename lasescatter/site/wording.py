@@ -50,7 +50,7 @@ def problems_of(
 def problem_of(fault: Fault, document: Mapping[str, Any], index: LineIndex) -> Problem:
     """A fault whose place counts from the top of the file."""
     where = place_in_file(fault.place, document)
-    return Problem(spelled(where, document), fault.wrong, fault.mend, index.line(where))
+    return Problem(spelled(where, document, quoted), fault.wrong, fault.mend, index.line(where))
 
 
 def _faults(base: Place, errors: Sequence[Mapping[str, Any]]) -> Iterator[Fault]:

@@ -118,3 +118,10 @@ def test_the_whole_message_reads_well():
         'bay.toml, line 19: beam["main beam"].power: 2 has no unit, and a power is due. '
         'Write number and unit in quotes, for example "2 W"; what fits: W, mW, uW, nW, kW or MW.'
     )
+
+
+def test_long_names_and_keys_are_cut_short_in_messages():
+    name, key = "x" * 10_000, "k" * 10_000
+    text = GOOD["good_continuous"].replace('name = "main beam"', f'name = "{name}"\n{key} = 1')
+    (problem,) = problems_of(text)
+    assert problem.key.startswith('beam["xxx') and len(str(problem.key)) < 150

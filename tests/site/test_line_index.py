@@ -232,7 +232,7 @@ def documents(draw):
     return "\n".join(writer.lines), writer.known
 
 
-@settings(max_examples=200)
+@settings(max_examples=200, deadline=None)
 @given(documents())
 def test_lines_of_any_document(written):
     text, known = written
@@ -247,6 +247,7 @@ def test_lines_of_any_document(written):
     assert {path: spot.line for path, spot in index.spots.items()} == known
 
 
+@settings(deadline=None)
 @given(st.text(alphabet="ab=[]{}\"'\\#,.\n 1", max_size=80))
 def test_any_text_is_scanned_without_an_error(text):
     index = index_lines(text)
