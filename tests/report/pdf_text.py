@@ -31,6 +31,12 @@ def hand_check_blocks(pages: list[str]) -> dict[int, dict[str, str]]:
     return found
 
 
+def entries(resources: dict, kind: str) -> dict:
+    """Fonts or forms of a resource dictionary; empty where it has none."""
+    found = resources.get(kind)
+    return {} if found is None else found.get_object()
+
+
 def resources(reader: PdfReader) -> Iterator[dict]:
     """Every resource dictionary of the document, those of forms inside forms included."""
     waiting = [page["/Resources"].get_object() for page in reader.pages]
@@ -41,7 +47,7 @@ def resources(reader: PdfReader) -> Iterator[dict]:
             continue
         seen.add(id(found))
         yield found
-        for form in (found.get("/XObject") or {}).values():
+        for form in entries(found, "/XObject").values():
             inner = form.get_object().get("/Resources")
             if inner is not None:
                 waiting.append(inner.get_object())

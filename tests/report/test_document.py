@@ -7,6 +7,7 @@ import math
 import re
 import time
 from collections.abc import Iterator
+from contextlib import closing
 from dataclasses import replace
 from datetime import UTC, datetime
 from io import BytesIO
@@ -29,7 +30,7 @@ from lasescatter.report.typography import printable
 
 from .conftest import MADE_AT
 from .invented import HOSTILE, LONG, PLACES, assessment, many, titled
-from .pdf_text import hand_check_blocks, resources
+from .pdf_text import entries, hand_check_blocks, resources
 
 
 def joined(text: str) -> str:
@@ -141,7 +142,7 @@ def test_outline_leads_to_every_section(reader: PdfReader, pages: list[str]) -> 
 def test_every_font_is_embedded(reader: PdfReader) -> None:
     seen = 0
     for found in resources(reader):
-        for font in (found.get("/Font") or {}).values():
+        for font in entries(found, "/Font").values():
             font = font.get_object()
             inner = font["/DescendantFonts"][0].get_object() if "/DescendantFonts" in font else font
             descriptor = inner["/FontDescriptor"].get_object()
@@ -154,7 +155,7 @@ def test_every_font_is_embedded(reader: PdfReader) -> None:
 def test_figures_are_vectors(reader: PdfReader) -> None:
     forms = set()
     for found in resources(reader):
-        for name, form in (found.get("/XObject") or {}).items():
+        for name, form in entries(found, "/XObject").items():
             assert form.get_object()["/Subtype"] == "/Form", name
             forms.add(name)
     assert {"/Figure-plan", "/Figure-elevation", "/Figure-phase"} <= forms
@@ -280,7 +281,7 @@ def test_names_print_as_typed(text: str) -> None:
 
 def rendered(document: bytes) -> Iterator[np.ndarray]:
     """Each page in grey, one pixel per point."""
-    with pypdfium2.PdfDocument(document) as pdf:
+    with closing(pypdfium2.PdfDocument(document)) as pdf:
         for page in pdf:
             yield np.squeeze(page.render(scale=1.0, grayscale=True).to_numpy())
 
@@ -300,7 +301,7 @@ def test_nothing_is_printed_into_the_margin(document: bytes) -> None:
 def overlapping(document: bytes) -> list[tuple[int, str, str]]:
     """Runs of text that share area: page and both texts."""
     found = []
-    with pypdfium2.PdfDocument(document) as pdf:
+    with closing(pypdfium2.PdfDocument(document)) as pdf:
         for number, page in enumerate(pdf, start=1):
             layer = page.get_textpage()
             boxes = np.array([layer.get_rect(i) for i in range(layer.count_rects())])

@@ -24,6 +24,7 @@ from lasescatter.report.site_view import MARGIN, WIDTH, extent, nice_at_least, s
 from lasescatter.scene import Beam, Box, LengthUnit, Scene, Stop
 
 from .invented import BEAMS, GREEN, LOADS, assessment, many, scene
+from .pdf_text import entries
 
 POINTS_PER_MM = 72 / 25.4
 
@@ -98,7 +99,7 @@ def test_drawn_to_the_printed_scale(result: Assessment, kind: str) -> None:
 def test_placed_without_enlarging(reader: PdfReader) -> None:
     found = 0
     for page in reader.pages:
-        forms = page["/Resources"].get_object().get("/XObject") or {}
+        forms = entries(page["/Resources"].get_object(), "/XObject")
         data = page.get_contents().get_data().decode("latin-1")
         for name, form in forms.items():
             assert re.search(rf"q 1 0 0 1 [\d.]+ [\d.]+ cm {name} Do Q", data)
