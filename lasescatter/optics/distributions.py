@@ -68,12 +68,12 @@ def density(shape: Lognormal | ModifiedGamma, log_radius: NDArray[np.float64]) -
 def log_radius_limits(
     shape: Lognormal | ModifiedGamma, wavenumber: float, contrast: float, tail: float
 ) -> tuple[float, float]:
-    """Limits of ln r outside which the particles carry less than `tail` of what they scatter at any angle.
+    """Limits of ln r outside which the particles carry less than `tail` of what is scattered at any angle.
 
     The upper tail is weighed by the forward intensity, x^6 for small and x^4 for large spheres (with
     phase shift 2x|m − 1| above 2), the lower one by x³ below x = 1 (absorption) and x² above it: each is the
-    weight that gives its tail the most. A third of `tail` at the lower end allows for extinction efficiencies
-    above their mean there.
+    weight that gives its tail the most. Half of `tail` above allows for the forward maximum between the two
+    regimes, a twentieth below for angles to which large spheres send least.
 
     Parameters
     ----------
@@ -90,8 +90,8 @@ def log_radius_limits(
     lower = number * x**3 / (1 + x)
     above = np.cumsum(upper[::-1])[::-1]
     below = np.cumsum(lower)
-    first = max(int(np.searchsorted(below, tail / 3 * below[-1])) - 1, 0)
-    last = min(_FINE - int(np.searchsorted(above[::-1], tail * above[0])), _FINE - 1)
+    first = max(int(np.searchsorted(below, tail / 20 * below[-1])) - 1, 0)
+    last = min(_FINE - int(np.searchsorted(above[::-1], tail / 2 * above[0])), _FINE - 1)
     return float(u[first]), float(u[last])
 
 

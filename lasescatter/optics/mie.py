@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from itertools import pairwise
+from math import acosh, ceil, sqrt, tanh
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -168,7 +169,7 @@ def block_sum(
     """The same for spheres between two neighbouring block edges; unchecked."""
     x, w = size_parameter, weight
     orders = int(series_length(x).max())
-    rung = int(_LADDER[np.searchsorted(_LADDER, orders)])
+    rung = _LADDER[int(np.searchsorted(_LADDER, orders))]
     samples = np.zeros((4, 2 * rung + 1))
     scattering = absorption = 0.0
     twice = 2.0 * np.arange(1, orders + 1) + 1
@@ -242,30 +243,44 @@ def _widest(rung: int) -> int:
     return max(64, _TABLE // rung)
 
 
-def _ladder() -> NDArray[np.int64]:
+def _outgrown(rung: int) -> float:
+    """Size parameter at which the series becomes longer than a rung: x + 6 x^(1/3) + 3 = rung + 1."""
+    # With x the cube of c the equation is c³ + 6c = rung − 2.
+    c = (rung - 2) ** (1 / 3)
+    for _ in range(8):
+        c -= (c**3 + 6 * c - (rung - 2)) / (3 * c**2 + 6)
+    return c**3
+
+
+def _growth(n: int, x: float) -> float:
+    """Logarithm, nearly, of chi_n(x) for n above x."""
+    u = acosh(n / x)
+    return n * (u - tanh(u))
+
+
+def _ladder() -> tuple[int, ...]:
     """Series lengths that blocks are padded to; the first is that of x = 1.
 
     A step is the square root of two, and less for large spheres: chi_n(x) beyond n = x grows as
-    exp(n (u − tanh u)) with cosh u = n/x, and must stay below 1e130 for its square to be finite.
+    exp(n (u − tanh u)) with cosh u = n/x, and must stay below 1e130 for its square to be finite. That of the
+    smallest sphere of a block, padded to its rung, grows most.
     """
     rungs = [int(series_length(SMALL_SIZE_PARAMETER))]
     last = int(series_length(LARGEST_SIZE_PARAMETER))
     while rungs[-1] < last:
-        u = 1.0
-        while rungs[-1] * (u - np.tanh(u)) > 300.0:
-            u *= 0.99
-        rungs.append(int(np.ceil(rungs[-1] * min(np.sqrt(2.0), np.cosh(u)))))
-    return np.array(rungs)
+        smallest = _outgrown(rungs[-1]) if len(rungs) > 1 else SMALL_SIZE_PARAMETER
+        rung = ceil(rungs[-1] * sqrt(2))
+        while _growth(rung, smallest) > 300:
+            rung -= max(1, rung // 1000)
+        rungs.append(rung)
+    return tuple(rungs)
 
 
 _LADDER = _ladder()
+# A shade lower, so that rounding cannot lift the sphere at an edge over the rung below.
+_EDGES = (SMALL_SIZE_PARAMETER, *(_outgrown(rung) * (1 - 1e-12) for rung in _LADDER[1:]))
 
 
 def block_edges() -> NDArray[np.float64]:
     """Size parameters at which the series outgrows a rung of the ladder, ascending; the first is 1."""
-    x = _LADDER[1:].astype(float)
-    for _ in range(50):
-        # x + 6 x^(1/3) + 3 = rung + 1
-        x -= (x + 6 * np.cbrt(x) + 2 - _LADDER[1:]) / (1 + 2 * np.cbrt(x) ** -2)
-    # A shade lower, so that rounding cannot lift the sphere at an edge over the rung below.
-    return np.concatenate(((SMALL_SIZE_PARAMETER,), x * (1 - 1e-12)))
+    return np.array(_EDGES)
