@@ -23,6 +23,7 @@ from lasescatter.assessment.outcome import (
     Provenance,
 )
 from lasescatter.assumptions import Assumption, merged
+from lasescatter.cautions import cautions
 from lasescatter.exposure import direct as direct_light
 from lasescatter.exposure import legs as paths
 from lasescatter.exposure import line as bright
@@ -35,7 +36,6 @@ from lasescatter.limits.hazards import full_field, hazard_of
 from lasescatter.limits.judge import Judgement, judge
 from lasescatter.limits.verdict import worst
 from lasescatter.medium import load as loads
-from lasescatter.report.cautions import cautions
 from lasescatter.problems import Problem, SiteError
 from lasescatter.scene import Limit, Line, Observer, Scene
 

@@ -20,6 +20,9 @@ from lasescatter.scene import Beam, Hazard, Limit, Line, Observer
 
 HAZARDS: tuple[Hazard, ...] = ("retina thermal", "retina photochemical", "cornea and lens", "skin")
 
+# The sources of a starter file's limits begin with this word: nobody has answered for them yet.
+PLACEHOLDER = "EXAMPLE"
+
 # Gives what a limit's detector takes in of a line, or why that cannot be told.
 ReceivedBy = Callable[[Line, Limit], Received | str]
 
@@ -128,6 +131,8 @@ def _against(
         if hazard_of(limit) != hazard or not within(line.wavelength, limit.wavelengths):
             continue
         received = received_by(line, limit)
+        if limit.source.strip().upper().startswith(PLACEHOLDER):
+            faults.append(f'limit "{limit.name}" is still an example of the starter file: enter your own, with source')
         if isinstance(received, str):
             faults.append(f'limit "{limit.name}": {received}')
             continue

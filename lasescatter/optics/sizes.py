@@ -26,8 +26,8 @@ from lasescatter.scene import Lognormal, ModifiedGamma, SingleSize, SizeMode
 _MARGIN_COARSE = 3.0
 _MARGIN_FINE = 2.0
 _FINE_STEP = 0.02
-_FEWEST_INTERVALS = 8
-_WIDEST_INTERVAL = 0.1
+_FEWEST_INTERVALS = 16
+_WIDEST_INTERVAL = 0.05
 _FIRST_HALVINGS = 2
 _TAILS = 2
 
@@ -217,9 +217,10 @@ class _Average:
             check_size_parameter(x, x, f" (radius {np.exp(end):.4g} m, which a distribution of sizes reaches)")
         edges = np.log(block_edges() / self._wavenumber)
         edges = np.array([limits[0], *edges[(edges > limits[0]) & (edges < limits[1])], limits[1]])
+        widest = min(_WIDEST_INTERVAL, (limits[1] - limits[0]) / _FEWEST_INTERVALS)
         panels = []
         for low, high in pairwise(edges.tolist()):
-            intervals = max(_FEWEST_INTERVALS, int(np.ceil((high - low) / _WIDEST_INTERVAL)))
+            intervals = max(2, int(np.ceil((high - low) / widest)))
             u = np.linspace(low, high, intervals + 1)
             step = np.full(u.size, (high - low) / intervals)
             step[[0, -1]] /= 2

@@ -6,8 +6,8 @@ from datetime import datetime
 from typing import Any
 
 from lasescatter.assessment.outcome import Assessment, BeamSpot, InTheBeam, ObserverOutcome
+from lasescatter.cautions import not_covered
 from lasescatter.limits.verdict import ABOVE, BELOW, margin
-from lasescatter.report.cautions import not_covered
 from lasescatter.report.page_frame import COLUMN
 from lasescatter.report.quantities import digits, duration, length, line_label, wavelength
 from lasescatter.report.ranking import counted, greatest, worst_first

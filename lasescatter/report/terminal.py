@@ -5,8 +5,8 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from lasescatter.assessment.outcome import Assessment, InTheBeam
+from lasescatter.cautions import foremost
 from lasescatter.limits.verdict import BELOW, margin
-from lasescatter.report.cautions import foremost
 from lasescatter.report.quantities import digits, duration, length, line_label, wavelength
 from lasescatter.report.ranking import counted, greatest, worst_first
 from lasescatter.report.typography import abridged, plain

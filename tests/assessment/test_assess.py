@@ -22,14 +22,14 @@ def test_bay_is_below_and_about_a_thousandth_of_the_eye_limit():
     """Side scatter of 2 W in thin haze is about a thousandth of an eye limit (common practice, no source)."""
     found = only(bay())
     assert found.verdict == "below limit"
-    thermal = [c for c in found.comparisons if c.hazard == "retina thermal"][0]
+    thermal = next(c for c in found.comparisons if c.hazard == "retina thermal")
     scattered = dict(thermal.by_origin)["scattered"] / thermal.limit_value
     assert 1e-4 < scattered < 1e-2
 
 
 def test_mirror_folded_linear_beam_by_hand():
     """Air only, 532 nm, vertical field, a fold of 90°: E3 on both legs with the running integral of the depolarised
-    dipole pattern in closed form (Chandrasekhar's phase function; Delta and beta for 288.15 K as in the reference values
+    dipole pattern in closed form (Chandrasekhar's phase function; Delta and beta for 288.15 K as in the values
     computed from Bodhaine et al. 1999: Delta 0.957969, beta 1.316e-5 m⁻¹), s-polarised at the mirror."""
     green = line(power=5.0, polarization="linear", electric_field=(0.0, 0.0, 1.0), key="k", name="b")
     path = beam((0.0, 0.0, 0.0), (6.0, 0.0, 0.0), (6.0, 4.0, 0.0), lines=(green,), name="b", leaves_site=False,
@@ -93,8 +93,8 @@ def test_polydisperse_case_against_a_literal_sum():
     everywhere = lambda x: np.ones(x.shape[:-1])  # noqa: E731
     slow = literal_sum(
         [0, 0, 1.2], [9, 0, 1.2], [4, 1.5, 1.6],
-        [(number * scattering, number * extinction, lambda t: np.interp(t, grid, f11), lambda t: np.interp(t, grid, f12),
-          everywhere)],
+        [(number * scattering, number * extinction, lambda t: np.interp(t, grid, f11),
+          lambda t: np.interp(t, grid, f12), everywhere)],
         elements=40_000, axis=[0, 0, 1], purity=99 / 101,
     )  # fmt: skip
     found = only(scene)

@@ -179,3 +179,11 @@ def test_a_detector_that_cannot_tell_is_a_reason():
     found = judge(observer(), (beam(),), EYE_BLUE_SKIN, lambda _line, _limit: "no radiance there", (), ())
     assert found.verdict == "not established"
     assert any("no radiance there" in reason for reason in found.reasons)
+
+
+def test_an_example_of_the_starter_file_is_not_a_limit_anybody_answers_for():
+    found = judged((limit(source="EXAMPLE: replace by edition, clause and table"), blue(), skin()))
+    assert found.verdict == "not established"
+    assert any("still an example" in reason for reason in found.reasons)
+    above = judged((limit(source="EXAMPLE: replace"), blue(), skin()), value=11.0)
+    assert above.verdict == "above limit"

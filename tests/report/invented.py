@@ -22,9 +22,9 @@ from lasescatter.assessment.outcome import (
     Provenance,
 )
 from lasescatter.assumptions import Assumption
+from lasescatter.cautions import cautions
 from lasescatter.limits.compare import Comparison, HazardJudgement
 from lasescatter.limits.verdict import ABOVE, BELOW, NOT_ESTABLISHED, Verdict, worst
-from lasescatter.report.cautions import cautions
 from lasescatter.scene import (
     Air,
     Beam,

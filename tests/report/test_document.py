@@ -22,8 +22,8 @@ from pypdf import PdfReader
 from reportlab.pdfgen.canvas import Canvas
 
 from lasescatter.assessment.outcome import Assessment
+from lasescatter.cautions import cautions, not_covered
 from lasescatter.limits.verdict import margin
-from lasescatter.report.cautions import cautions, not_covered
 from lasescatter.report.document import SECTIONS, pdf_bytes, write_pdf
 from lasescatter.report.quantities import digits
 from lasescatter.report.typography import printable

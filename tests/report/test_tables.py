@@ -12,8 +12,8 @@ from rich.cells import cell_len
 from rich.console import Console
 
 from lasescatter.assessment.outcome import Assessment
+from lasescatter.cautions import foremost
 from lasescatter.limits.verdict import margin
-from lasescatter.report.cautions import foremost
 from lasescatter.report.csv_table import HEADS, text_cell, write_csv
 from lasescatter.report.terminal import print_summary
 

@@ -9,8 +9,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from lasescatter.cautions import FOREMOST, cautions, checked, foremost, not_covered
 from lasescatter.report import quantities
-from lasescatter.report.cautions import FOREMOST, cautions, checked, foremost, not_covered
 from lasescatter.report.typography import BOLD, SANS, abridged, fitted, markup, plain, printable
 from lasescatter.scene import LengthUnit, Line, Pulses
 
