@@ -115,7 +115,6 @@ def compare(
     Notes
     -----
     The ratio for a time T is the largest over all times up to T that the limit covers: it never falls with time.
-    Exposure and limit are both powers of time, so the largest is at one end.
     """
     if not within(line.wavelength, limit.wavelengths):
         return None
@@ -124,21 +123,36 @@ def compare(
     if limit.durations[0] > time * (1 + 1e-9):
         return None
     longest = min(time, limit.durations[1])
-    cases = [(_exposure(limit, line, t), t) for t in {limit.durations[0], longest}]
-    amount, at = max(cases, key=lambda case: case[0] / (limit.value * case[1] ** limit.time_exponent))
+    cases = [(_exposure(limit, line, t, n), t, n) for t, n in _worst_times(line, limit.durations[0], longest)]
+    amount, at, pulses = max(cases, key=lambda case: case[0] / (limit.value * case[1] ** limit.time_exponent))
     note = received.note
     if not covers_time(limit, time):
         note = _joined(note, f"covers times up to {limit.durations[1]:g} s; the ratio never falls with time")
-    pulses = pulses_within(line, at) or None
-    return _made(limit, beam, line, received, duration, at, amount, limit.value * at**limit.time_exponent, pulses, note)
+    value = limit.value * at**limit.time_exponent
+    return _made(limit, beam, line, received, duration, at, amount, value, pulses or None, note)
 
 
-def _exposure(limit: Limit, line: Line, time: float) -> float:
+def _worst_times(line: Line, shortest: float, longest: float) -> list[tuple[float, int]]:
+    """Times at which exposure over limit can be largest, with the pulses that fall within them.
+
+    Exposure and limit are powers of time, so for continuous light the largest is at one end. A train steps up: n
+    pulses fit into any time just over (n − 1)/rate, and over n pulses exposure over limit is n/(n − 1)^p, which has
+    no largest value between its ends.
+    """
+    ends = [(shortest, pulses_within(line, shortest)), (longest, pulses_within(line, longest))]
+    if line.pulses is None or line.pulses.rate is None:
+        return ends
+    first, last = ends[0][1], ends[1][1]
+    steps = [(first / line.pulses.rate, first + 1), ((last - 1) / line.pulses.rate, last)]
+    return ends + [(time, count) for time, count in steps if shortest <= time < longest and count <= last]
+
+
+def _exposure(limit: Limit, line: Line, time: float, pulses: int) -> float:
     """Factor from a per-watt value to the exposure of a limit over a time: W, or J for a dose."""
     dose = limit.quantity in ("radiant exposure", "radiance dose")
     if line.pulses is None:
         return line.power * time if dose else line.power
-    energy = line.pulses.energy * pulses_within(line, time)
+    energy = line.pulses.energy * pulses
     return energy if dose else energy / time
 
 

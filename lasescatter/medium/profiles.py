@@ -81,7 +81,8 @@ class UprightBox:
 
     def _fractions(self, start: Floats, step: Floats) -> tuple[Floats, Floats]:
         """Parameters at which start + t·step enters and leaves the slabs; first > last where it misses."""
-        with np.errstate(divide="ignore", invalid="ignore"):
+        # A step so small that the quotient overflows takes for ever to reach the face: infinity is right.
+        with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
             near = (self.low - start) / step
             far = (self.high - start) / step
         # A step of 0 along an axis: inside the slab it never leaves, outside it never enters.

@@ -9,6 +9,9 @@ from numpy.typing import NDArray
 
 Table = tuple[NDArray[np.float64], NDArray[np.float64]]
 
+# Elements that one step of the algebra handles, so that its operands stay in the second-level cache.
+_CACHED = 16_000
+
 
 def angular_functions(cosine: NDArray[np.float64], orders: int) -> Table:
     """(2n+1)/(n(n+1)) (pi_n + tau_n) and the same of pi_n − tau_n, n = 1…orders.
@@ -23,26 +26,33 @@ def angular_functions(cosine: NDArray[np.float64], orders: int) -> Table:
     -------
     plus, minus : (orders, J) arrays
     """
-    pi = np.empty((orders, cosine.size))
-    tau = np.empty_like(pi)
-    below, here = np.zeros_like(cosine), np.ones_like(cosine)
-    scratch = np.empty_like(cosine)
-    for n in range(1, orders + 1):
-        pi[n - 1] = here
-        np.multiply(cosine, here, out=scratch)
-        np.multiply(scratch, n, out=tau[n - 1])
-        tau[n - 1] -= (n + 1) * below
-        scratch *= (2 * n + 1) / n
-        below *= -(n + 1) / n
-        below += scratch
-        below, here = here, below
-    order = np.arange(1, orders + 1)[:, np.newaxis]
-    factor = (2 * order + 1) / (order * (order + 1))
-    pi *= factor
-    tau *= factor
-    plus = pi + tau
-    np.subtract(pi, tau, out=tau)
-    return plus, tau
+    n = np.arange(1, orders + 1)
+    # pi_n = p_n/s_n with scales that turn the recurrence into p_{n+1} = c_n mu p_n − p_{n−1}: two calls a step.
+    scale = np.ones(orders + 1)
+    for m in range(1, orders):
+        scale[m + 1] = scale[m - 1] * m / (m + 1)
+    slope = scale[2:] * (2 * n[:-1] + 1) / (n[:-1] * scale[1:-1])
+    p = np.empty((orders + 1, cosine.size))
+    p[0], p[1] = 0, 1
+    plus, minus = np.empty((orders, cosine.size)), np.empty((orders, cosine.size))
+    np.multiply(slope[:, np.newaxis], cosine, out=plus[1:])
+    rows, steps = list(p), list(plus)
+    for m in range(1, orders):
+        np.multiply(steps[m], rows[m], out=rows[m + 1])
+        np.subtract(rows[m + 1], rows[m - 1], out=rows[m + 1])
+    factor = (2 * n + 1) / (n * (n + 1))
+    here = (factor / scale[1:])[:, np.newaxis]
+    below = (factor * (n + 1) / scale[:-1])[:, np.newaxis]
+    height = max(1, _CACHED // cosine.size)
+    for first in range(0, orders, height):
+        part = slice(first, min(first + height, orders))
+        pi = p[1:][part] * here[part]
+        tau = pi * cosine
+        tau *= n[part, np.newaxis]
+        tau -= p[part] * below[part]
+        np.add(pi, tau, out=plus[part])
+        np.subtract(pi, tau, out=minus[part])
+    return plus, minus
 
 
 class AngularTables:

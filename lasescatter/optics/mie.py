@@ -31,7 +31,7 @@ __all__ = ["SizeRangeError", "SphereOptics", "SphereSum", "averaged", "block_edg
 
 # Bounds on the arrays of one step, in elements.
 _WAVES = 400_000
-_TABLE = 2_000_000
+_TABLE = 4_000_000
 _PRODUCT = 2_000_000
 
 

@@ -29,6 +29,7 @@ _FINE_STEP = 0.02
 _FEWEST_INTERVALS = 16
 _WIDEST_INTERVAL = 0.05
 _FIRST_HALVINGS = 2
+# The two ends of a distribution.
 _TAILS = 2
 
 
@@ -37,12 +38,19 @@ class Accuracy:
     """When the average over sizes is good enough."""
 
     f11: float = 1e-3
-    """Relative error of F11 at its worst angle, and of F12 relative to F11."""
+    """Relative error of F11 at its worst angle, and of F12 relative to F11, of the sums over sizes."""
     extinction: float = 1e-4
     tail: float = 1e-5
     """What the radii left out at either end may carry, as a fraction."""
     work: float = 4e11
-    """Multiplications after which the average is returned as it is, with its error estimate."""
+    """Multiplications after which the average is returned as it is, with its error estimate. The first two
+    halvings of all panels are made in any case; without them there is no estimate."""
+
+    def __post_init__(self) -> None:
+        if not 0 < self.tail <= min(self.f11, self.extinction) / (2 * _TAILS):
+            raise ValueError(
+                f"tails of {self.tail:g} are too much for {self.f11:g} in F11, {self.extinction:g} in extinction"
+            )
 
 
 @dataclass(frozen=True)
@@ -188,7 +196,9 @@ class _Average:
         A grid that misses resonances leaves an error about as large as its last change and independent of
         it, and independent from panel to panel: so errors add as squares.
         """
-        allowed = np.full(2 * self.total.matrix.shape[1] + 1, self._accuracy.f11 - SPLINE_ERROR)
+        # Of the error of F11 the tails and, where it counts, the spline take their part.
+        spline = min(SPLINE_ERROR, self._accuracy.f11 / 100)
+        allowed = np.full(2 * self.total.matrix.shape[1] + 1, self._accuracy.f11 - spline)
         allowed[-1] = self._accuracy.extinction
         allowed = (allowed - _TAILS * self._accuracy.tail) ** 2
         for _ in range(_FIRST_HALVINGS):

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 
+import numpy as np
 import pytest
 from exposure.beams import line, train
 from hypothesis import given
@@ -126,6 +127,26 @@ def test_more_power_or_a_longer_time_never_lowers_the_ratio(power, more, t, long
 
     assert ratio(power * more, t) >= ratio(power, t) * (1 - 1e-12)
     assert ratio(power, min(t * longer, 3e4)) >= ratio(power, t) * (1 - 1e-9)
+
+
+@given(
+    t=st.floats(0.3, 300.0), rate=st.floats(0.05, 40.0), exponent=st.sampled_from([0.0, 0.25, 0.75]),
+    start=st.sampled_from([1e-3, 0.25, 10.0]), dose=st.booleans(),
+)  # fmt: skip
+def test_train_ratio_is_the_largest_over_all_shorter_times(t, rate, exponent, start, dose):
+    """Against brute force: every time on a fine grid, with the pulses that fit into it."""
+    if t <= start:
+        return
+    power = exponent if dose else exponent - 1.0
+    entry = limit(quantity="radiant exposure" if dose else "irradiance", value=18.0, time_exponent=power,
+                  durations=(start, 3e4))  # fmt: skip
+    source = line(power=rate, pulses=train(1.0, 1e-8, rate))
+    found = compare(entry, "b", source, ONE, t, t).ratio
+    grid = np.linspace(start, t, 4001)
+    pulses = np.maximum(1, np.ceil(rate * grid * (1 - 1e-12)))
+    ratios = (pulses if dose else pulses / grid) / (18.0 * grid**power)
+    assert found >= ratios.max() * (1 - 1e-9)
+    assert found <= ratios.max() * (1 + 2 * (t - start) / 4000 / start) + 1e-12
 
 
 def test_margin_has_one_form():

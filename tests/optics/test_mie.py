@@ -121,7 +121,8 @@ def test_large_spheres_against_extended_precision(index, x):
     forward, backward = extended_amplitudes(index, x)
     found = sphere(index, x)
     s1, _ = found.amplitudes([0.0, np.pi])
-    assert abs(s1[0] / forward - 1) < 1e-12
+    # The angular functions drift by n² roundings near 0° and 180°.
+    assert abs(s1[0] / forward - 1) < 1e-11
     assert abs(s1[1] / backward - 1) < 1e-8
     assert found.q_ext == pytest.approx(4 / x**2 * forward.real, rel=1e-12, abs=0)
 

@@ -244,3 +244,8 @@ def test_weights_must_be_fractions(weights):
     modes = tuple(SizeMode(SingleSize(1e-6), weight) for weight in weights)
     with pytest.raises(SizeRangeError, match="weights of the size modes"):
         particle_optics(modes, 1.33, WAVELENGTH)
+
+
+def test_accuracy_needs_thin_tails():
+    with pytest.raises(ValueError, match="tails of 0.0001 are too much for 0.001 in F11, 0.0001 in extinction"):
+        Accuracy(tail=1e-4)
