@@ -90,9 +90,10 @@ def assess(
     progress("judgement")
     powers = {key: _powers(scene.observers, field.line) for key, field in fields.items()}
     checks = {key: hand_checks(field, powers[key]) for key, field in fields.items()}
+    gaps = tuple(gap for gap in dict.fromkeys(optics.gap(wavelength) for wavelength in summaries) if gap)
     walls = np.concatenate([points, *[np.array(beam.points) for beam in scene.beams]])
     observers = tuple(
-        _observer(scene, i, fields, powers, [row for rows in checks.values() for row in rows[i]], walls)
+        _observer(scene, i, fields, powers, [row for rows in checks.values() for row in rows[i]], walls, gaps)
         for i in range(len(scene.observers))
     )
     return Assessment(
@@ -129,11 +130,12 @@ def _observer(
     powers: dict[str, Floats],
     checks: list[HandCheck],
     walls: Floats,
+    gaps: tuple[str, ...],
 ) -> ObserverOutcome:
     observer = scene.observers[index]
     point = np.asarray(observer.position, dtype=float)
     reached = _direct_within_reach(scene, fields, index)
-    judgement = _judged(scene, observer, index, fields, walls, reached)
+    judgement = _judged(scene, observer, index, fields, walls, reached, gaps)
     nearest, beam_name = min(
         (float(np.linalg.norm(point - leg.origin - along * leg.direction)), beam.name)
         for beam in scene.beams
@@ -165,11 +167,12 @@ def _judged(
     fields: dict[str, LineField],
     walls: Floats,
     reached: list[tuple[str, str]],
+    gaps: tuple[str, ...],
 ) -> Judgement:
     def received_by(line: Line, limit: Limit) -> Received | str:
         return fields[line.key].received(index, limit, walls)
 
-    gates = tuple(sentence for _, sentence in reached) + _gates(fields, index)
+    gates = tuple(sentence for _, sentence in reached) + _gates(fields, index) + gaps
     return judge(observer, scene.beams, scene.limits, received_by, scene.not_judged, gates)
 
 

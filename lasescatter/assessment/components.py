@@ -11,7 +11,7 @@ from lasescatter.assumptions import Assumption
 from lasescatter.medium.load import Concentration, concentration
 from lasescatter.medium.mixture import Component, Mixture
 from lasescatter.medium.profiles import Unbounded, profile_of
-from lasescatter.optics.air import AirRangeError, air_optics
+from lasescatter.optics.air import LONGEST_WAVELENGTH, SHORTEST_WAVELENGTH, AirRangeError, air_optics
 from lasescatter.optics.matrix import ScatteringMatrix
 from lasescatter.optics.mie import SizeRangeError
 from lasescatter.optics.sizes import ParticleOptics, particle_optics
@@ -75,18 +75,9 @@ class SiteOptics:
     def mixture(self, wavelength: float) -> Mixture:
         """Air and all loads at a wavelength.
 
-        Raises
-        ------
-        SiteError
-            If the wavelength is outside the data for air.
+        Outside the data for air its scattering is left out, and `gap` says so: the value is not extrapolated.
         """
-        air = self.scene.air
-        try:
-            molecules = air_optics(wavelength, air.temperature, air.pressure)
-        except AirRangeError as fault:
-            key = next(line.key for beam in self.scene.beams for line in beam.lines if line.wavelength == wavelength)
-            raise SiteError([Problem(f"{key}.wavelength", str(fault), "Use a wavelength within that range")]) from fault
-        components = [Component(AIR, molecules.scattering, molecules.scattering, molecules.matrix, Unbounded(), True)]
+        components = [self._air(wavelength)]
         for load in self.scene.loads:
             optics = self.of(load, wavelength)
             amount = self.concentration(load)
@@ -102,10 +93,31 @@ class SiteOptics:
             )
         return Mixture(tuple(components))
 
+    def _air(self, wavelength: float) -> Component:
+        air = self.scene.air
+        try:
+            molecules = air_optics(wavelength, air.temperature, air.pressure)
+            scattering = molecules.scattering
+        except AirRangeError:
+            nearest = min(max(wavelength, SHORTEST_WAVELENGTH), LONGEST_WAVELENGTH)
+            molecules, scattering = air_optics(nearest, air.temperature, air.pressure), 0.0
+        return Component(AIR, scattering, scattering, molecules.matrix, Unbounded(), True)
+
+    def gap(self, wavelength: float) -> str:
+        """Why scattering at a wavelength is not complete; "" where it is."""
+        if SHORTEST_WAVELENGTH <= wavelength <= LONGEST_WAVELENGTH:
+            return ""
+        return (
+            f"scattering by air at {wavelength * 1e9:g} nm is outside the data "
+            f"({SHORTEST_WAVELENGTH * 1e9:g}–{LONGEST_WAVELENGTH * 1e9:g} nm) and left out"
+        )
+
     def summaries(self, wavelength: float, mixture: Mixture) -> tuple[ComponentSummary, ...]:
         """What a report prints of each component."""
         found = []
         for component, load in zip(mixture.components, (None, *self.scene.loads), strict=True):
+            if component.extinction == 0:
+                continue
             optics = None if load is None else self.of(load, wavelength)
             amount = None if load is None else self.concentration(load)
             found.append(_summary(component, wavelength, optics, amount))

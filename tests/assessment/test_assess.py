@@ -293,3 +293,15 @@ def test_a_site_that_would_fill_the_memory_is_refused_first():
     people = tuple(observer(name=str(i), key=str(i)) for i in range(100))
     with pytest.raises(SiteError, match="split the site"):
         assess(bay(beams=(path,), observers=people))
+
+
+def test_wavelength_outside_the_data_for_air_is_not_established_and_never_extrapolated():
+    infrared = replace(bay().beams[0].lines[0], wavelength=10.6e-6, divergence=6e-3)
+    path = replace(bay().beams[0], lines=(infrared,))
+    far = limit(name="front", tissue="cornea and lens", wavelengths=(1.4e-6, 1e-3), value=1000.0)
+    found = assess(bay(beams=(path,), limits=(far, skin(wavelengths=(1.4e-6, 1e-3))), loads=()))
+    assert found.observers[0].verdict == "not established"
+    assert any("10600 nm is outside the data" in reason for reason in found.observers[0].reasons)
+    assert found.observers[0].total("scattered") == 0.0
+    assert found.components == ()
+    assert found.in_the_beam[0].spots[0].multiple > 1
