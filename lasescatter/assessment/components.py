@@ -29,7 +29,7 @@ DRY_AIR = Assumption(
 SIZE_AVERAGE = Assumption(
     name="The average over particle sizes is a finite sum",
     direction="either",
-    size="by the error printed with each component, under 1e-3 of F11 at every angle unless it says otherwise",
+    size="by the error printed with each component, which the bounds of every ratio carry; 1e-3 is aimed at",
     source="comparison of N with 2N radii",
 )
 
@@ -89,6 +89,7 @@ class SiteOptics:
                     optics.matrix,
                     profile_of(load.region),
                     load.steady_by is not None,
+                    optics.error_f11,
                 )
             )
         return Mixture(tuple(components))

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from lasescatter.exposure.direct import aperture_mean, beam_radius, irradiance
 from lasescatter.exposure.fraction import Greatest, greatest_over_fraction
 from lasescatter.exposure.legs import Leg, Swing, legs_of, swings_of
-from lasescatter.exposure.line import BrightLine, Window, bright_line, brightest_window, peak_radiance
+from lasescatter.exposure.line import TABULATION_ERROR, BrightLine, Window, bright_line, brightest_window, peak_radiance
 from lasescatter.exposure.scattered import LegLight, scattered
 from lasescatter.exposure.sightline import Sightlines
 from lasescatter.exposure.surfaces import stop_light, wall_return
@@ -75,8 +75,8 @@ class LineField:
 
     @property
     def error(self) -> Floats:
-        """Quadrature error of `scattered`. [m⁻²]"""
-        return np.sum([light.error for light in self.lights], axis=0)
+        """Numerical error of `scattered`: of the integral and of the average over sizes. [m⁻²]"""
+        return np.sum([light.error for light in self.lights], axis=0) + self.mixture.error * self.unpolarised
 
     @property
     def hot_spot(self) -> float:
@@ -125,6 +125,7 @@ class LineField:
         window: tuple[tuple[str, float], ...] | None = None
         if limit.acceptance is not None:
             light, window = self._windows(observer, limit.acceptance)
+            error += TABULATION_ERROR * light
             field = np.pi / 4 * limit.acceptance**2
             if radiance:
                 light, error, direct = light / field, error / field, direct / field
@@ -136,10 +137,11 @@ class LineField:
             if any(void[observer] for _, void in peaks):
                 return f'a leg of "{self.beam.name}" is seen so nearly end-on that its radiance is not defined by E4'
             light = float(sum(peak[observer] for peak, _ in peaks))
-            error = light * 1e-3
+            error = TABULATION_ERROR * light
             stop = self._stop_radiance(observer)
         else:
             light = float(self.greatest.irradiance[observer])
+        error += self.mixture.error * max(light, self._plain(observer, light))
         orders = light * (float(allowance(self.thickness[observer])) - 1)
         by_origin = [("scattered", light)]
         if orders:
@@ -150,6 +152,11 @@ class LineField:
         if full_field(hazard_of(limit)) and not radiance:
             high += self._once("walls", 0.0, lambda: self._walls(wall_points))
         return Received(tuple(by_origin), max(0.0, light - error) + stop + direct, high, window)
+
+    def _plain(self, observer: int, light: float) -> float:
+        """Light as it would be without polarization: the measure of relative errors near a null."""
+        polarised = float(self.scattered[observer])
+        return light * float(self.unpolarised[observer]) / polarised if polarised > 0 else light
 
     def _windows(self, observer: int, acceptance: float) -> tuple[float, tuple[tuple[str, float], ...]]:
         total, shown = 0.0, []

@@ -30,6 +30,8 @@ LEGS_ADDED = Assumption(
 TABULATED = 2048
 # A window of fewer steps than this is judged by its brightest element.
 LEAST_STEPS = 8
+# Relative error of windows and peaks from the table, kinks at region faces included.
+TABULATION_ERROR = 2e-3
 # Observers tabulated together: bounds the memory.
 MOST_OBSERVERS_AT_ONCE = 64
 

@@ -26,6 +26,8 @@ class Component:
     profile: Profile
     steady: bool
     """True for air and for loads that somebody vouches for: the load fraction does not act on it."""
+    error: float = 0.0
+    """Estimated relative error of the matrix at its worst angle."""
 
 
 @dataclass(frozen=True)
@@ -38,6 +40,11 @@ class Mixture:
     def steady(self) -> NDArray[np.bool_]:
         """Which components the load fraction leaves alone, shape (components,)."""
         return np.array([component.steady for component in self.components])
+
+    @property
+    def error(self) -> float:
+        """Largest relative error of any component's matrix."""
+        return max(component.error for component in self.components)
 
     def thicknesses(self, start: Floats, end: Floats) -> Floats:
         """Optical thickness of each component along segments (..., 3) to (..., 3), shape (components, ...)."""

@@ -254,6 +254,19 @@ def test_walls_count_in_the_upper_bound_of_skin_only():
     assert by_hazard["retina thermal"].ratio_high == pytest.approx(by_hazard["retina thermal"].ratio, rel=1e-3)
 
 
+def test_error_of_the_size_average_widens_the_bounds():
+    """Large weakly absorbing drops do not reach 1e-3: their own error estimate stands in the ratio's bounds."""
+    from lasescatter.assessment.components import SiteOptics
+
+    scene = bay()
+    mixture = SiteOptics(scene).mixture(532e-9)
+    assert 0 < mixture.error <= 1e-3
+    thermal = next(c for c in only(scene).comparisons if c.hazard == "retina thermal")
+    scattered = dict(thermal.by_origin)["scattered"] / thermal.limit_value
+    assert thermal.ratio_high - thermal.ratio >= mixture.error * scattered * 0.99
+    assert thermal.ratio - thermal.ratio_low >= mixture.error * scattered * 0.99
+
+
 def test_acceptance_field_takes_less_than_the_full_field():
     field = limit(name="narrow", acceptance=0.1)
     found = only(bay(limits=(limit(), field, skin())))

@@ -247,5 +247,5 @@ def test_weights_must_be_fractions(weights):
 
 
 def test_accuracy_needs_thin_tails():
-    with pytest.raises(ValueError, match="tails of 0.0001 are too much for 0.001 in F11, 0.0001 in extinction"):
+    with pytest.raises(ValueError, match=r"tails of 0.0001 are too much for 0.001 in F11, 0.0001 in extinction"):
         Accuracy(tail=1e-4)
