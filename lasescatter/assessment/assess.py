@@ -11,8 +11,8 @@ from numpy.typing import NDArray
 
 import lasescatter
 from lasescatter.assessment.components import DRY_AIR, SIZE_AVERAGE, SiteOptics
-from lasescatter.assessment.field import LineField, line_field
-from lasescatter.assessment.handcheck import hand_checks
+from lasescatter.assessment.field import LineField, distance_to, line_field
+from lasescatter.assessment.handcheck import hand_checks, stop_checks
 from lasescatter.assessment.in_the_beam import in_the_beam, nearest_element
 from lasescatter.assessment.outcome import (
     Assessment,
@@ -21,6 +21,7 @@ from lasescatter.assessment.outcome import (
     LineExposure,
     ObserverOutcome,
     Provenance,
+    StopCheck,
 )
 from lasescatter.assumptions import Assumption, merged
 from lasescatter.cautions import cautions
@@ -91,10 +92,10 @@ def assess(
     powers = {key: _powers(scene.observers, field.line) for key, field in fields.items()}
     checks = {key: hand_checks(field, powers[key]) for key, field in fields.items()}
     gaps = tuple(gap for gap in dict.fromkeys(optics.gap(wavelength) for wavelength in summaries) if gap)
+    stops = {key: stop_checks(field, powers[key]) for key, field in fields.items()}
     walls = np.concatenate([points, *[np.array(beam.points) for beam in scene.beams]])
     observers = tuple(
-        _observer(scene, i, fields, powers, [row for rows in checks.values() for row in rows[i]], walls, gaps)
-        for i in range(len(scene.observers))
+        _observer(scene, i, fields, powers, checks, stops, walls, gaps) for i in range(len(scene.observers))
     )
     return Assessment(
         scene=scene,
@@ -128,7 +129,8 @@ def _observer(
     index: int,
     fields: dict[str, LineField],
     powers: dict[str, Floats],
-    checks: list[HandCheck],
+    checks: dict[str, list[list[HandCheck]]],
+    stops: dict[str, list[list[StopCheck]]],
     walls: Floats,
     gaps: tuple[str, ...],
 ) -> ObserverOutcome:
@@ -154,7 +156,8 @@ def _observer(
         optical_thickness=max(float(field.thickness[index]) for field in fields.values()),
         direct_reach=reached[0][0] if reached else "",
         lines=tuple(_line_exposure(field, index, float(powers[key][index])) for key, field in fields.items()),
-        hand_checks=tuple(checks),
+        hand_checks=tuple(row for rows in checks.values() for row in rows[index]),
+        stop_checks=tuple(row for rows in stops.values() for row in rows[index]),
         comparisons=judgement.comparisons,
         hazards=judgement.hazards,
     )
@@ -170,7 +173,7 @@ def _judged(
     gaps: tuple[str, ...],
 ) -> Judgement:
     def received_by(line: Line, limit: Limit) -> Received | str:
-        return fields[line.key].received(index, limit, walls)
+        return fields[line.key].received(index, limit, observer.reach, walls)
 
     gates = tuple(sentence for _, sentence in reached) + _gates(fields, index) + gaps
     return judge(observer, scene.beams, scene.limits, received_by, scene.not_judged, gates)
@@ -180,19 +183,20 @@ def _direct_within_reach(scene: Scene, fields: dict[str, LineField], index: int)
     """Beams whose direct light comes nearer than the reach, or than three radii and half an aperture."""
     observer = scene.observers[index]
     aperture = max([limit.aperture for limit in scene.limits], default=PUPIL)
-    found: dict[str, str] = {}
+    passes: dict[str, dict[int, float]] = {}
     for field in fields.values():
         for leg in field.legs:
             point = field.points[index : index + 1]
-            s0 = float(np.clip((point[0] - leg.origin) @ leg.direction, 0.0, leg.length))
-            distance = float(np.linalg.norm(point[0] - leg.origin - s0 * leg.direction))
+            distance = float(distance_to(leg, point)[0])
             cone = float(clearance(leg, field.line, point, REACHED_WITHIN_RADII, aperture)[0])
-            if (distance < observer.reach or cone < 0) and field.beam.name not in found:
-                found[field.beam.name] = (
-                    f'direct light of "{field.beam.name}" is within reach: the axis of leg {leg.number} passes '
-                    f"at {distance:.3g} m"
-                )
-    return list(found.items())
+            if distance < observer.reach or cone < 0:
+                passes.setdefault(field.beam.name, {})[leg.number] = distance
+    return [(beam, _reached(beam, legs)) for beam, legs in passes.items()]
+
+
+def _reached(beam: str, legs: dict[int, float]) -> str:
+    listed = ", ".join(f"leg {number} at {distance:.3g} m" for number, distance in legs.items())
+    return f'direct light of "{beam}" is within reach: the axis of {listed}'
 
 
 def _gates(fields: dict[str, LineField], index: int) -> tuple[str, ...]:

@@ -15,7 +15,7 @@ from lasescatter.exposure.legs import Leg, Swing, legs_of, swings_of
 from lasescatter.exposure.line import TABULATION_ERROR, BrightLine, Window, bright_line, brightest_window, peak_radiance
 from lasescatter.exposure.scattered import LegLight, scattered
 from lasescatter.exposure.sightline import Sightlines
-from lasescatter.exposure.surfaces import stop_light, wall_return
+from lasescatter.exposure.surfaces import stop_light, tight_room_area, wall_return
 from lasescatter.exposure.thickness import allowance, optical_thickness
 from lasescatter.limits.compare import Received
 from lasescatter.limits.hazards import full_field, hazard_of
@@ -27,6 +27,9 @@ T = TypeVar("T")
 
 # Direct light that gives less than this per watt is none: a gaussian's tail [m⁻²].
 NO_DIRECT_LIGHT = 1e-30
+
+# Nearer than this a reach counts as touching: the bound is then far above any limit, and finite. [m]
+LEAST_GAP = 1e-3
 
 # Legs times observers integrated together: bounds the memory of the nodes to some tens of megabytes.
 MOST_LEGS_TIMES_OBSERVERS = 1024
@@ -49,8 +52,12 @@ class LineField:
     """With extinction. [m⁻²]"""
     stop_compared: Floats
     """Without. [m⁻²]"""
+    stop_tau: Floats
+    """Optical thickness from the beam's start to the stop to the observer, load as stated."""
     direct: Floats
     """At the observer's point, not averaged. [m⁻²]"""
+    nearest: Floats
+    """Distance to the nearest point of the beam's axis. [m]"""
     spot: Floats | None
     """Where the beam meets its stop, (3,)."""
     spot_radius: float
@@ -110,11 +117,13 @@ class LineField:
         """Peak radiance of one leg, and where it is void."""
         return self._once("peak", index, lambda: peak_radiance(self.bright(index), self.line, self.beam.profile))
 
-    def received(self, observer: int, limit: Limit, wall_points: Floats) -> Received | str:
+    def received(self, observer: int, limit: Limit, reach: float, wall_points: Floats) -> Received | str:
         """What one limit takes in at one observer, per watt; a sentence where that cannot be told.
 
         Parameters
         ----------
+        reach : float
+            How far the head moves: the upper bound holds within it. [m]
         wall_points : ndarray (n, 3)
             Beam and observers, about which the tight room of the upper bound is drawn.
         """
@@ -147,11 +156,33 @@ class LineField:
         if orders:
             by_origin.append(("allowance for higher orders", orders))
         by_origin += [("stop", stop), ("direct", direct)]
-        total = light + orders + stop + direct
-        high = total + error * float(allowance(self.thickness[observer]))
+        allowed = [("numerical error", error * float(allowance(self.thickness[observer])))]
+        allowed += self._within_reach(observer, reach, light + orders, stop, radiance)
         if full_field(hazard_of(limit)) and not radiance:
-            high += self._once("walls", 0.0, lambda: self._walls(wall_points))
-        return Received(tuple(by_origin), max(0.0, light - error) + stop + direct, high, window)
+            allowed.append(self._once("walls", 0.0, lambda: self._walls(wall_points)))
+        low = max(0.0, light - error) + stop + direct
+        return Received(tuple(by_origin), low, tuple(part for part in allowed if part[1] > 0), window)
+
+    def _within_reach(
+        self, observer: int, reach: float, scattered: float, stop: float, radiance: bool
+    ) -> list[tuple[str, float]]:
+        """How much more scattered and stop light the head can get where it reaches, per watt.
+
+        No element of the beam comes nearer than by the reach, so its inverse square grows by (d/(d − reach))² at
+        most, d the nearest distance. The stop is taken as seen square from r − reach. Radiance grows with neither.
+        """
+        if radiance or reach == 0:
+            return []
+        nearest = float(self.nearest[observer])
+        gap = max(nearest - reach, LEAST_GAP)
+        grown = [("reach, scattered", scattered * ((nearest / gap) ** 2 - 1))] if nearest > gap else []
+        if self.beam.stop is not None and self.spot is not None:
+            towards = self.points[observer] - self.spot
+            if float(towards @ np.asarray(self.beam.stop.facing)) + reach > 0:
+                gap = max(float(np.linalg.norm(towards)) - reach, LEAST_GAP)
+                square = self.legs[-1].reflected * self.beam.stop.reflectance / (np.pi * gap**2)
+                grown.append(("reach, stop", square - stop))
+        return grown
 
     def _plain(self, observer: int, light: float) -> float:
         """Light as it would be without polarization: the measure of relative errors near a null."""
@@ -174,7 +205,7 @@ class LineField:
         slope = abs(float(self.legs[-1].direction @ np.asarray(self.beam.stop.facing)))
         return self.beam.stop.reflectance * peak * slope / np.pi
 
-    def _walls(self, wall_points: Floats) -> float:
+    def _walls(self, wall_points: Floats) -> tuple[str, float]:
         """Upper bound of what walls return, per watt: all that is scattered and all that the stop sends back."""
         tau = sum(
             float(self.mixture.thicknesses(leg.origin, leg.origin + leg.length * leg.direction).sum())
@@ -183,7 +214,9 @@ class LineField:
             for leg in self.legs
         )
         stop = 0.0 if self.beam.stop is None else self.beam.stop.reflectance
-        return wall_return(wall_points, min(1.0, -float(np.expm1(-tau)) + stop))
+        freed = min(1.0, -float(np.expm1(-tau)) + stop)
+        area = tight_room_area(wall_points)
+        return f"walls of a room of {area:.0f} m²", wall_return(area, freed)
 
 
 def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> LineField:
@@ -196,7 +229,7 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> Line
         for start in range(0, len(points), together)
     ]
     lights = tuple(_joined([part[0][i] for part in parts]) for i in range(len(legs)))
-    spot, spot_radius, stated, compared = _stop(beam, line, legs, mixture, points, lights[-1].tau_before)
+    spot, spot_radius, stop_tau, compared = _stop(beam, line, legs, mixture, points, lights[-1].tau_before)
     hot = 1.0 if line.pulses is None else line.pulses.hot_spot
     direct = np.zeros(len(points))
     for leg in legs:
@@ -217,9 +250,11 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> Line
             error=np.concatenate([part[1].error for part in parts]),
         ),
         thickness=np.concatenate([part[2] for part in parts]),
-        stop_stated=stated,
+        stop_stated=compared * np.exp(-stop_tau),
         stop_compared=compared,
+        stop_tau=stop_tau,
         direct=np.where(direct > NO_DIRECT_LIGHT, direct, 0.0),
+        nearest=np.min([distance_to(leg, points) for leg in legs], axis=0),
         spot=spot,
         spot_radius=spot_radius,
         known={},
@@ -270,7 +305,13 @@ def _stop(
     tau = tau_before.sum() + mixture.thicknesses(last.origin, spot).sum()
     tau = tau + mixture.thicknesses(spot, points).sum(axis=0)
     radius = float(beam_radius(line, last.path_before + last.length))
-    return spot, radius, compared * np.exp(-tau), compared
+    return spot, radius, tau, compared
+
+
+def distance_to(leg: Leg, points: Floats) -> Floats:
+    """Distance from points (observers, 3) to the nearest point of a leg, (observers,). [m]"""
+    s0, across, _ = _foot(leg, points)
+    return np.hypot(across, s0 - np.clip(s0, 0.0, leg.length))
 
 
 def _foot(leg: Leg, points: Floats) -> tuple[Floats, Floats, NDArray[np.bool_]]:

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from lasescatter.assessment.field import LineField
-from lasescatter.assessment.outcome import HandCheck
+from lasescatter.assessment.outcome import HandCheck, StopCheck
 from lasescatter.exposure.scattered import LegLight, azimuths
 from lasescatter.medium.mixture import Component
 
@@ -35,6 +35,31 @@ def hand_checks(field: LineField, powers: Floats) -> list[list[HandCheck]]:
             for own, row in zip(rows, _rows(field, light, index, component, span, powers), strict=True):
                 own.append(row)
     return rows
+
+
+def stop_checks(field: LineField, powers: Floats) -> list[list[StopCheck]]:
+    """Lambert's law for the line's stop, per observer; empty lists for a beam without one."""
+    if field.beam.stop is None or field.spot is None:
+        return [[] for _ in powers]
+    towards = field.points - field.spot
+    r = np.linalg.norm(towards, axis=-1)
+    cosine = np.clip(towards @ np.asarray(field.beam.stop.facing) / np.maximum(r, 1e-6), 0.0, 1.0)
+    return [
+        [
+            StopCheck(
+                beam=field.beam.name,
+                line=field.line.name,
+                power=float(powers[i]) * field.legs[-1].reflected,
+                reflectance=field.beam.stop.reflectance,
+                r=float(r[i]),
+                cosine=float(cosine[i]),
+                tau=float(field.stop_tau[i]),
+                compared=float(powers[i] * field.stop_compared[i]),
+                stated=float(powers[i] * field.stop_stated[i]),
+            )
+        ]
+        for i in range(len(powers))
+    ]
 
 
 def _rows(
@@ -90,7 +115,7 @@ def _rows(
                 integral=float(end[i] - start[i]),
                 theta_mid=float(theta_mid[i]),
                 s_mid=float(s_mid[i]),
-                r_mid=float(np.linalg.norm(places[i] - field.points[i])),
+                r_mid=float(sight.b[i] / math.sin(theta_mid[i])),
                 tau_beam=float(tau_beam[i]),
                 tau_sight=float(tau_sight[i]),
                 hand=float(hand[i]),

@@ -72,7 +72,7 @@ def _strictest(scene: Scene, beam: Beam, line: Line, hot: float) -> tuple[Compar
         if limit.quantity not in ("irradiance", "radiant exposure"):
             continue
         mean = float(aperture_mean(beam.profile, beam_radius(line, 0.0), 0.0, limit.aperture)) * hot
-        received = Received((("direct", mean),), mean, mean)
+        received = Received((("direct", mean),), mean)
         for duration, daily in _times(scene.observers):
             time = dose_time(hazard_of(limit), line, duration, daily)
             result = compare(limit, beam.name, line, received, duration, time)

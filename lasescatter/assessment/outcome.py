@@ -66,6 +66,7 @@ class HandCheck:
     power: float
     """In the beam at the start of the leg: mirrors taken off, extinction not. [W]"""
     b: float
+    """Distance from the leg's line that the integral took: never less than the beam's radius alongside it. [m]"""
     s0: float
     length: float
     """Of the leg; infinite for a leg that leaves the site. [m]"""
@@ -100,6 +101,27 @@ class HandCheck:
     """What the full integral gives at the stated load. [W m⁻²]"""
     remark: str
     """Which factor makes hand and program differ by more than 5 %, else ""."""
+
+
+@dataclass(frozen=True)
+class StopCheck:
+    """Lambert's law for one lit stop and one observer, E = rho P cos(theta)/(pi r²)."""
+
+    beam: str
+    line: str
+    power: float
+    """On the stop: mirrors taken off, extinction not. [W]"""
+    reflectance: float
+    r: float
+    """From the spot to the observer. [m]"""
+    cosine: float
+    """Between the stop's normal and the direction to the observer; 0 behind the stop."""
+    tau: float
+    """Optical thickness from the beam's start to the stop to the observer, load as stated."""
+    compared: float
+    """Without extinction: what meets the limits. [W m⁻²]"""
+    stated: float
+    """With exp(−tau). [W m⁻²]"""
 
 
 @dataclass(frozen=True)
@@ -158,6 +180,7 @@ class ObserverOutcome:
     """Beam whose direct light is within reach, or ""."""
     lines: tuple[LineExposure, ...]
     hand_checks: tuple[HandCheck, ...]
+    stop_checks: tuple[StopCheck, ...]
     comparisons: tuple[Comparison, ...]
     hazards: tuple[HazardJudgement, ...]
 

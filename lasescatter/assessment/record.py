@@ -15,6 +15,7 @@ from lasescatter.assessment.outcome import (
     InTheBeam,
     LineExposure,
     ObserverOutcome,
+    StopCheck,
 )
 from lasescatter.limits.compare import Comparison, HazardJudgement
 from lasescatter.scene import QUANTITY_UNITS
@@ -124,6 +125,7 @@ def _observer(observer: ObserverOutcome) -> dict[str, Any]:
         "direct_within_reach": observer.direct_reach,
         "lines": [_line(line) for line in observer.lines],
         "legs": [_leg(row) for row in observer.hand_checks],
+        "stops": [_stop(check) for check in observer.stop_checks],
         "comparisons": [_comparison(comparison) for comparison in observer.comparisons],
         "hazards": [_hazard(hazard) for hazard in observer.hazards],
         "beam_visibility": None,
@@ -194,6 +196,20 @@ def _leg(row: HandCheck) -> dict[str, Any]:
     return body
 
 
+def _stop(check: StopCheck) -> dict[str, Any]:
+    return {
+        "beam": check.beam,
+        "line": check.line,
+        "power_w": check.power,
+        "reflectance": check.reflectance,
+        "r_m": check.r,
+        "cosine": check.cosine,
+        "tau": check.tau,
+        "compared_w_m2": check.compared,
+        "diffuse_w_m2": check.stated,
+    }
+
+
 def _comparison(comparison: Comparison) -> dict[str, Any]:
     return {
         "limit": comparison.limit,
@@ -204,6 +220,7 @@ def _comparison(comparison: Comparison) -> dict[str, Any]:
         "mechanism": comparison.mechanism,
         "quantity": comparison.quantity,
         "duration_s": comparison.duration,
+        "counted_s": comparison.counted,
         "time_s": comparison.time,
         "exposure": comparison.exposure,
         "limit_value": comparison.limit_value,
@@ -214,6 +231,7 @@ def _comparison(comparison: Comparison) -> dict[str, Any]:
         "optical_density": comparison.optical_density,
         "verdict": comparison.verdict,
         "by_origin": dict(comparison.by_origin),
+        "allowances": dict(comparison.allowances),
         "window": None if comparison.window is None else [[name, angle] for name, angle in comparison.window],
         "pulses": comparison.pulses,
         "note": comparison.note,

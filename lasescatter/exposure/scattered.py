@@ -40,10 +40,11 @@ NO_SHADOWS = Assumption(
     source="geometry",
 )
 STAYS_THERE = Assumption(
-    name="Scattered light is computed at the observer's stated position",
+    name="Scattered and stop light are computed at the observer's stated position",
     direction="low",
-    size="beside a long beam it grows as 1/b: by b/(b − reach) for a head that moves its reach towards the beam",
-    source="E3",
+    size="the printed ratio holds there; its upper bound, which decides below, allows (d/(d − reach))² for scattered "
+    "light, d the nearest distance to the beam, and a square view from r − reach for stop light",
+    source="inverse squares",
 )
 SPECKLE = Assumption(
     name="Speckle and flicker are averaged over",

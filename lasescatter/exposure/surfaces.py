@@ -60,8 +60,12 @@ def white_card(distance: float) -> float:
     return 1 / (np.pi * distance**2)
 
 
-def wall_return(points: Floats, power: float) -> float:
-    """Irradiance that a tight room about `points` (n, 3) would return of `power` watts set free in it. [W m⁻²]"""
-    sides = np.maximum(np.ptp(points, axis=0), LEAST_ROOM_SIDE)
-    area = 2 * (sides[0] * sides[1] + sides[1] * sides[2] + sides[0] * sides[2])
-    return float(4 * WALL_REFLECTANCE * power / (area * (1 - WALL_REFLECTANCE)))
+def tight_room_area(points: Floats) -> float:
+    """Inner surface of the smallest room about `points` (n, 3), no side under LEAST_ROOM_SIDE. [m²]"""
+    x, y, z = np.maximum(np.ptp(points, axis=0), LEAST_ROOM_SIDE)
+    return float(2 * (x * y + y * z + x * z))
+
+
+def wall_return(area: float, power: float) -> float:
+    """Irradiance that walls of an inner surface [m²] return of `power` watts set free in the room. [W m⁻²]"""
+    return 4 * WALL_REFLECTANCE * power / (area * (1 - WALL_REFLECTANCE))

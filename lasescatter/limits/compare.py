@@ -24,8 +24,10 @@ class Comparison:
     unit: str
     duration: float
     """Exposure duration judged. [s]"""
+    counted: float
+    """Exposure time that counts for the hazard: the daily sum where dose adds up over a day. [s]"""
     time: float
-    """Time put into the limit: of the exposure, the daily sum or the pulse. [s]"""
+    """Time put into the limit: the worst one up to `counted`, or the pulse. [s]"""
     exposure: float
     """In `unit`, the compared value."""
     limit_value: float
@@ -39,6 +41,8 @@ class Comparison:
     """That would bring the exposure to the limit; 0 where it is below."""
     by_origin: tuple[tuple[str, float], ...]
     """Exposure by origin: scattered, stop, direct. Same unit."""
+    allowances: tuple[tuple[str, float], ...]
+    """What the upper bound adds to the exposure, by cause. Same unit."""
     window: tuple[tuple[str, float], ...] | None
     """Where a limit has an acceptance field: its angles along the beam. [rad]"""
     pulses: int | None
@@ -71,8 +75,8 @@ class Received:
     by_origin: tuple[tuple[str, float], ...]
     low: float
     """Lower bound of the sum."""
-    high: float
-    """Upper bound of the sum."""
+    allowances: tuple[tuple[str, float], ...] = ()
+    """What the upper bound adds to the sum, by cause."""
     window: tuple[tuple[str, float], ...] | None = None
     note: str = ""
 
@@ -80,6 +84,11 @@ class Received:
     def total(self) -> float:
         """Sum over the origins."""
         return sum(value for _, value in self.by_origin)
+
+    @property
+    def high(self) -> float:
+        """Upper bound of the sum."""
+        return self.total + sum(value for _, value in self.allowances)
 
 
 def covers_time(limit: Limit, time: float) -> bool:
@@ -129,7 +138,7 @@ def compare(
     if not covers_time(limit, time):
         note = _joined(note, f"covers times up to {limit.durations[1]:g} s; the ratio never falls with time")
     value = limit.value * at**limit.time_exponent
-    return _made(limit, beam, line, received, duration, at, amount, value, pulses or None, note)
+    return _made(limit, beam, line, received, (duration, time, at), amount, value, pulses or None, note)
 
 
 def _worst_times(line: Line, shortest: float, longest: float) -> list[tuple[float, int]]:
@@ -171,8 +180,10 @@ def _per_pulse(
     dose = limit.quantity in ("radiant exposure", "radiance dose")
     amount = line.pulses.energy if dose else line.pulses.energy / width
     value = limit.value * width**limit.time_exponent * factor
-    note = _joined(received.note, f"per pulse, train factor {factor:.3g} for {count} pulses")
-    return _made(limit, beam, line, received, duration, width, amount, value, count, note)
+    plural = "" if count == 1 else "s"
+    rule = f"per pulse: {limit.value * width**limit.time_exponent:.4g}"
+    note = _joined(received.note, f"{rule} × {factor:.4g} for {count} pulse{plural} in {time:g} s")
+    return _made(limit, beam, line, received, (duration, time, width), amount, value, count, note)
 
 
 def _made(
@@ -180,8 +191,7 @@ def _made(
     beam: str,
     line: Line,
     received: Received,
-    duration: float,
-    time: float,
+    times: tuple[float, float, float],
     amount: float,
     value: float,
     pulses: int | None,
@@ -198,8 +208,9 @@ def _made(
         mechanism=limit.mechanism,
         quantity=limit.quantity,
         unit=QUANTITY_UNITS[limit.quantity],
-        duration=duration,
-        time=time,
+        duration=times[0],
+        counted=times[1],
+        time=times[2],
         exposure=exposure,
         limit_value=value,
         ratio=ratio,
@@ -207,6 +218,7 @@ def _made(
         ratio_high=high,
         optical_density=math.log10(ratio) if ratio > 1 else 0.0,
         by_origin=tuple((origin, amount * part) for origin, part in received.by_origin),
+        allowances=tuple((cause, amount * part) for cause, part in received.allowances),
         window=received.window,
         pulses=pulses,
         verdict=verdict_of(low, high),

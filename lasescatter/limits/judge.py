@@ -198,10 +198,22 @@ def _hazard(hazard: Hazard, made: list[Comparison], missing: tuple[str, ...]) ->
     verdict = verdict_of(low, high)
     reasons = missing
     if verdict == NOT_ESTABLISHED:
-        reasons += (f"{hazard}: the bounds {low:.3g} and {high:.3g} of the limit lie on both sides of it",)
+        reasons += (
+            f"{hazard}: the bounds {low:.3g} and {high:.3g} of the limit lie on both sides of it"
+            f"{_widest(list(governing.values()))}",
+        )
     elif verdict != ABOVE and missing:
         verdict = NOT_ESTABLISHED
     return HazardJudgement(hazard, ratio, low, high, verdict, reasons, parts, "")
+
+
+def _widest(governing: list[Comparison]) -> str:
+    """What widens the bounds most, in brackets."""
+    causes: dict[str, float] = {}
+    for comparison in governing:
+        for cause, amount in comparison.allowances:
+            causes[cause] = causes.get(cause, 0.0) + amount / comparison.limit_value
+    return f" (mostly: {max(causes, key=lambda cause: causes[cause])})" if causes else ""
 
 
 def _worst_duration(found: list[HazardJudgement]) -> HazardJudgement:

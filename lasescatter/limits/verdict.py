@@ -22,14 +22,16 @@ def worst(verdicts: Iterable[Verdict]) -> Verdict:
     return NOT_ESTABLISHED
 
 
-def three_digits(value: float) -> str:
-    """A positive number to two or three digits, without an exponent where it reads well."""
+def few_digits(value: float) -> str:
+    """A positive number to two digits, three between a half and two, without an exponent where it reads well."""
     if value == 0:
         return "0"
-    if 1e-3 <= abs(value) < 1e5:
-        digits = max(0, 1 - math.floor(math.log10(abs(value))))
-        return f"{value:.{digits}f}"
-    return f"{value:.1e}"
+    digits = 3 if 0.5 <= value <= 2 else 2
+    if not 1e-3 <= abs(value) < 1e6:
+        mantissa, exponent = f"{value:.{digits - 1}e}".split("e")
+        return f"{mantissa}e{int(exponent)}"
+    rounded = float(f"{value:.{digits - 1}e}")
+    return f"{rounded:.{max(0, digits - 1 - math.floor(math.log10(abs(rounded))))}f}"
 
 
 def margin(ratio: float | None) -> str:
@@ -39,5 +41,5 @@ def margin(ratio: float | None) -> str:
     if ratio <= 0:
         return "0 of the limit (nothing arrives)"
     if ratio <= 1:
-        return f"{three_digits(ratio)} of the limit ({three_digits(1 / ratio)} times below)"
-    return f"{three_digits(ratio)} of the limit ({three_digits(ratio)} times above)"
+        return f"{few_digits(ratio)} of the limit ({few_digits(1 / ratio)} times below)"
+    return f"{few_digits(ratio)} of the limit ({few_digits(ratio)} times above)"

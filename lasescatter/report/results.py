@@ -6,7 +6,7 @@ from typing import Any
 
 from lasescatter.assessment.outcome import Assessment, InTheBeam, LineExposure, ObserverOutcome
 from lasescatter.limits.compare import Comparison, HazardJudgement
-from lasescatter.limits.verdict import margin, three_digits
+from lasescatter.limits.verdict import few_digits, margin
 from lasescatter.report.front import NAME, multiple
 from lasescatter.report.quantities import (
     ABSENT,
@@ -184,14 +184,14 @@ def comparison_section(assessment: Assessment) -> list[Any]:
 def _bounds(low: float | None, high: float | None) -> str:
     if low is None or high is None:
         return ABSENT
-    return f"{three_digits(low)} to {three_digits(high)}"
+    return f"{few_digits(low)} to {few_digits(high)}"
 
 
 def _hazard_row(hazard: HazardJudgement) -> list[Any]:
     if hazard.not_judged:
         return [hazard.hazard, ABSENT, ABSENT, words("not judged"), words(f"user's reason: {hazard.not_judged}")]
     return [
-        hazard.hazard, three_digits(hazard.ratio) if hazard.ratio is not None else ABSENT,
+        hazard.hazard, few_digits(hazard.ratio) if hazard.ratio is not None else ABSENT,
         _bounds(hazard.ratio_low, hazard.ratio_high), paragraph(verdict_words(hazard.verdict), "cell"),
         words("; ".join(hazard.reasons), limit=900),
     ]  # fmt: skip
@@ -245,7 +245,7 @@ def _comparison_row(entry: Comparison) -> list[Any]:
         words(time),
         number_cell(f"{digits(entry.exposure)} {entry.unit}"),
         number_cell(f"{digits(entry.limit_value)} {entry.unit}"),
-        number_cell(three_digits(entry.ratio)),
+        number_cell(few_digits(entry.ratio)),
         number_cell(_bounds(entry.ratio_low, entry.ratio_high)),
         number_cell(f"{entry.optical_density:.1f}" if entry.optical_density > 0 else "0"),
         paragraph(verdict_words(entry.verdict), "cell"),
@@ -294,6 +294,6 @@ def _shares(entry: Comparison) -> list[Any]:
         words(entry.hazard),
         words(line_label(entry.beam, entry.line), limit=NAME),
         words(entry.limit, limit=NAME),
-        three_digits(entry.ratio),
+        few_digits(entry.ratio),
         words(", ".join(shares) or "nothing arrives"),
     ]

@@ -14,7 +14,11 @@ from limits.entries import limit
 from lasescatter.limits.compare import Received, compare, pulses_within
 from lasescatter.limits.verdict import margin
 
-ONE = Received((("scattered", 1.0),), 1.0, 1.0)
+ONE = Received((("scattered", 1.0),), 1.0)
+
+
+def bounded(value, low, high):
+    return Received((("scattered", value),), low, (("numerical error", high - value),))
 
 
 def value_at(entry, source, time):
@@ -99,10 +103,10 @@ def test_pulses_counted():
 
 def test_bounds_decide_the_verdict():
     entry = limit(value=1.0)
-    assert compare(entry, "b", line(), Received((("x", 0.9),), 0.8, 0.95), 10, 10).verdict == "below limit"
-    assert compare(entry, "b", line(), Received((("x", 0.9),), 0.8, 1.01), 10, 10).verdict == "not established"
-    assert compare(entry, "b", line(), Received((("x", 1.1),), 1.05, 1.2), 10, 10).verdict == "above limit"
-    assert compare(entry, "b", line(), Received((("x", 1.1),), 0.99, 1.2), 10, 10).verdict == "not established"
+    assert compare(entry, "b", line(), bounded(0.9, 0.8, 0.95), 10, 10).verdict == "below limit"
+    assert compare(entry, "b", line(), bounded(0.9, 0.8, 1.01), 10, 10).verdict == "not established"
+    assert compare(entry, "b", line(), bounded(1.1, 1.05, 1.2), 10, 10).verdict == "above limit"
+    assert compare(entry, "b", line(), bounded(1.1, 0.99, 1.2), 10, 10).verdict == "not established"
 
 
 def test_optical_density_brings_the_exposure_to_the_limit():
@@ -152,6 +156,10 @@ def test_train_ratio_is_the_largest_over_all_shorter_times(t, rate, exponent, st
 def test_margin_has_one_form():
     assert margin(0.036) == "0.036 of the limit (28 times below)"
     assert margin(3.2) == "3.2 of the limit (3.2 times above)"
+    assert margin(6.7e-4) == "6.7e-4 of the limit (1500 times below)"
+    assert margin(8.59e-5) == "8.6e-5 of the limit (12000 times below)"
+    assert margin(0.974) == "0.974 of the limit (1.03 times below)"
+    assert margin(1.04) == "1.04 of the limit (1.04 times above)"
     assert margin(0.0) == "0 of the limit (nothing arrives)"
     assert margin(None) == "no ratio"
     assert math.isfinite(float(margin(1e-12).split()[0]))

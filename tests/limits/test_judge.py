@@ -14,9 +14,8 @@ EYE_BLUE_SKIN = (limit(), blue(), skin())
 
 
 def received(value, low=None, high=None):
-    return lambda _line, _limit: Received(
-        (("scattered", value),), value if low is None else low, value if high is None else high
-    )
+    extra = () if high is None else (("numerical error", high - value),)
+    return lambda _line, _limit: Received((("scattered", value),), value if low is None else low, extra)
 
 
 def judged(limits=EYE_BLUE_SKIN, value=1.0, beams=None, not_judged=(), gates=(), **changes):
@@ -104,7 +103,7 @@ def test_ratios_add_over_beams_whichever_limit_judged_them():
 
     def by_line(source, _limit):
         value = 6.0 if source.name == "green" else 12.0
-        return Received((("scattered", value),), value, value)
+        return Received((("scattered", value),), value)
 
     found = judge(observer(), beams, limits, by_line, (), ())
     thermal = next(h for h in found.hazards if h.hazard == "retina thermal")
@@ -187,3 +186,9 @@ def test_an_example_of_the_starter_file_is_not_a_limit_anybody_answers_for():
     assert any("still an example" in reason for reason in found.reasons)
     above = judged((limit(source="EXAMPLE: replace"), blue(), skin()), value=11.0)
     assert above.verdict == "above limit"
+
+
+def test_bounds_on_both_sides_name_what_widens_them():
+    found = judge(observer(), (beam(),), EYE_BLUE_SKIN, received(9.0, 8.9, 12.0), (), ())
+    assert found.verdict == "not established"
+    assert any("0.89 and 1.2 of the limit" in reason and "numerical error" in reason for reason in found.reasons)

@@ -20,6 +20,7 @@ from lasescatter.assessment.outcome import (
     LineExposure,
     ObserverOutcome,
     Provenance,
+    StopCheck,
 )
 from lasescatter.assumptions import Assumption
 from lasescatter.cautions import cautions
@@ -234,6 +235,15 @@ def exposures(checks: tuple[HandCheck, ...], direct: float) -> tuple[LineExposur
     return tuple(found)
 
 
+def stop_checks(lines: tuple[LineExposure, ...]) -> tuple[StopCheck, ...]:
+    """One for each line that meets a stop."""
+    return tuple(
+        StopCheck(line.beam, line.line, 2.0, 0.3, 2.5, 0.8, 0.049, line.diffuse_compared, line.diffuse)
+        for line in lines
+        if line.diffuse
+    )
+
+
 def comparisons(lines: tuple[LineExposure, ...], direct: float) -> tuple[Comparison, ...]:
     found = []
     for line in lines:
@@ -254,8 +264,9 @@ def comparisons(lines: tuple[LineExposure, ...], direct: float) -> tuple[Compari
             found.append(
                 Comparison(
                     limit.name, line.beam, line.line, "retina thermal", "retina", "thermal", limit.quantity,
-                    "J/m²" if pulse else "W/m²", 10.0, 8e-9 if pulse else 10.0, exposure, limit.value, ratio,
+                    "J/m²" if pulse else "W/m²", 10.0, 10.0, 8e-9 if pulse else 10.0, exposure, limit.value, ratio,
                     ratio * 0.99, ratio * 1.04, max(0.0, math.log10(ratio)) if ratio > 0 else 0.0, origin,
+                    (("numerical error", exposure * 0.04),),
                     (("from", 0.4), ("to", 0.5)) if limit.acceptance else None, 200 if pulse else None, verdict,
                     "per pulse, train factor N^-1/4 with N = 200" if pulse else "",
                 )
@@ -290,7 +301,7 @@ def outcome(observer: Observer, place: int) -> ObserverOutcome:
     return ObserverOutcome(
         observer.name, observer.key, observer.position, verdict, reasons, ratio,
         "retina thermal, by eye, green, ten seconds" if found else "", 1.23 + 0.01 * place, "alignment beam", 0.083,
-        "ranging <i>& pulses" if kind == 2 else "", lines, checks, found,
+        "ranging <i>& pulses" if kind == 2 else "", lines, checks, stop_checks(lines), found,
         (HazardJudgement("retina thermal", ratio, low, high, verdict, reasons, parts, ""), LEFT_OUT),
     )  # fmt: skip
 
