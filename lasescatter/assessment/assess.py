@@ -48,6 +48,8 @@ REACHED_WITHIN_RADII = 3.0
 PUPIL = 7e-3
 # Above this full angle a beam is no pencil for this program. [rad]
 WIDEST_DIVERGENCE = 10e-3
+# How far a head moves where the site file is silent; less is listed as an assumption. [m]
+USUAL_REACH = 0.25
 # Sums over legs, lines and scatterers for all observers together.
 MOST_ROWS = 200_000
 
@@ -214,6 +216,8 @@ def _gates(fields: dict[str, LineField], index: int) -> tuple[str, ...]:
                 f'"{field.line.name}" diverges by {field.line.divergence * 1e3:.3g} mrad: above 10 mrad the average '
                 "over its rays is not computed"
             )
+        if field.beam.leaves_site and field.legs[-1].direction[2] < 0:
+            gates.append(f'"{field.beam.name}" leaves the site downwards: light from the ground there is not computed')
         if field.spot is not None and field.stop_compared[index] > 0:
             r = float(np.linalg.norm(field.points[index] - field.spot))
             if r < surfaces.LEAST_SPOT_DISTANCES * field.spot_radius:
@@ -256,6 +260,8 @@ def _line_exposure(field: LineField, index: int, power: float) -> LineExposure:
 
 def _assumptions(scene: Scene, wavelengths: set[float]) -> tuple[Assumption, ...]:
     found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, DRY_AIR]
+    if any(observer.reach < USUAL_REACH for observer in scene.observers):
+        found.append(first_order.SHORT_REACH)
     if scene.loads:
         found += [SIZE_AVERAGE, direct_light.NO_EXTINCTION]
     if any(beam.stop for beam in scene.beams):

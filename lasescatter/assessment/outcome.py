@@ -76,9 +76,9 @@ class HandCheck:
     scattering: float
     """beta_sca of the component. [m⁻¹]"""
     polarization: str
-    """"unpolarised", "known axis" or "worst axis"."""
+    """"unpolarized", "known axis" or "worst axis"."""
     q: float
-    """Stokes Q/I along the axis: 0 for unpolarised light."""
+    """Stokes Q/I along the axis: 0 for unpolarized light."""
     phi: float | None
     """Angle from the electric-field axis to the scattering plane, where the axis is known. [rad]"""
     integral_11: float

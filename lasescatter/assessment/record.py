@@ -144,7 +144,7 @@ def _line(line: LineExposure) -> dict[str, Any]:
         "wavelength_m": line.wavelength,
         "scattered_w_m2": line.scattered,
         "scattered_error_w_m2": line.scattered_error,
-        "scattered_unpolarised_w_m2": line.scattered_unpolarised,
+        "scattered_unpolarized_w_m2": line.scattered_unpolarised,
         "scattered_compared_w_m2": line.scattered_compared,
         "load_fraction": line.load_fraction,
         "diffuse_w_m2": line.diffuse,

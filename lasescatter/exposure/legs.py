@@ -74,7 +74,7 @@ class Swing:
         """How a report names it."""
         if self.worst:
             return "worst axis"
-        return "known axis" if self.axis is not None else "unpolarised"
+        return "known axis" if self.axis is not None else "unpolarized"
 
 
 UNPOLARIZED = Swing(0.0, None, False)

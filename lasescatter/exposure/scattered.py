@@ -52,6 +52,12 @@ SPECKLE = Assumption(
     size="single bright spots can exceed the mean several times over areas far smaller than a pupil",
     source="common practice, no source",
 )
+SHORT_REACH = Assumption(
+    name="Some heads are taken to move less than 0.25 m, as the site file says",
+    direction="low",
+    size="without limit where the beam itself lies within what a head can reach after all",
+    source="entered by the user",
+)
 ASSUMPTIONS = (FIRST_ORDER, PENCIL, NO_SHADOWS, STAYS_THERE, SPECKLE)
 
 # First division of each leg's angles, so that the forward peak and the glory are met by panels of their own size.

@@ -20,8 +20,8 @@ from lasescatter.scene import Beam, Hazard, Limit, Line, Observer
 
 HAZARDS: tuple[Hazard, ...] = ("retina thermal", "retina photochemical", "cornea and lens", "skin")
 
-# The sources of a starter file's limits begin with this word: nobody has answered for them yet.
-PLACEHOLDER = "EXAMPLE"
+# A limit or a reason that begins with one of these words is nobody's yet; starter files write EXAMPLE.
+PLACEHOLDERS = ("EXAMPLE", "TODO", "TBD", "REPLACE", "XXX", "?")
 
 # Gives what a limit's detector takes in of a line, or why that cannot be told.
 ReceivedBy = Callable[[Line, Limit], Received | str]
@@ -54,6 +54,7 @@ def judge(
     gates : tuple of str
         Reasons outside the limits for which nothing may be called below: direct light within reach and the like.
     """
+    not_judged = tuple((hazard, reason) for hazard, reason in not_judged if not is_placeholder(reason))
     left_out = dict(not_judged)
     comparisons: list[Comparison] = []
     judged: dict[Hazard, list[HazardJudgement]] = {}
@@ -94,6 +95,11 @@ def judge(
     )
 
 
+def is_placeholder(text: str) -> bool:
+    """Whether a text still waits for somebody to write it."""
+    return text.strip().upper().startswith(PLACEHOLDERS)
+
+
 def _over_lines(
     observer: Observer, beams: tuple[Beam, ...], limits: tuple[Limit, ...], received_by: ReceivedBy, duration: float
 ) -> tuple[list[Comparison], set[Hazard], dict[Hazard, tuple[str, ...]]]:
@@ -131,7 +137,7 @@ def _against(
         if hazard_of(limit) != hazard or not within(line.wavelength, limit.wavelengths):
             continue
         received = received_by(line, limit)
-        if limit.source.strip().upper().startswith(PLACEHOLDER):
+        if is_placeholder(limit.source) or is_placeholder(limit.entered_by):
             faults.append(f'limit "{limit.name}" is still an example of the starter file: enter your own, with source')
         if isinstance(received, str):
             faults.append(f'limit "{limit.name}": {received}')

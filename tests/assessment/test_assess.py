@@ -348,3 +348,27 @@ def test_wavelength_outside_the_data_for_air_is_not_established_and_never_extrap
     assert found.observers[0].total("scattered") == 0.0
     assert found.components == ()
     assert found.in_the_beam[0].spots[0].multiple > 1
+
+
+def test_a_beam_that_leaves_the_site_downwards_meets_ground_that_is_not_computed():
+    def leaving(z):
+        path = replace(bay().beams[0], points=((0.0, 0.0, 1.2), (9.0, 0.0, z)), leaves_site=True, stop=None)
+        return only(bay(beams=(path,), loads=()))
+
+    assert leaving(1.2).verdict == "below limit"
+    assert leaving(3.0).verdict == "below limit"
+    down = leaving(1.0)
+    assert down.verdict == "not established"
+    assert any("downwards" in reason for reason in down.reasons)
+
+
+def test_assumptions_in_force():
+    names = {entry.name for entry in assess(bay()).assumptions}
+    assert "Air outside the stated loads holds no particles" in names
+    filled = {entry.name for entry in assess(bay(loads=(haze(region=Everywhere()),))).assumptions}
+    assert "Air outside the stated loads holds no particles" not in filled
+    close = assess(bay(observers=(observer(position=(4.0, 1.5, 1.6), reach=0.05),)))
+    assert any("less than 0.25 m" in entry.name for entry in close.assumptions)
+    assert [entry.direction for entry in close.assumptions] == sorted(
+        (entry.direction for entry in close.assumptions), key=["low", "either", "high"].index
+    )

@@ -55,8 +55,8 @@ def test_real_mirror_keeps_the_axis_within_one_degree_only(turn, known):
     ("word", "first", "second"),
     [
         ("unknown", "worst axis", "worst axis"),
-        ("circular", "unpolarised", "worst axis"),
-        ("unpolarized", "unpolarised", "unpolarised"),
+        ("circular", "unpolarized", "worst axis"),
+        ("unpolarized", "unpolarized", "unpolarized"),
         ("linear", "worst axis", "worst axis"),
     ],
 )

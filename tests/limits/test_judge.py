@@ -180,12 +180,19 @@ def test_a_detector_that_cannot_tell_is_a_reason():
     assert any("no radiance there" in reason for reason in found.reasons)
 
 
-def test_an_example_of_the_starter_file_is_not_a_limit_anybody_answers_for():
-    found = judged((limit(source="EXAMPLE: replace by edition, clause and table"), blue(), skin()))
+@pytest.mark.parametrize("words", ["EXAMPLE: replace by edition", "todo", "TBD", "Replace by edition", "?", " xxx"])
+@pytest.mark.parametrize("key", ["source", "entered_by"])
+def test_a_placeholder_is_not_a_limit_anybody_answers_for(words, key):
+    found = judged((limit(**{key: words}), blue(), skin()))
     assert found.verdict == "not established"
     assert any("still an example" in reason for reason in found.reasons)
-    above = judged((limit(source="EXAMPLE: replace"), blue(), skin()), value=11.0)
-    assert above.verdict == "above limit"
+    assert judged((limit(**{key: words}), blue(), skin()), value=11.0).verdict == "above limit"
+
+
+def test_a_placeholder_leaves_no_hazard_out():
+    found = judged((limit(), blue()), not_judged=(("skin", "EXAMPLE: covered by the clothing rule"),))
+    assert found.verdict == "not established"
+    assert any(reason.startswith("skin: no limit") for reason in found.reasons)
 
 
 def test_bounds_on_both_sides_name_what_widens_them():
