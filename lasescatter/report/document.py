@@ -69,6 +69,7 @@ def pdf_bytes(assessment: Assessment, page_size: str = "A4", made_at: datetime |
         page_size,
         head=f"record {digest}  ·  reference {scene.reference}",
         title=scene.title,
+        author=scene.prepared_by,
         subject=f"Laser light beside the beam, reference {scene.reference}: {assessment.verdict}",
     )
     return assembled(pages, figures, moment)

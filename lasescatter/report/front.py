@@ -7,19 +7,26 @@ from typing import Any
 
 from lasescatter.assessment.outcome import Assessment, BeamSpot, InTheBeam, ObserverOutcome
 from lasescatter.cautions import not_covered
-from lasescatter.limits.verdict import ABOVE, BELOW, margin
+from lasescatter.limits.verdict import ABOVE, BELOW
+from lasescatter.report.naming import named_line
 from lasescatter.report.page_frame import COLUMN
-from lasescatter.report.quantities import digits, duration, length, line_label, wavelength
+from lasescatter.report.quantities import counted as count_of
+from lasescatter.report.quantities import digits, duration, length
 from lasescatter.report.ranking import counted, greatest, worst_first
+from lasescatter.report.standing import beam_headline, beside_headline, grouped, left_out_words, standing
 from lasescatter.report.styles import INK, MM, heads, number_cell, paragraph, ruled, verdict_words, words
-from lasescatter.report.typography import SANS, abridged, markup
+from lasescatter.report.typography import SANS, fitted, markup, printable
 
 FRONT_LINES = 6
 """Beam lines in the short table of the first page; all are in their own section."""
 FRONT_OBSERVERS = 8
 """Observers in the table of the first page; where there are more, a full table follows."""
 BRIEF = 200
-NAME = 120
+"""Characters of reasons in the table of the first page; a third of it where there are many observers."""
+FEW_OBSERVERS = 4
+NAME = 60
+_NAME_WIDTH = 34
+"""Of an observer's name in the first table. [mm]"""
 
 
 def front(assessment: Assessment, made_at: datetime, sections: dict[str, int]) -> list[Any]:
@@ -64,6 +71,11 @@ def multiple(value: float | None) -> str:
     return digits(value)
 
 
+def leaves_site(assessment: Assessment, line: InTheBeam) -> bool:
+    """Whether nothing ends the beam of a line."""
+    return any(beam.leaves_site for beam in assessment.scene.beams if beam.name == line.beam)
+
+
 def _group(line: InTheBeam, word: str) -> list[BeamSpot]:
     return [spot for spot in line.spots if spot.place.startswith(word)]
 
@@ -91,12 +103,13 @@ def _beam_lines(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
         )
     ]  # fmt: skip
     for line in ordered[:FRONT_LINES]:
-        label = f"<b>{markup(line_label(line.beam, line.line), 90)}</b>, {wavelength(line.wavelength)}"
+        label = f"<b>{markup(named_line(assessment.scene, line.beam, line.line))}</b>"
+        end = "; leaves the site" if leaves_site(assessment, line) else ""
         start = _group(line, "start")
         if line.limit is None:
-            told = f"{label}<br/>no multiple: {markup(line.reason or 'no limit covers it', 160)}"
+            told = f"{label}<br/>no multiple: {markup(line.reason or 'no limit covers it', 160)}{end}"
         else:
-            told = f"{label}<br/>{markup(line.limit, 90)}, {duration(line.duration)}"
+            told = f"{label}<br/>{markup(line.limit, NAME)}, {duration(line.duration)}{end}"
         card = max((spot.diffuse_distance for spot in line.spots if spot.diffuse_distance is not None), default=None)
         rows.append(
             [
@@ -111,17 +124,18 @@ def _beam_lines(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
         )
     hidden = len(ordered) - FRONT_LINES
     more = (
-        f" {hidden} more beam line(s), all weaker against their limits, are in section {sections['beam']}."
+        f" {count_of(hidden, 'more beam line')} of lesser multiples: see section {sections['beam']}."
         if hidden > 0
         else ""
     )
     return [
         paragraph("Somebody in the beam itself", "section"),
-        ruled(rows, [54, 17, 18, 17, 20, 24, 24], numeric=(1, 2, 3, 4, 5, 6)),
+        ruled(rows, [68, 14, 16, 15, 19, 20, 22], numeric=(1, 2, 3, 4, 5, 6)),
         paragraph(
             "Direct exposure as a <b>multiple of the limit</b>, whether or not anybody stands there; above 1 is "
             "above the limit. White card: the distance from a white matt surface held in the beam at which its "
-            "light has fallen to the limit. Hazard distance: along the beam from its start, no loss credited. "
+            "light has fallen to the limit. Hazard distance: along the beam from its start if nothing stopped it, no "
+            "loss credited. "
             f"Every place is in section {sections['beam']}. 1.2e-3 stands for 1.2 × 10⁻³ throughout; – for a "
             f"value that does not exist.{more}",
             "note",
@@ -129,20 +143,25 @@ def _beam_lines(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
     ]
 
 
-def _because(observer: ObserverOutcome) -> str:
+def _because(observer: ObserverOutcome, room: int) -> str:
     """Reasons in brief."""
-    told = list(observer.reasons)
+    told = list(grouped(observer.reasons))
     if observer.governing and (observer.verdict == BELOW or not told):
         told.insert(0, observer.governing)
-    return markup(abridged("; ".join(told), BRIEF) if told else "")
+    return markup("; ".join(told), room) if told else ""
 
 
 def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
     from reportlab.lib.colors import HexColor
     from reportlab.platypus import Table, TableStyle
 
+    lines = [paragraph(markup(beam_headline(assessment)), "verdict")]
+    beside = f"{beside_headline(assessment)}: {verdict_words(assessment.verdict)}"
+    lines.append(paragraph(beside, "verdict"))
+    if assessment.scene.not_judged:
+        lines.append(paragraph(markup(left_out_words(assessment)), "cell bold"))
     box = Table(
-        [[paragraph(f"Site verdict: {verdict_words(assessment.verdict)}", "verdict")]],
+        [[lines]],
         colWidths=[COLUMN * MM],
         hAlign="LEFT",
         style=TableStyle([
@@ -153,7 +172,7 @@ def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
         spaceAfter=4,
     )  # fmt: skip
     numbered = list(enumerate(assessment.observers, start=1))
-    story: list[Any] = [paragraph("Verdict beside the beam", "section"), box]
+    story: list[Any] = [paragraph("What was found", "section"), box]
     if len(numbered) > FRONT_OBSERVERS:
         counts = ", ".join(f"{count} {verdict}" for verdict, count in counted(assessment).items())
         story.append(
@@ -166,7 +185,7 @@ def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
     story += [
         _verdict_table(numbered),
         paragraph(
-            "The site's verdict is the worst of its observers'. A verdict holds for the stated inputs, limits and "
+            "A verdict holds for somebody at that place, beside the beam, and for the stated inputs, limits and "
             f"assumptions only (sections {sections['inputs']} to {sections['cautions']}); reasons in full are in "
             f"section {sections['comparisons']}.",
             "note",
@@ -176,18 +195,21 @@ def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
 
 
 def _verdict_table(numbered: list[tuple[int, ObserverOutcome]]) -> Any:
-    rows: list[list[Any]] = [heads("No.", "Observer", "Verdict", "Greatest summed exposure", "Reasons in brief")]
+    rows: list[list[Any]] = [
+        heads("No.", "Observer", "Verdict", "Greatest summed ratio to its limit", "Reasons in brief")
+    ]
+    room = BRIEF if len(numbered) <= FEW_OBSERVERS else BRIEF // 3
     for number, observer in numbered:
         rows.append(
             [
                 str(number),
-                words(observer.name, limit=NAME),
+                paragraph(markup(fitted(printable(observer.name), SANS, 7.3, (_NAME_WIDTH - 2) * MM)), "cell"),
                 paragraph(verdict_words(observer.verdict), "cell"),
-                paragraph(margin(observer.ratio), "cell"),
-                paragraph(_because(observer), "cell"),
+                paragraph(markup(standing(observer)), "cell"),
+                paragraph(_because(observer, room), "cell"),
             ]
         )
-    return ruled(rows, [8, 40, 25, 37, 64])
+    return ruled(rows, [8, _NAME_WIDTH, 25, 50, 57])
 
 
 def _every_verdict(assessment: Assessment) -> list[Any]:
@@ -207,13 +229,13 @@ def _left_out(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
     story: list[Any] = [paragraph("Not judged, by the user's decision", "subsection")]
     if assessment.scene.not_judged:
         story += [
-            paragraph(f"<b>{hazard}</b>: {markup(reason, 2000)}", "item", bullet="•")
+            paragraph(f"<b>{hazard}</b>: {markup(reason, 2000)}", "small item", bullet="•")
             for hazard, reason in assessment.scene.not_judged
         ]
     else:
-        story.append(paragraph("Nothing: every hazard that is due was to be judged.", "item"))
+        story.append(paragraph("None: every hazard that is due was to be judged.", "small item"))
     story.append(paragraph("Not covered", "subsection"))
-    story += [paragraph(markup(entry), "item", bullet="•") for entry in not_covered()]
+    story += [paragraph(markup(entry), "small item", bullet="•") for entry in not_covered()]
     story.append(
         paragraph(f"Read the cautions (section {sections['cautions']}) before relying on any number here.", "aside")
     )

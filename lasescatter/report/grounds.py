@@ -8,7 +8,7 @@ from lasescatter.assessment.outcome import Assessment
 from lasescatter.report.front import NAME
 from lasescatter.report.quantities import duration, per_square_centimetre, small_length, trimmed, wavelength
 from lasescatter.report.styles import heads, paragraph, ruled, words
-from lasescatter.report.typography import SANS, markup
+from lasescatter.report.typography import markup
 from lasescatter.scene import QUANTITY_UNITS, Limit
 
 
@@ -113,6 +113,6 @@ def assumption_section(assessment: Assessment) -> list[Any]:
 def caution_section(assessment: Assessment) -> list[Any]:
     """All cautions."""
     return [
-        paragraph(f'<font name="{SANS}">{number}.</font> {markup(text, None)}')
+        paragraph(markup(text, None), "caution", bullet=f"{number}.")
         for number, text in enumerate(assessment.cautions, start=1)
     ]

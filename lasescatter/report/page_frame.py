@@ -17,13 +17,17 @@ from lasescatter.report.styles import INK, MM, RULE, paragraph_styles
 from lasescatter.report.typography import SANS, fitted, markup, printable, register_faces
 
 PAGE_SIZES = {"A4": A4, "Letter": LETTER}
-SIDE = 18 * MM
 TOP = 21 * MM
 FOOT = 15 * MM
 COLUMN = 174.0
 """Width of the text column, the same on both page sizes. [mm]"""
 
 _HEAD_SIZE = 7.2
+
+
+def side(page_width: float) -> float:
+    """Margin left and right of the text column. [pt]"""
+    return (page_width - COLUMN * MM) / 2
 
 
 @dataclass(frozen=True)
@@ -96,12 +100,13 @@ class _CountedPages(Canvas):
         self.saveState()
         self.setFont(SANS, _HEAD_SIZE)
         self.setFillColor(HexColor(INK))
-        room = width - 2 * SIDE - stringWidth(tail, SANS, _HEAD_SIZE) - 12
-        self.drawString(SIDE, baseline, fitted(self._running_head, SANS, _HEAD_SIZE, room))
-        self.drawRightString(width - SIDE, baseline, tail)
+        left = side(width)
+        room = COLUMN * MM - stringWidth(tail, SANS, _HEAD_SIZE) - 12
+        self.drawString(left, baseline, fitted(self._running_head, SANS, _HEAD_SIZE, room))
+        self.drawRightString(width - left, baseline, tail)
         self.setStrokeColor(HexColor(RULE))
         self.setLineWidth(0.5)
-        self.line(SIDE, baseline - 4, width - SIDE, baseline - 4)
+        self.line(left, baseline - 4, width - left, baseline - 4)
         self.restoreState()
         self._code = drawn[:1] + self._code + drawn[1:]
 
@@ -115,7 +120,7 @@ class Pages:
     sections: tuple[Place, ...]
 
 
-def paginate(story: list[Any], page_size: str, head: str, title: str, subject: str) -> Pages:
+def paginate(story: list[Any], page_size: str, head: str, title: str, author: str, subject: str) -> Pages:
     """Break a story into pages."""
     register_faces()
     width, height = PAGE_SIZES[page_size]
@@ -127,12 +132,13 @@ def paginate(story: list[Any], page_size: str, head: str, title: str, subject: s
         invariant=1,
         pageCompression=1,
         title=printable(title),
+        author=printable(author),
         subject=printable(subject),
         creator="lasescatter",
         lang="en-GB",
     )
     bare = {"leftPadding": 0, "rightPadding": 0, "topPadding": 0, "bottomPadding": 0}
-    frame = Frame(SIDE, FOOT, width - 2 * SIDE, height - TOP - FOOT, **bare)
+    frame = Frame(side(width), FOOT, COLUMN * MM, height - TOP - FOOT, **bare)
     document.addPageTemplates([PageTemplate(id="page", frames=[frame])])
     document.build(story.copy(), canvasmaker=partial(_CountedPages, head=printable(head)))
     pieces = _flattened(story)

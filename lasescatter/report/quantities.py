@@ -109,12 +109,27 @@ def per_square_centimetre(value: float, unit: str) -> str:
     return f"{trimmed(float(f'{value * factor:.6g}'))} {name}"
 
 
+def counted(count: int, what: str) -> str:
+    """A number of things: "1 pulse", "2 pulses"."""
+    return f"{count} {what}{'' if count == 1 else 's'}"
+
+
+def optical_density(value: float) -> str:
+    """An optical density rounded up to a tenth; 0 where none is needed."""
+    return f"{math.ceil(10 * value) / 10:.1f}" if value > 0 else "0"
+
+
+def long_time(value: float) -> str:
+    """A time, in hours where it is one hour or longer."""
+    return f"{_without_zeros(digits(value / 3600, 3))} h" if value >= 3600 else duration(value)
+
+
 def light(line: Line) -> str:
     """What a line emits, in words."""
     pulses = line.pulses
     if pulses is None:
         return f"{trimmed(line.power)} W continuous"
-    train = f"at {trimmed(pulses.rate)} Hz" if pulses.rate is not None else f"{pulses.count} pulse(s)"
+    train = f"at {trimmed(pulses.rate)} Hz" if pulses.rate is not None else counted(pulses.count or 1, "pulse")
     return f"{trimmed(pulses.energy)} J in {duration(pulses.duration)}, {train}"
 
 

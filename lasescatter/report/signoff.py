@@ -9,9 +9,11 @@ from lasescatter.report.styles import RULE, heads, paragraph, ruled, words
 from lasescatter.report.typography import markup
 
 CHECKS = (
-    "Beams: wavelength, power or energy, diameter, divergence and polarisation agree with data sheet or measurement.",
+    "Beams: wavelength, power or energy, diameter, divergence and polarization agree with data sheet or measurement.",
     "Every wavelength that leaves each laser is entered, or shown to be negligible.",
     "Geometry: path, mirrors, stops and observers agree with the site; nobody can be nearer to a beam than stated.",
+    "Each stop: finish and reflectance are those of the real surface, which stays matt, dry and in place.",
+    "The reach of each observer: the head cannot get farther than stated from its place.",
     "The load (haze, smoke, dust): how it was measured, when, and whether puffs above it were allowed for.",
     "Particle sizes and refractive index: their origin is known and fits this load.",
     "Limits: value, unit, wavelengths, times and aperture were read in the edition in force, by the person named.",

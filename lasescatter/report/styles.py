@@ -20,6 +20,9 @@ TINT = "#f4f3ef"
 
 MM = 72 / 25.4
 
+TALLEST_ROW = 560.0
+"""With its head, a taller row would not fit on a page of either size. [pt]"""
+
 
 @lru_cache(maxsize=1)
 def paragraph_styles() -> dict[str, ParagraphStyle]:
@@ -57,6 +60,8 @@ def paragraph_styles() -> dict[str, ParagraphStyle]:
         "head number": {"fontName": BOLD, "fontSize": 7, "leading": 8.6, "spaceAfter": 0, "alignment": 2},
         "verdict": {"fontName": BOLD, "fontSize": 11.5, "leading": 15, "spaceAfter": 0},
         "item": {"leftIndent": 11, "bulletIndent": 1, "spaceAfter": 1, "fontSize": 8, "leading": 10.6},
+        "small item": {"leftIndent": 11, "bulletIndent": 1, "spaceAfter": 0.5, "fontSize": 7.4, "leading": 9.4},
+        "caution": {"leftIndent": 18, "bulletIndent": 0, "spaceAfter": 3},
         "equation": {"leftIndent": 14, "fontSize": 9, "leading": 14.5, "spaceAfter": 1},
         "mono": {"fontName": MONO, "fontSize": 6.9, "leading": 8.8, "spaceAfter": 0},
         "aside": {"fontName": OBLIQUE, "fontSize": 7.4, "leading": 9.8},
@@ -95,13 +100,15 @@ def ruled(
     extra: list[tuple[Any, ...]] | None = None,
     head_rows: int = 1,
     dense: bool = False,
+    tied: tuple[int, ...] = (),
 ) -> Table:
     """A table under one head that is repeated on every page. Widths in mm.
 
-    `dense` sets columns of plain numbers close, with a tint under every other five rows.
+    `dense` sets columns of plain numbers close, with a tint under every other five rows. `tied` are rows that
+    stay with the next one: no line and no page break between them. Columns of `numeric` are set flush right.
     """
     from reportlab.lib.colors import HexColor
-    from reportlab.platypus import Table, TableStyle
+    from reportlab.platypus import TableStyle
 
     style: list[tuple[Any, ...]] = [
         ("FONT", (0, 0), (-1, -1), SANS, 7.3, 9.1),
@@ -121,7 +128,11 @@ def ruled(
             ("VALIGN", (0, 0), (-1, head_rows - 1), "BOTTOM"),
         ]
     if not dense:
-        style.append(("LINEBELOW", (0, head_rows), (-1, -2), 0.25, HexColor(RULE)))
+        style += [
+            ("LINEBELOW", (0, row), (-1, row), 0.25, HexColor(RULE))
+            for row in range(head_rows, len(rows) - 1)
+            if row not in tied
+        ]
     else:
         style += [
             ("BACKGROUND", (0, row), (-1, min(row + 4, len(rows) - 1)), HexColor(TINT))
@@ -134,17 +145,37 @@ def ruled(
             ("TOPPADDING", (0, head_rows), (-1, head_rows), 1.5),
         ]
     style += [("ALIGN", (column, head_rows), (column, -1), "RIGHT") for column in numeric]
-    table = Table(
+    # A number flush right before words flush left: 3 mm between them.
+    style += [
+        ("LEFTPADDING", (column + 1, 0), (column + 1, -1), 6.0)
+        for column in numeric
+        if column + 1 < len(widths) and column + 1 not in numeric
+    ]
+    style += [("NOSPLIT", (0, row), (-1, row + 1)) for row in tied]
+    return _whole_row_table()(
         rows,
         colWidths=[width * MM for width in widths],
         repeatRows=head_rows,
-        splitInRow=1,
         hAlign="LEFT",
         style=TableStyle(style + (extra or [])),
         spaceBefore=2,
         spaceAfter=6,
     )
-    return table
+
+
+@lru_cache(maxsize=1)
+def _whole_row_table() -> type[Table]:
+    """A table that breaks inside a row only where the row is taller than a page."""
+    from reportlab.platypus import Table
+
+    class WholeRows(Table):
+        def split(self, availWidth: float, availHeight: float) -> list[Flowable]:
+            self._calc(availWidth, availHeight)
+            self.splitInRow = int(max(self._rowHeights, default=0.0) > TALLEST_ROW)
+            found: list[Flowable] = super().split(availWidth, availHeight)
+            return found
+
+    return WholeRows
 
 
 def verdict_words(verdict: Verdict) -> str:

@@ -6,9 +6,11 @@ from typing import TYPE_CHECKING
 
 from lasescatter.assessment.outcome import Assessment, InTheBeam
 from lasescatter.cautions import foremost
-from lasescatter.limits.verdict import BELOW, margin
-from lasescatter.report.quantities import digits, duration, length, line_label, wavelength
+from lasescatter.limits.verdict import BELOW
+from lasescatter.report.naming import named_line
+from lasescatter.report.quantities import digits, duration, length
 from lasescatter.report.ranking import counted, greatest, worst_first
+from lasescatter.report.standing import beam_headline, beside_headline, grouped, left_out_words, standing
 from lasescatter.report.typography import abridged, plain
 
 if TYPE_CHECKING:
@@ -31,7 +33,9 @@ def print_summary(assessment: Assessment, console: Console) -> None:
     for line in assessment.in_the_beam:
         page.item(_in_the_beam(line, assessment))
     page.gap()
-    page.say(f"Site verdict beside the beam: {assessment.verdict}", style="bold")
+    page.say(plain(beam_headline(assessment)), style="bold")
+    beside = f"{beside_headline(assessment)}: {assessment.verdict}"
+    page.say(f"{beside} {plain(left_out_words(assessment))}".rstrip(), style="bold")
     _observers(assessment, page)
     for hazard, reason in scene.not_judged:
         page.item(abridged(f"{hazard}: not judged, {plain(reason)}", 300))
@@ -44,10 +48,10 @@ def print_summary(assessment: Assessment, console: Console) -> None:
 
 def _in_the_beam(line: InTheBeam, assessment: Assessment) -> str:
     unit = assessment.scene.length_unit
-    name = f"{abridged(plain(line_label(line.beam, line.line)), NAME)}, {wavelength(line.wavelength)}"
+    name = plain(named_line(assessment.scene, line.beam, line.line))
     top = greatest(list(line.spots))
     if line.limit is None or top is None:
-        return f"{name}: no multiple, {plain(line.reason) or 'no limit covers it'}"
+        return f"{name}: no multiple, {plain(line.reason) or 'no limit covers it'}{_unended(assessment, line)}"
     told = [
         f"{digits(top.multiple)} at the worst place ({abridged(plain(top.place), NAME)}) for {duration(line.duration)}"
     ]
@@ -58,9 +62,14 @@ def _in_the_beam(line: InTheBeam, assessment: Assessment) -> str:
         told.append(
             "below the limit everywhere"
             if line.hazard_distance == 0
-            else f"hazard distance {length(line.hazard_distance, unit)}"
+            else f"hazard distance {length(line.hazard_distance, unit)} if nothing stopped it"
         )
-    return f"{name}: {'; '.join(told)}"
+    return f"{name}: {'; '.join(told)}{_unended(assessment, line)}"
+
+
+def _unended(assessment: Assessment, line: InTheBeam) -> str:
+    ends = not any(beam.leaves_site for beam in assessment.scene.beams if beam.name == line.beam)
+    return "" if ends else "; the beam leaves the site: nothing ends it"
 
 
 def _observers(assessment: Assessment, page: _Page) -> None:
@@ -72,12 +81,12 @@ def _observers(assessment: Assessment, page: _Page) -> None:
         page.say(f"The {OBSERVERS} to look at first:")
     for number, outcome in shown:
         page.say(f"{number:>3}  {outcome.verdict}: {abridged(plain(outcome.name), NAME)}", indent=5)
-        told = [margin(outcome.ratio)]
+        told = [standing(outcome)]
         if outcome.governing:
             told.append(plain(outcome.governing))
         page.say("     " + "; ".join(told), indent=5)
         if outcome.verdict != BELOW:
-            for reason in outcome.reasons:
+            for reason in grouped(outcome.reasons):
                 page.say("     - " + abridged(plain(reason), 400), indent=7)
 
 

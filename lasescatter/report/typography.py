@@ -88,8 +88,13 @@ def markup(text: str, limit: int | None = None) -> str:
     """User text for a flowing paragraph: printable, nothing in it read as a tag, runs of spaces kept."""
     shown = printable(text)
     if limit is not None:
-        shown = abridged(shown, limit)
+        shown = shortened(shown, limit)
     return escape(_SPACE_RUN.sub("\u00a0", shown))
+
+
+def shortened(text: str, limit: int) -> str:
+    """Text cut to `limit` characters."""
+    return text if len(text) <= limit else text[: max(1, limit - 1)] + "…"
 
 
 def abridged(text: str, limit: int) -> str:

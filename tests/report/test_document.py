@@ -46,7 +46,9 @@ def test_first_page_says_what_was_found(result: Assessment, pages: list[str]) ->
         result.scene.prepared_by,
         "2026-12-01T10:20:30+00:00",
         result.provenance.digest,
-        f"Site verdict: {result.verdict}",
+        "In the beam: up to 5200 times the limit; no entered limit covers B, 650 nm",
+        f"Beside the beam, worst of 3 observers: {result.verdict}",
+        "(retina thermal only; not judged: skin)",
         "covered by the clothing rule for this bay & <b>checked</b>",
         *not_covered(),
     ):
@@ -54,7 +56,8 @@ def test_first_page_says_what_was_found(result: Assessment, pages: list[str]) ->
     for observer in result.observers:
         assert joined(margin(observer.ratio)) in joined(front)
         assert observer.verdict in front
-    assert front.index("Somebody in the beam itself") < front.index("Site verdict")
+    assert front.index("Somebody in the beam itself") < front.index("Beside the beam, worst of")
+    assert "site verdict" not in front.lower()
 
 
 def test_first_page_has_the_beam_itself(result: Assessment, pages: list[str]) -> None:
@@ -172,6 +175,7 @@ def test_metadata(result: Assessment, reader: PdfReader) -> None:
     info = reader.metadata
     assert info is not None
     assert info["/Title"] == result.scene.title
+    assert info["/Author"] == result.scene.prepared_by
     assert result.scene.reference in info["/Subject"] and result.verdict in info["/Subject"]
     assert info["/CreationDate"] == info["/ModDate"] == "D:20261201102030Z"
 
@@ -390,7 +394,8 @@ def test_a_hundred_observers() -> None:
     took = time.perf_counter() - started
     assert took < 40
     pages = [page.extract_text() for page in reader.pages]
-    for wanted in ("Site verdict", "100 observers: 33 above limit, 33 not established, 34 below limit", "Not covered"):
+    counts = "100 observers: 33 above limit, 33 not established, 34 below limit"
+    for wanted in ("worst of 100 observers", counts, "Not covered"):
         assert wanted in " ".join(pages[0].split())
     assert "Read the cautions" in pages[0]
     assert len(hand_check_blocks(pages)) == sum(len(observer.hand_checks) for observer in made.observers)

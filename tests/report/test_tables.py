@@ -95,7 +95,11 @@ def test_no_line_is_too_long(result: Assessment, width: int) -> None:
 
 def test_it_says_what_matters(result: Assessment) -> None:
     shown = " ".join(summary(result).split())
-    assert f"Site verdict beside the beam: {result.verdict}" in shown
+    assert "In the beam: up to 5200 times the limit" in shown
+    assert f"Beside the beam, worst of 3 observers: {result.verdict} (retina thermal only; not judged: skin)" in shown
+    assert "site verdict" not in shown.lower()
+    # The second beam of the fixture leaves the site, with two lines.
+    assert shown.count("the beam leaves the site: nothing ends it") == 2
     for observer in result.observers:
         assert margin(observer.ratio) in shown
     for caution in foremost():
@@ -104,7 +108,7 @@ def test_it_says_what_matters(result: Assessment) -> None:
     assert "skin: not judged, covered by the clothing rule" in shown
     assert "5200 at the worst place (start) for 10 s" in shown
     assert "no multiple, no limit covers 650 nm for 10 s" in shown
-    assert shown.index("Somebody in the beam itself") < shown.index("Site verdict")
+    assert shown.index("Somebody in the beam itself") < shown.index("Beside the beam, worst of")
 
 
 def test_no_colour_and_no_steering_when_piped(result: Assessment) -> None:
@@ -127,8 +131,9 @@ def test_many_observers_are_counted_and_the_worst_listed() -> None:
     shown = summary(made)
     lines = shown.splitlines()
     counts = {verdict: sum(o.verdict == verdict for o in made.observers) for verdict in ("above limit", "below limit")}
+    told = next(line for line in lines if line.startswith("40 observers:"))
     for verdict, count in counts.items():
-        assert f"{count} {verdict}" in lines[next(i for i, line in enumerate(lines) if "40 observers:" in line)]
+        assert f"{count} {verdict}" in told
     first = next(i for i, line in enumerate(lines) if "look at first" in line)
     assert "above limit: place" in lines[first + 1]
     assert shown.count("place ") >= 20

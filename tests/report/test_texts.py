@@ -146,7 +146,7 @@ def test_light_in_words() -> None:
     train = Line("l", 532e-9, 0.2, Pulses(1e-2, 8e-9, 20.0, None), 3e-3, 1e-3, "linear", None, 100.0, "k")
     assert quantities.light(train) == "0.01 J in 8 ns, at 20 Hz"
     shot = Line("l", 532e-9, 0.0, Pulses(1e-2, 8e-9, None, 1), 3e-3, 1e-3, "linear", None, 100.0, "k")
-    assert quantities.light(shot) == "0.01 J in 8 ns, 1 pulse(s)"
+    assert quantities.light(shot) == "0.01 J in 8 ns, 1 pulse"
 
 
 # ---------------------------------------------------------------- cautions
