@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 import lasescatter
 from lasescatter.assessment.components import DRY_AIR, SIZE_AVERAGE, SiteOptics
+from lasescatter.assessment.detector import received
 from lasescatter.assessment.field import LineField, distance_to, line_field
 from lasescatter.assessment.handcheck import hand_checks, stop_checks
 from lasescatter.assessment.in_the_beam import in_the_beam, nearest_element
@@ -31,6 +32,7 @@ from lasescatter.exposure import line as bright
 from lasescatter.exposure import scattered as first_order
 from lasescatter.exposure import surfaces
 from lasescatter.exposure.direct import clearance
+from lasescatter.exposure.fraction import WORST_FRACTION
 from lasescatter.exposure.thickness import NOTHING_BELOW_ABOVE
 from lasescatter.limits.compare import Received
 from lasescatter.limits.hazards import full_field, hazard_of
@@ -80,6 +82,7 @@ def assess(
     """
     _check_size(scene)
     points = np.array([observer.position for observer in scene.observers], dtype=float)
+    reaches = np.array([observer.reach for observer in scene.observers], dtype=float)
     optics = SiteOptics(scene)
     fields: dict[str, LineField] = {}
     summaries: dict[float, tuple[ComponentSummary, ...]] = {}
@@ -89,7 +92,7 @@ def assess(
             mixture = optics.mixture(line.wavelength)
             summaries.setdefault(line.wavelength, optics.summaries(line.wavelength, mixture))
             progress(f'light of "{line.name}"')
-            fields[line.key] = line_field(beam, line, mixture, points)
+            fields[line.key] = line_field(beam, line, mixture, points, reaches)
     progress("judgement")
     powers = {key: _powers(scene.observers, field.line) for key, field in fields.items()}
     checks = {key: hand_checks(field, powers[key]) for key, field in fields.items()}
@@ -175,7 +178,7 @@ def _judged(
     gaps: tuple[str, ...],
 ) -> Judgement:
     def received_by(line: Line, limit: Limit) -> Received | str:
-        return fields[line.key].received(index, limit, observer.reach, walls)
+        return received(fields[line.key], index, limit, walls)
 
     gates = tuple(sentence for _, sentence in reached) + _gates(fields, index) + gaps
     return judge(observer, scene.beams, scene.limits, received_by, scene.not_judged, gates)
@@ -218,10 +221,8 @@ def _gates(fields: dict[str, LineField], index: int) -> tuple[str, ...]:
             )
         if field.beam.leaves_site and field.legs[-1].direction[2] < 0:
             gates.append(f'"{field.beam.name}" leaves the site downwards: light from the ground there is not computed')
-        if field.spot is not None and field.stop_compared[index] > 0:
-            r = float(np.linalg.norm(field.points[index] - field.spot))
-            if r < surfaces.LEAST_SPOT_DISTANCES * field.spot_radius:
-                gates.append(f'the spot on the stop of "{field.beam.name}" is nearer than ten of its radii ({r:.3g} m)')
+        if field.sees_stop(index) and field.stop_gap(index) < surfaces.LEAST_SPOT_DISTANCES * field.spot_radius:
+            gates.append(f'the spot on the stop of "{field.beam.name}" is within reach nearer than ten of its radii')
     return tuple(dict.fromkeys(gates))
 
 
@@ -255,11 +256,16 @@ def _line_exposure(field: LineField, index: int, power: float) -> LineExposure:
         pulse_scattered=None if energy is None else energy * scattered,
         pulse_compared=None if energy is None else energy * (compared + diffuse_compared),
         pulse_direct=None if energy is None else energy * direct,
+        pulse_diffuse=None if energy is None else energy * diffuse,
     )
 
 
 def _assumptions(scene: Scene, wavelengths: set[float]) -> tuple[Assumption, ...]:
-    found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, DRY_AIR]
+    found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, direct_light.NAKED_EYE, DRY_AIR]
+    if any(load.steady_by is None for load in scene.loads):
+        found.append(WORST_FRACTION)
+    if any(load.steady_by is not None for load in scene.loads):
+        found.append(loads.STEADY)
     if any(observer.reach < USUAL_REACH for observer in scene.observers):
         found.append(first_order.SHORT_REACH)
     if scene.loads:

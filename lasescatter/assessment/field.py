@@ -1,4 +1,4 @@
-"""The light of one line of one beam at every observer, and what each kind of limit takes in of it."""
+"""The light of one line of one beam at every observer."""
 
 from __future__ import annotations
 
@@ -12,24 +12,19 @@ from numpy.typing import NDArray
 from lasescatter.exposure.direct import aperture_mean, beam_radius, irradiance
 from lasescatter.exposure.fraction import Greatest, greatest_over_fraction
 from lasescatter.exposure.legs import Leg, Swing, legs_of, swings_of
-from lasescatter.exposure.line import TABULATION_ERROR, BrightLine, Window, bright_line, brightest_window, peak_radiance
-from lasescatter.exposure.scattered import LegLight, scattered
+from lasescatter.exposure.line import BrightLine, Window, bright_line, brightest_window, peak_radiance
+from lasescatter.exposure.scattered import LEAST_GAP, LegLight, PanelEdges, scattered
 from lasescatter.exposure.sightline import Sightlines
-from lasescatter.exposure.surfaces import stop_light, tight_room_area, wall_return
-from lasescatter.exposure.thickness import allowance, optical_thickness
-from lasescatter.limits.compare import Received
-from lasescatter.limits.hazards import full_field, hazard_of
+from lasescatter.exposure.surfaces import stop_light
+from lasescatter.exposure.thickness import optical_thickness
 from lasescatter.medium.mixture import Mixture
-from lasescatter.scene import Beam, Limit, Line
+from lasescatter.scene import Beam, Line
 
 Floats = NDArray[np.float64]
 T = TypeVar("T")
 
 # Direct light that gives less than this per watt is none: a gaussian's tail [m⁻²].
 NO_DIRECT_LIGHT = 1e-30
-
-# Nearer than this a reach counts as touching: the bound is then far above any limit, and finite. [m]
-LEAST_GAP = 1e-3
 
 # Legs times observers integrated together: bounds the memory of the nodes to some tens of megabytes.
 MOST_LEGS_TIMES_OBSERVERS = 1024
@@ -45,6 +40,7 @@ class LineField:
     swings: tuple[Swing, ...]
     mixture: Mixture
     points: Floats
+    reaches: Floats
     lights: tuple[LegLight, ...]
     greatest: Greatest
     thickness: Floats
@@ -56,8 +52,6 @@ class LineField:
     """Optical thickness from the beam's start to the stop to the observer, load as stated."""
     direct: Floats
     """At the observer's point, not averaged. [m⁻²]"""
-    nearest: Floats
-    """Distance to the nearest point of the beam's axis. [m]"""
     spot: Floats | None
     """Where the beam meets its stop, (3,)."""
     spot_radius: float
@@ -104,109 +98,57 @@ class LineField:
         return np.where(total > NO_DIRECT_LIGHT, total, 0.0)
 
     def bright(self, index: int) -> BrightLine:
-        """Tabulated brightness of one leg at the worst load fraction."""
-        return self._once(
-            "bright", index, lambda: bright_line(self.lights[index], self.mixture, self.points, self.greatest.fraction)
-        )
+        """One leg's brightness along the scattering angle."""
+        return self._once("bright", index, lambda: bright_line(self.lights[index], self.mixture, self.points))
 
     def window(self, index: int, acceptance: float) -> Window:
         """Brightest window of one leg."""
-        return self._once(f"window {index}", acceptance, lambda: brightest_window(self.bright(index), acceptance))
+        worst = self.greatest.fraction
+        return self._once(
+            f"window {index}", acceptance, lambda: brightest_window(self.bright(index), acceptance, worst)
+        )
 
-    def peak(self, index: int) -> tuple[Floats, NDArray[np.bool_]]:
-        """Peak radiance of one leg, and where it is void."""
-        return self._once("peak", index, lambda: peak_radiance(self.bright(index), self.line, self.beam.profile))
+    def peak(self, index: int) -> tuple[Floats, Floats, NDArray[np.bool_]]:
+        """Peak radiance of one leg, its bound within reach, and where it is void."""
+        return self._once(
+            "peak",
+            index,
+            lambda: peak_radiance(
+                self.bright(index), self.line, self.beam.profile, self.greatest.fraction, self.reaches, self.mixture
+            ),
+        )
 
-    def received(self, observer: int, limit: Limit, reach: float, wall_points: Floats) -> Received | str:
-        """What one limit takes in at one observer, per watt; a sentence where that cannot be told.
+    @property
+    def within_reach(self) -> Floats:
+        """Scattered irradiance that no place within reach exceeds, at any load fraction. [m⁻²]"""
+        return np.sum([light.within_reach for light in self.lights], axis=0)
 
-        Parameters
-        ----------
-        reach : float
-            How far the head moves: the upper bound holds within it. [m]
-        wall_points : ndarray (n, 3)
-            Beam and observers, about which the tight room of the upper bound is drawn.
-        """
-        direct = float(self.direct_mean(limit.aperture)[observer])
-        radiance = limit.quantity in ("radiance", "radiance dose")
-        error = float(self.greatest.error[observer])
-        stop = float(self.stop_compared[observer])
-        window: tuple[tuple[str, float], ...] | None = None
-        if limit.acceptance is not None:
-            light, window = self._windows(observer, limit.acceptance)
-            error += TABULATION_ERROR * light
-            field = np.pi / 4 * limit.acceptance**2
-            if radiance:
-                light, error, direct = light / field, error / field, direct / field
-                stop = min(stop / field, self._stop_radiance(observer))
-        elif radiance:
-            if direct > 0:
-                return "direct light has no radiance without an acceptance field"
-            peaks = [self.peak(i) for i in range(len(self.legs))]
-            if any(void[observer] for _, void in peaks):
-                return f'a leg of "{self.beam.name}" is seen so nearly end-on that its radiance is not defined by E4'
-            light = float(sum(peak[observer] for peak, _ in peaks))
-            error = TABULATION_ERROR * light
-            stop = self._stop_radiance(observer)
-        else:
-            light = float(self.greatest.irradiance[observer])
-        error += self.mixture.error * max(light, self._plain(observer, light))
-        orders = light * (float(allowance(self.thickness[observer])) - 1)
-        by_origin = [("scattered", light)]
-        if orders:
-            by_origin.append(("allowance for higher orders", orders))
-        by_origin += [("stop", stop), ("direct", direct)]
-        allowed = [("numerical error", error * float(allowance(self.thickness[observer])))]
-        allowed += self._within_reach(observer, reach, light + orders, stop, radiance)
-        if full_field(hazard_of(limit)) and not radiance:
-            allowed.append(self._once("walls", 0.0, lambda: self._walls(wall_points)))
-        low = max(0.0, light - error) + stop + direct
-        return Received(tuple(by_origin), low, tuple(part for part in allowed if part[1] > 0), window)
+    def sees_stop(self, observer: int) -> bool:
+        """Whether the lit face of the stop can be seen from some place within the observer's reach."""
+        if self.beam.stop is None or self.spot is None:
+            return False
+        towards = self.points[observer] - self.spot
+        return float(towards @ np.asarray(self.beam.stop.facing)) + float(self.reaches[observer]) > 0
 
-    def _within_reach(
-        self, observer: int, reach: float, scattered: float, stop: float, radiance: bool
-    ) -> list[tuple[str, float]]:
-        """How much more scattered and stop light the head can get where it reaches, per watt.
+    def stop_gap(self, observer: int) -> float:
+        """Least distance from the lit spot within the observer's reach, and at least LEAST_GAP. [m]"""
+        if self.spot is None:
+            return np.inf
+        r = float(np.linalg.norm(self.points[observer] - self.spot))
+        return max(r - float(self.reaches[observer]), LEAST_GAP)
 
-        No element of the beam comes nearer than by the reach, so its inverse square grows by (d/(d − reach))² at
-        most, d the nearest distance. The stop is taken as seen square from r − reach. Radiance grows with neither.
-        """
-        if radiance or reach == 0:
-            return []
-        nearest = float(self.nearest[observer])
-        gap = max(nearest - reach, LEAST_GAP)
-        grown = [("reach, scattered", scattered * ((nearest / gap) ** 2 - 1))] if nearest > gap else []
-        if self.beam.stop is not None and self.spot is not None:
-            towards = self.points[observer] - self.spot
-            if float(towards @ np.asarray(self.beam.stop.facing)) + reach > 0:
-                gap = max(float(np.linalg.norm(towards)) - reach, LEAST_GAP)
-                square = self.legs[-1].reflected * self.beam.stop.reflectance / (np.pi * gap**2)
-                grown.append(("reach, stop", square - stop))
-        return grown
-
-    def _plain(self, observer: int, light: float) -> float:
-        """Light as it would be without polarization: the measure of relative errors near a null."""
-        polarised = float(self.scattered[observer])
-        return light * float(self.unpolarised[observer]) / polarised if polarised > 0 else light
-
-    def _windows(self, observer: int, acceptance: float) -> tuple[float, tuple[tuple[str, float], ...]]:
-        total, shown = 0.0, []
-        for i, leg in enumerate(self.legs):
-            found = self.window(i, acceptance)
-            total += float(found.irradiance[observer])
-            shown += [(f"leg {leg.number} from", float(found.low[observer])), ("to", float(found.high[observer]))]
-        return total, tuple(shown)
-
-    def _stop_radiance(self, observer: int) -> float:
-        """Peak radiance of the lit spot where the observer sees its face, per watt. [m⁻² sr⁻¹]"""
-        if self.beam.stop is None or self.stop_compared[observer] <= 0:
+    @property
+    def stop_radiance(self) -> float:
+        """Peak radiance of the lit spot, per watt. [m⁻² sr⁻¹]"""
+        if self.beam.stop is None:
             return 0.0
-        peak = float(irradiance(self.beam.profile, self.spot_radius, 0.0)) * self.legs[-1].reflected
+        peak = float(irradiance(self.beam.profile, self.spot_radius, 0.0)) * self.legs[-1].reflected * self.hot_spot
         slope = abs(float(self.legs[-1].direction @ np.asarray(self.beam.stop.facing)))
         return self.beam.stop.reflectance * peak * slope / np.pi
 
-    def _walls(self, wall_points: Floats) -> tuple[str, float]:
-        """Upper bound of what walls return, per watt: all that is scattered and all that the stop sends back."""
+    @property
+    def set_free(self) -> float:
+        """Share of the beam's power that can come back from walls: what is scattered and what the stop returns."""
         tau = sum(
             float(self.mixture.thicknesses(leg.origin, leg.origin + leg.length * leg.direction).sum())
             if np.isfinite(leg.length)
@@ -214,21 +156,29 @@ class LineField:
             for leg in self.legs
         )
         stop = 0.0 if self.beam.stop is None else self.beam.stop.reflectance
-        freed = min(1.0, -float(np.expm1(-tau)) + stop)
-        area = tight_room_area(wall_points)
-        return f"walls of a room of {area:.0f} m²", wall_return(area, freed)
+        return min(1.0, -float(np.expm1(-tau)) + stop)
 
 
-def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> LineField:
-    """Compute everything that one line sends to all observers."""
+def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches: Floats) -> LineField:
+    """Compute everything that one line sends to all observers.
+
+    Parameters
+    ----------
+    points : ndarray (observers, 3)
+        [m]
+    reaches : ndarray (observers,)
+        How far each head moves. [m]
+    """
     legs = legs_of(beam)
     swings = swings_of(beam, line, legs)
     together = max(1, MOST_LEGS_TIMES_OBSERVERS // len(legs))
     parts = [
-        _scattered_part(line, legs, swings, mixture, points[start : start + together])
+        _scattered_part(
+            line, legs, swings, mixture, points[start : start + together], reaches[start : start + together]
+        )
         for start in range(0, len(points), together)
     ]
-    lights = tuple(_joined([part[0][i] for part in parts]) for i in range(len(legs)))
+    lights = tuple(_joined([part[0][i] for part in parts], together) for i in range(len(legs)))
     spot, spot_radius, stop_tau, compared = _stop(beam, line, legs, mixture, points, lights[-1].tau_before)
     hot = 1.0 if line.pulses is None else line.pulses.hot_spot
     direct = np.zeros(len(points))
@@ -243,6 +193,7 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> Line
         swings=swings,
         mixture=mixture,
         points=points,
+        reaches=reaches,
         lights=lights,
         greatest=Greatest(
             irradiance=np.concatenate([part[1].irradiance for part in parts]),
@@ -254,7 +205,6 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> Line
         stop_compared=compared,
         stop_tau=stop_tau,
         direct=np.where(direct > NO_DIRECT_LIGHT, direct, 0.0),
-        nearest=np.min([distance_to(leg, points) for leg in legs], axis=0),
         spot=spot,
         spot_radius=spot_radius,
         known={},
@@ -262,11 +212,11 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats) -> Line
 
 
 def _scattered_part(
-    line: Line, legs: tuple[Leg, ...], swings: tuple[Swing, ...], mixture: Mixture, points: Floats
+    line: Line, legs: tuple[Leg, ...], swings: tuple[Swing, ...], mixture: Mixture, points: Floats, reaches: Floats
 ) -> tuple[list[LegLight], Greatest, Floats]:
     """Scattered light of some observers; the nodes are let go with it."""
     least = [beam_radius(line, leg.path_before + np.clip(_foot(leg, points)[0], 0, None)) for leg in legs]
-    integrated = scattered(legs, swings, mixture, points, np.stack(least))
+    integrated = scattered(legs, swings, mixture, points, np.stack(least), reaches)
     return (
         [leg.light for leg in integrated],
         greatest_over_fraction(integrated, mixture, len(points)),
@@ -274,8 +224,8 @@ def _scattered_part(
     )
 
 
-def _joined(parts: list[LegLight]) -> LegLight:
-    """One leg's light of several groups of observers."""
+def _joined(parts: list[LegLight], together: int) -> LegLight:
+    """One leg's light of several groups of observers, `together` in each but the last."""
     sights = [part.sight for part in parts]
     return LegLight(
         leg=parts[0].leg,
@@ -291,6 +241,12 @@ def _joined(parts: list[LegLight]) -> LegLight:
         by_component=np.concatenate([part.by_component for part in parts], axis=1),
         unpolarised=np.concatenate([part.unpolarised for part in parts]),
         error=np.concatenate([part.error for part in parts]),
+        within_reach=np.concatenate([part.within_reach for part in parts]),
+        edges=PanelEdges(
+            owner=np.concatenate([part.edges.owner + i * together for i, part in enumerate(parts)]),
+            low=np.concatenate([part.edges.low for part in parts]),
+            high=np.concatenate([part.edges.high for part in parts]),
+        ),
     )
 
 

@@ -127,7 +127,7 @@ def _rows(
 
 
 def _remark(hand: float, program: float, bare: float, tau: float) -> str:
-    if program <= 0 or abs(hand / program - 1) <= AGREES_WITHIN:
+    if program <= 0 or bare <= 0 or abs(hand / program - 1) <= AGREES_WITHIN:
         return ""
     return (
         f"extinction changes along the leg: its mean transmittance is {program / bare:.4g}, "

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -26,10 +27,29 @@ def in_the_beam(scene: Scene) -> tuple[InTheBeam, ...]:
     return tuple(_one(scene, beam, line) for beam in scene.beams for line in beam.lines)
 
 
+@dataclass(frozen=True)
+class _Case:
+    """One limit and time for one line, as multiples per irradiance of a one-watt beam [m²]."""
+
+    limit: Limit
+    comparison: Comparison
+    start: float
+    """Mean over the aperture at the start of the beam, per watt. [m⁻²]"""
+
+    @property
+    def multiple(self) -> float:
+        return self.comparison.ratio / self.start
+
+    @property
+    def exposure(self) -> float:
+        return self.comparison.exposure / self.start
+
+
 def _one(scene: Scene, beam: Beam, line: Line) -> InTheBeam:
     hot = 1.0 if line.pulses is None else line.pulses.hot_spot
-    found = _strictest(scene, beam, line, hot)
-    if found is None:
+    cases = _cases(scene, beam, line, hot)
+    spots = tuple(_spot(beam, line, hot, place, cases) for place in _places(scene, beam))
+    if not cases:
         return InTheBeam(
             beam=beam.name,
             line=line.name,
@@ -39,35 +59,40 @@ def _one(scene: Scene, beam: Beam, line: Line) -> InTheBeam:
             duration=None,
             limit_value=None,
             hazard_distance=None,
+            hazard_limit=None,
             reason="no entered limit (irradiance or radiant exposure) covers this wavelength and time",
-            spots=tuple(_spot(scene, beam, line, hot, *place, None, None) for place in _places(scene, beam)),
+            spots=spots,
         )
-    comparison, limit = found
-    start = float(aperture_mean(beam.profile, beam_radius(line, 0.0), 0.0, limit.aperture)) * hot
-    # Exposure and multiple are both in proportion to the irradiance per watt.
-    whole = comparison.ratio / start * hot / (math.pi / 4 * limit.aperture**2)
+    first = cases[0].comparison
+    reach = {case.limit.name: _hazard_distance(beam, line, hot, case) for case in _for_the_eye(cases)}
+    farthest = max(reach, key=lambda name: reach[name])
     return InTheBeam(
         beam=beam.name,
         line=line.name,
         wavelength=line.wavelength,
-        limit=limit.name,
-        unit=comparison.unit,
-        duration=comparison.time,
-        limit_value=comparison.limit_value,
-        hazard_distance=hazard_distance(line, beam.profile, whole, limit.aperture),
+        limit=first.limit,
+        unit=first.unit,
+        duration=first.time,
+        limit_value=first.limit_value,
+        hazard_distance=reach[farthest],
+        hazard_limit=farthest,
         reason="",
-        spots=tuple(
-            _spot(
-                scene, beam, line, hot, *place, limit.aperture, (comparison.exposure / start, comparison.ratio / start)
-            )
-            for place in _places(scene, beam)
-        ),
+        spots=spots,
     )
 
 
-def _strictest(scene: Scene, beam: Beam, line: Line, hot: float) -> tuple[Comparison, Limit] | None:
-    """The limit and observer's time with the largest multiple at the start of the beam."""
-    best: tuple[Comparison, Limit] | None = None
+def _for_the_eye(cases: list[_Case]) -> list[_Case]:
+    return [case for case in cases if case.limit.tissue != "skin"] or cases
+
+
+def _hazard_distance(beam: Beam, line: Line, hot: float, case: _Case) -> float:
+    whole = case.multiple * hot / (math.pi / 4 * case.limit.aperture**2)
+    return hazard_distance(line, beam.profile, whole, case.limit.aperture)
+
+
+def _cases(scene: Scene, beam: Beam, line: Line, hot: float) -> list[_Case]:
+    """Every limit with the observers' time that gives it the largest multiple; the largest at the start first."""
+    best: dict[str, _Case] = {}
     for limit in scene.limits:
         if limit.quantity not in ("irradiance", "radiant exposure"):
             continue
@@ -76,9 +101,11 @@ def _strictest(scene: Scene, beam: Beam, line: Line, hot: float) -> tuple[Compar
         for duration, daily in _times(scene.observers):
             time = dose_time(hazard_of(limit), line, duration, daily)
             result = compare(limit, beam.name, line, received, duration, time)
-            if isinstance(result, Comparison) and (best is None or result.ratio > best[0].ratio):
-                best = result, limit
-    return best
+            if isinstance(result, Comparison) and (
+                limit.name not in best or result.ratio > best[limit.name].comparison.ratio
+            ):
+                best[limit.name] = _Case(limit, result, mean)
+    return sorted(best.values(), key=lambda case: -case.comparison.ratio)
 
 
 def _times(observers: tuple[Observer, ...]) -> set[tuple[float, float | None]]:
@@ -110,24 +137,18 @@ def nearest_element(legs: tuple[Leg, ...], point: Floats) -> tuple[Leg, float]:
     return best[1], best[2]
 
 
-def _spot(
-    scene: Scene,
-    beam: Beam,
-    line: Line,
-    hot: float,
-    place: str,
-    leg: Leg,
-    along: float,
-    aperture: float | None,
-    per_irradiance: tuple[float, float] | None,
-) -> BeamSpot:
+def _spot(beam: Beam, line: Line, hot: float, where: tuple[str, Leg, float], cases: list[_Case]) -> BeamSpot:
+    place, leg, along = where
     position = leg.origin + along * leg.direction
     radius = float(beam_radius(line, leg.path_before + along))
-    direct = multiple = card_distance = card_multiple = None
-    if aperture is not None and per_irradiance is not None:
-        mean = float(aperture_mean(beam.profile, radius, 0.0, aperture)) * hot * leg.reflected
-        direct, multiple = mean * per_irradiance[0], mean * per_irradiance[1]
-        card_multiple = leg.reflected * white_card(CARD_DISTANCE) * per_irradiance[1]
+    direct = multiple = limit = card_distance = card_multiple = None
+    if cases:
+        means = [
+            float(aperture_mean(beam.profile, radius, 0.0, case.limit.aperture)) * hot * leg.reflected for case in cases
+        ]
+        direct = means[0] * cases[0].exposure
+        multiple, limit = max((mean * case.multiple, case.limit.name) for mean, case in zip(means, cases, strict=True))
+        card_multiple = leg.reflected * white_card(CARD_DISTANCE) * max(case.multiple for case in cases)
         card_distance = CARD_DISTANCE * math.sqrt(card_multiple)
     return BeamSpot(
         place=place,
@@ -136,6 +157,7 @@ def _spot(
         diameter=2 * radius,
         direct=direct,
         multiple=multiple,
+        limit=limit,
         diffuse_distance=card_distance,
         diffuse_multiple=card_multiple,
     )

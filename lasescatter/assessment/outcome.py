@@ -155,6 +155,8 @@ class LineExposure:
     """Scattered and stop light per pulse as compared. [J m⁻²]"""
     pulse_direct: float | None
     """[J m⁻²]"""
+    pulse_diffuse: float | None = None
+    """From the stop, per pulse, at the stated load. [J m⁻²]"""
 
 
 @dataclass(frozen=True)
@@ -201,13 +203,15 @@ class BeamSpot:
     diameter: float
     """Beam diameter there, by the profile's criterion (1/e² or edge). [m]"""
     direct: float | None
-    """Exposure in the unit of the limit, averaged over the limit's aperture; None without a limit."""
+    """Exposure to the limit of `InTheBeam.limit`, averaged over its aperture, in its unit; None without a limit."""
     multiple: float | None
-    """Of the limit."""
+    """Largest multiple of any limit there."""
     diffuse_distance: float | None
-    """Distance from a white card (reflectance 1, seen square) held there at which its light falls to the limit. [m]"""
+    """From a white card (reflectance 1, seen square) held there, where its light falls to the last limit. [m]"""
     diffuse_multiple: float | None
-    """Of the limit at 0.1 m from that card."""
+    """Largest multiple of any limit at 0.1 m from that card."""
+    limit: str | None = None
+    """Name of the limit behind `multiple`."""
 
 
 @dataclass(frozen=True)
@@ -224,11 +228,13 @@ class InTheBeam:
     """Exposure (or pulse) duration judged. [s]"""
     limit_value: float | None
     hazard_distance: float | None
-    """Along the axis from the start of the path, no extinction credited: nominal ocular hazard distance
-    for an eye limit. 0: below the limit everywhere. [m]"""
+    """Along the axis from the start of the path, no extinction credited, the longest over the eye limits (over all
+    where there is none for the eye): nominal ocular hazard distance. 0: below the limit everywhere. [m]"""
     reason: str
     """Why something above is None, else ""."""
     spots: tuple[BeamSpot, ...]
+    hazard_limit: str | None = None
+    """Name of the limit behind `hazard_distance`."""
 
 
 @dataclass(frozen=True)

@@ -18,7 +18,7 @@ from lasescatter.assessment.outcome import (
     StopCheck,
 )
 from lasescatter.limits.compare import Comparison, HazardJudgement
-from lasescatter.scene import QUANTITY_UNITS
+from lasescatter.scene import QUANTITY_UNITS, Scene
 
 FORMAT = "lasescatter record 1"
 
@@ -33,7 +33,7 @@ def record(assessment: Assessment) -> dict[str, Any]:
         "site": assessment.scene.source,
         "rules": {},
         "verdict": assessment.verdict,
-        "particles": [_component(component) for component in assessment.components],
+        "particles": [_component(component, assessment.scene) for component in assessment.components],
         "in_the_beam": [_in_the_beam(entry) for entry in assessment.in_the_beam],
         "observers": [_observer(observer) for observer in assessment.observers],
         "maps": [],
@@ -56,9 +56,11 @@ def record_text(body: dict[str, Any]) -> str:
     return json.dumps(body, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
 
 
-def _component(component: ComponentSummary) -> dict[str, Any]:
-    return {
+def _component(component: ComponentSummary, scene: Scene) -> dict[str, Any]:
+    air = component.size_nodes is None
+    body: dict[str, Any] = {
         "name": component.name,
+        "beam": [line.name for beam in scene.beams for line in beam.lines if line.wavelength == component.wavelength],
         "wavelength_m": component.wavelength,
         "extinction_per_m": component.extinction,
         "scattering_per_m": component.scattering,
@@ -74,6 +76,11 @@ def _component(component: ComponentSummary) -> dict[str, Any]:
         "error_f11": component.error_f11,
         "error_extinction": component.error_extinction,
     }
+    if air:
+        body["reason"] = "molecules: closed form, no sizes; number and mass are not used"
+    elif component.mass is None:
+        body["reason"] = "no density is stated, so there is no mass"
+    return body
 
 
 def _in_the_beam(entry: InTheBeam) -> dict[str, Any]:
@@ -86,6 +93,7 @@ def _in_the_beam(entry: InTheBeam) -> dict[str, Any]:
         "unit": entry.unit,
         "time_s": entry.duration,
         "limit_value": entry.limit_value,
+        "hazard_limit": entry.hazard_limit,
         "hazard_distance_m": None if endless else entry.hazard_distance,
         "reason": "the beam never widens: no distance is enough" if endless else entry.reason,
         "spots": [
@@ -96,6 +104,7 @@ def _in_the_beam(entry: InTheBeam) -> dict[str, Any]:
                 "diameter_m": spot.diameter,
                 "direct": spot.direct,
                 "multiple": spot.multiple,
+                "limit": spot.limit,
                 "white_card_distance_m": spot.diffuse_distance,
                 "white_card_multiple": spot.diffuse_multiple,
             }
@@ -132,8 +141,8 @@ def _observer(observer: ObserverOutcome) -> dict[str, Any]:
         "beam_visibility_reason": "not computed",
     }
     if any(line.pulse_scattered is not None for line in observer.lines):
-        for name in ("pulse_scattered", "pulse_compared", "pulse_direct"):
-            body[f"{name}_j_m2"] = sum(getattr(line, name) or 0.0 for line in observer.lines)
+        for name in ("scattered", "compared", "diffuse", "direct"):
+            body[f"{name}_j_m2"] = sum(getattr(line, f"pulse_{name}") or 0.0 for line in observer.lines)
     return body
 
 
@@ -153,9 +162,10 @@ def _line(line: LineExposure) -> dict[str, Any]:
     }
     if line.pulse_scattered is not None:
         body |= {
-            "pulse_scattered_j_m2": line.pulse_scattered,
-            "pulse_compared_j_m2": line.pulse_compared,
-            "pulse_direct_j_m2": line.pulse_direct,
+            "scattered_j_m2": line.pulse_scattered,
+            "compared_j_m2": line.pulse_compared,
+            "diffuse_j_m2": line.pulse_diffuse,
+            "direct_j_m2": line.pulse_direct,
         }
     return body
 
@@ -232,7 +242,7 @@ def _comparison(comparison: Comparison) -> dict[str, Any]:
         "verdict": comparison.verdict,
         "by_origin": dict(comparison.by_origin),
         "allowances": dict(comparison.allowances),
-        "window": None if comparison.window is None else [[name, angle] for name, angle in comparison.window],
+        "window": dict(comparison.window or ()),
         "pulses": comparison.pulses,
         "note": comparison.note,
     }
@@ -244,6 +254,7 @@ def _hazard(hazard: HazardJudgement) -> dict[str, Any]:
         "ratio": hazard.ratio,
         "ratio_low": hazard.ratio_low,
         "ratio_high": hazard.ratio_high,
+        "optical_density": hazard.optical_density,
         "verdict": "not judged" if hazard.not_judged else hazard.verdict,
         "reasons": [hazard.not_judged] if hazard.not_judged else list(hazard.reasons),
         "parts": [{"line": line, "limit": limit, "ratio": ratio} for line, limit, ratio in hazard.parts],

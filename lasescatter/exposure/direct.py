@@ -18,9 +18,9 @@ Floats = NDArray[np.float64]
 
 WAIST_AT_START = Assumption(
     name="Each beam is narrowest at the start of its path and widens as a hyperbola",
-    direction="high",
-    size="the straight-line law d + divergence × distance gives down to half the irradiance where both are alike; "
-    "a beam that narrows to a focus along its path is not described",
+    direction="either",
+    size="high on the axis, low beside it: the straight-line law d + divergence × distance spreads the light wider, to "
+    "half the irradiance on the axis where both terms are alike; a focus along the path is not described",
     source="common practice, no source",
 )
 SMOOTH_BEAM = Assumption(
@@ -28,6 +28,12 @@ SMOOTH_BEAM = Assumption(
     direction="low",
     size="turbulence over long paths and multimode beams can exceed the ideal peak several times",
     source="reference to scintillation outdoors: SPIE Proc. 2974, 139–147, 1997 (abstract)",
+)
+NAKED_EYE = Assumption(
+    name="Everybody looks with the naked eye",
+    direction="low",
+    size="binoculars and telescopes gather up to the square of objective over pupil more, 51 times for 7 × 50 glasses",
+    source="geometry: (50 mm/7 mm)²",
 )
 NO_EXTINCTION = Assumption(
     name="Direct and stop light are compared with limits without credit for the load's extinction",

@@ -11,11 +11,19 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from lasescatter.assumptions import Assumption
 from lasescatter.exposure.quadrature import sums_by_owner
 from lasescatter.exposure.scattered import FRACTIONS, IntegratedLeg
 from lasescatter.medium.mixture import Mixture
 
 Floats = NDArray[np.float64]
+
+WORST_FRACTION = Assumption(
+    name="Scattered light is the greatest over load fractions up to the stated load",
+    direction="high",
+    size="by the shielding of the stated load: nothing where it is thin, several times where it is thick",
+    source="a load thins and clears",
+)
 
 _GOLDEN = (np.sqrt(5) - 1) / 2
 _REFINEMENTS = 24

@@ -58,6 +58,9 @@ WORST_AXIS = Assumption(
 # Within this angle of the s or p direction the axis after a real mirror counts as known.
 KNOWN_AXIS_WITHIN = math.radians(1.0)
 
+# An inner point that turns the beam by less than this is no mirror. [rad]
+STRAIGHT_ON = 1e-9
+
 
 @dataclass(frozen=True)
 class Swing:
@@ -149,7 +152,10 @@ def _after_mirror(beam: Beam, line: Line, swing: Swing, before: Leg, after: Leg)
     if swing.axis is None:  # circular
         return UNPOLARIZED if beam.mirrors == "ideal" else WORST
     normal = after.direction - before.direction
-    normal = normal / np.linalg.norm(normal)
+    turn = float(np.linalg.norm(normal))
+    if turn < STRAIGHT_ON:
+        return swing  # a point on a straight path, no mirror
+    normal = normal / turn
     axis = np.asarray(swing.axis)
     if beam.mirrors == "real" and not _along_s_or_p(axis, before.direction, normal):
         return WORST

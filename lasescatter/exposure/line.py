@@ -13,7 +13,8 @@ from numpy.typing import NDArray
 
 from lasescatter.assumptions import Assumption
 from lasescatter.exposure.direct import one_over_e_diameter
-from lasescatter.exposure.scattered import LegLight, breaks_of, elements
+from lasescatter.exposure.quadrature import NODES, Integers
+from lasescatter.exposure.scattered import LegLight, elements
 from lasescatter.medium.mixture import Mixture
 from lasescatter.scene import Line, Profile
 
@@ -26,14 +27,15 @@ LEGS_ADDED = Assumption(
     source="physics of one gaze: only what lies in one window counts",
 )
 
-# Angles per leg on which its brightness is tabulated, besides every break.
-TABULATED = 2048
-# A window of fewer steps than this is judged by its brightest element.
-LEAST_STEPS = 8
-# Relative error of windows and peaks from the table, kinks at region faces included.
-TABULATION_ERROR = 2e-3
-# Observers tabulated together: bounds the memory.
-MOST_OBSERVERS_AT_ONCE = 64
+# Places in each panel where the brightness is taken, from −1 to 1: the nodes of the integral, and both ends a little
+# inside, so that each panel has its own value on its side of a region's face.
+_PLACES = np.concatenate([[-1 + 1e-6], NODES, [1 - 1e-6]])
+# Relative error of windows and peaks from the table.
+TABULATION_ERROR = 5e-3
+# Nodes tabulated together: bounds the memory.
+MOST_PANELS_AT_ONCE = 4096
+# Load fractions at which windows and peaks are sought besides the one that is worst for the whole leg.
+FRACTIONS = np.array([1.0, 0.7, 0.5, 0.35, 0.25, 0.15, 0.1, 0.05, 0.02, 0.005])
 
 # Peak over mean radiance across the beam: of a gaussian with d at 1/e, 2/sqrt(pi); of a top-hat, 4/pi.
 PEAK_OVER_MEAN: dict[Profile, float] = {"gaussian": 2 / np.sqrt(np.pi), "top-hat": 4 / np.pi}
@@ -41,13 +43,32 @@ PEAK_OVER_MEAN: dict[Profile, float] = {"gaussian": 2 / np.sqrt(np.pi), "top-hat
 
 @dataclass(frozen=True)
 class BrightLine:
-    """dE/dtheta of one leg for one watt, tabulated. Axis 0: observers."""
+    """What makes dE/dtheta of one leg for one watt, tabulated. Axis 0: table places, by observer and rising angle."""
 
     light: LegLight
+    owner: Integers
+    """Observer."""
     theta: Floats
-    """(observers, angles), rising. [rad]"""
-    brightness: Floats
-    """(observers, angles). [m⁻² rad⁻¹]"""
+    """[rad]"""
+    steady: Floats
+    """beta/b of air and vouched loads. [m⁻² rad⁻¹]"""
+    load: Floats
+    """The same of the loads that the fraction acts on."""
+    tau_steady: Floats
+    tau_load: Floats
+    first: Integers
+    """Index of each observer's first place, (observers,)."""
+
+    def brightness(self, fraction: Floats) -> Floats:
+        """dE/dtheta at one load fraction per observer (E2's integrand). [m⁻² rad⁻¹]"""
+        f = fraction[self.owner]
+        return (self.steady + f * self.load) * np.exp(-self.tau_steady - f * self.tau_load)
+
+    def fractions(self, worst: Floats) -> list[Floats]:
+        """Load fractions to look at, each (observers,): the worst for the whole light, and a ladder."""
+        if not self.load.any():
+            return [worst]
+        return [worst, *(np.full_like(worst, f) for f in FRACTIONS)]
 
 
 @dataclass(frozen=True)
@@ -60,76 +81,124 @@ class Window:
     high: Floats
 
 
-def bright_line(light: LegLight, mixture: Mixture, points: Floats, fraction: Floats) -> BrightLine:
-    """Tabulate a leg's brightness at a load fraction per observer (E2's integrand)."""
+def bright_line(light: LegLight, mixture: Mixture, points: Floats) -> BrightLine:
+    """Tabulate a leg's brightness on the panels of its converged integral."""
+    edges = light.edges
+    order = np.lexsort((edges.low, edges.owner))
+    owner, low, high = edges.owner[order], edges.low[order], edges.high[order]
     parts = []
-    for start in range(0, len(points), MOST_OBSERVERS_AT_ONCE):
-        chosen = slice(start, start + MOST_OBSERVERS_AT_ONCE)
-        parts.append(_brightness(light, mixture, points[chosen], fraction[chosen], chosen))
-    theta, brightness = (np.concatenate(arrays) for arrays in zip(*parts, strict=True))
-    return BrightLine(light, theta, brightness)
+    for start in range(0, len(owner), MOST_PANELS_AT_ONCE):
+        chosen = slice(start, start + MOST_PANELS_AT_ONCE)
+        theta = ((low + high) / 2)[chosen, None] + ((high - low) / 2)[chosen, None] * _PLACES
+        emitted, _, tau, _ = elements(
+            light.leg, light.swing, mixture, light.sight, points, light.tau_before, owner[chosen, None], theta
+        )
+        steady = mixture.steady
+        sums = [emitted[steady], emitted[~steady], tau[steady], tau[~steady]]
+        parts.append([theta.ravel(), *(part.sum(axis=0).ravel() for part in sums)])
+    if not parts:
+        parts = [[np.empty(0)] * 5]
+    theta, bright_steady, bright_load, tau_steady, tau_load = (
+        np.concatenate(arrays) for arrays in zip(*parts, strict=True)
+    )
+    owners = np.repeat(owner, len(_PLACES))
+    return BrightLine(
+        light=light,
+        owner=owners,
+        theta=theta,
+        steady=bright_steady,
+        load=bright_load,
+        tau_steady=tau_steady,
+        tau_load=tau_load,
+        first=np.searchsorted(owners, np.arange(len(points))),
+    )
 
 
-def _brightness(
-    light: LegLight, mixture: Mixture, points: Floats, fraction: Floats, chosen: slice
-) -> tuple[Floats, Floats]:
-    sight = light.sight.only(chosen)
-    even = np.linspace(0.0, 1.0, TABULATED)
-    inner = sight.theta1[:, None] + (sight.theta2 - sight.theta1)[:, None] * even
-    theta = np.sort(np.concatenate([inner, breaks_of(light.leg, sight, mixture)], axis=1), axis=1)
-    # The ends themselves may be 0 or pi, where the cotangent has no value.
-    theta = np.clip(theta, 1e-12, np.pi - 1e-12)
-    owner = np.arange(len(points))[:, None]
-    emitted, _, tau, _ = elements(light.leg, light.swing, mixture, sight, points, light.tau_before, owner, theta)
-    steady = mixture.steady
-    f = fraction[:, None]
-    passed = np.exp(-tau[steady].sum(axis=0) - f * tau[~steady].sum(axis=0))
-    return theta, (emitted[steady].sum(axis=0) + f * emitted[~steady].sum(axis=0)) * passed
-
-
-def brightest_window(line: BrightLine, acceptance: float) -> Window:
-    """Greatest irradiance that a window of full angle `acceptance` along the beam takes in.
+def brightest_window(line: BrightLine, acceptance: float, worst: Floats) -> Window:
+    """Greatest irradiance that a window of full angle `acceptance` along the beam takes in, over load fractions.
 
     The whole width across the beam counts, so a field narrower than the beam is judged too high.
+
+    Parameters
+    ----------
+    worst : ndarray (observers,)
+        Load fraction at which the whole light is greatest.
     """
-    theta, bright = line.theta, line.brightness
-    steps = np.diff(theta, axis=1)
-    running = np.concatenate(
-        [np.zeros((len(theta), 1)), np.cumsum((bright[:, 1:] + bright[:, :-1]) / 2 * steps, axis=1)], axis=1
-    )
-    first, last = theta[:, :1], theta[:, -1:]
-    starts = np.concatenate([theta, theta - acceptance], axis=1)
-    starts = np.clip(starts, first, np.maximum(last - acceptance, first))
-    ends = np.minimum(starts + acceptance, last)
-    taken = _along(theta, running, ends) - _along(theta, running, starts)
-    at = np.arange(len(theta)), taken.argmax(axis=1)
-    best, low, high = taken[at], starts[at], ends[at]
-    narrow = acceptance < LEAST_STEPS * (last - first)[:, 0] / TABULATED
-    best = np.where(narrow, np.maximum(best, acceptance * bright.max(axis=1)), best)
+    found: Window | None = None
+    for fraction in line.fractions(worst):
+        window = _window(line, acceptance, line.brightness(fraction), len(worst))
+        if found is None:
+            found = window
+        else:
+            more = window.irradiance > found.irradiance
+            found = Window(
+                np.where(more, window.irradiance, found.irradiance),
+                np.where(more, window.low, found.low),
+                np.where(more, window.high, found.high),
+            )
+    assert found is not None  # there is always the worst fraction
+    return found
+
+
+def _window(line: BrightLine, acceptance: float, bright: Floats, observers: int) -> Window:
+    """The window at one brightness: prefix sums, windows that begin or end at a place of the table."""
+    sight, owner, theta = line.light.sight, line.owner, line.theta
+    first, last = sight.theta1[owner], sight.theta2[owner]
+    same = owner[1:] == owner[:-1]
+    steps = np.where(same, (bright[1:] + bright[:-1]) / 2 * np.diff(theta), 0.0)
+    running = np.concatenate([[0.0], np.cumsum(steps)]) if len(theta) else np.empty(0)
+    # Angles span at most pi, so observers set 4 apart on one axis do not overlap: one look-up serves all.
+    axis = theta + 4.0 * owner
+    starts = np.concatenate([theta, theta - acceptance])
+    owners = np.concatenate([owner, owner])
+    low_end, high_end = np.concatenate([first, first]), np.concatenate([last, last])
+    starts = np.clip(starts, low_end, np.maximum(high_end - acceptance, low_end))
+    ends = np.minimum(starts + acceptance, high_end)
+    taken = np.interp(ends + 4.0 * owners, axis, running) - np.interp(starts + 4.0 * owners, axis, running)
+    best, low, high = np.zeros(observers), sight.theta1.copy(), sight.theta1.copy()
+    order = np.lexsort((taken, owners))
+    top = order[np.searchsorted(owners[order], np.arange(observers), side="right") - 1] if len(order) else order
+    lit = np.isin(np.arange(observers), owners)
+    best[lit], low[lit], high[lit] = taken[top[lit]], starts[top[lit]], ends[top[lit]]
     return Window(best, low, high)
 
 
-def _along(theta: Floats, running: Floats, at: Floats) -> Floats:
-    """Each row's running integral at its own angles, (observers, angles): all rows in one look-up."""
-    # Angles span at most pi, so rows set 4 apart on one axis do not overlap.
-    shift = 4.0 * np.arange(len(theta))[:, None]
-    flat = np.interp((at + shift).ravel(), (theta + shift).ravel(), running.ravel())
-    return np.asarray(flat.reshape(at.shape))
-
-
-def peak_radiance(line: BrightLine, beam_line: Line, profile: Profile) -> tuple[Floats, NDArray[np.bool_]]:
-    """Greatest radiance of a leg across and along the beam (E4), for one watt. [m⁻² sr⁻¹]
+def peak_radiance(
+    line: BrightLine, beam_line: Line, profile: Profile, worst: Floats, reaches: Floats | float, mixture: Mixture
+) -> tuple[Floats, Floats, NDArray[np.bool_]]:
+    """Greatest radiance of a leg across and along the beam (E4), for one watt, over load fractions. [m⁻² sr⁻¹]
 
     Returns
     -------
     radiance : ndarray (observers,)
+        At the stated place.
+    within_reach : ndarray (observers,)
+        Bound for every place within the reach.
     void : ndarray of bool (observers,)
-        True where part of the leg is seen so nearly end-on that E4 does not hold there.
+        True where part of the leg is seen so nearly end-on, from within the reach, that E4 does not hold there.
     """
-    sight, leg = line.light.sight, line.light.leg
-    s = np.clip(sight.s0[:, None] - sight.b[:, None] / np.tan(line.theta), 0.0, leg.length)
+    sight, leg, owner = line.light.sight, line.light.leg, line.owner
+    count = len(worst)
+    s = np.clip(sight.s0[owner] - sight.b[owner] / np.tan(line.theta), 0.0, leg.length)
     width = one_over_e_diameter(beam_line, profile, leg.path_before + s)
     sine = np.sin(line.theta)
-    holds = width <= leg.length * sine
-    radiance = line.brightness * sight.b[:, None] / (width * sine) * PEAK_OVER_MEAN[profile]
-    return np.where(holds, radiance, 0.0).max(axis=1), np.logical_not(np.all(holds, axis=1))
+    scale = sight.b[owner] / width * PEAK_OVER_MEAN[profile]
+    radiance = np.zeros(count)
+    for fraction in line.fractions(worst):
+        np.maximum.at(radiance, owner, line.brightness(fraction) * scale / sine)
+    reach = np.broadcast_to(np.asarray(reaches, dtype=float), count)[owner]
+    turned = np.arcsin(np.clip(reach * sine / sight.b[owner], 0.0, 1.0))
+    least_sine = np.minimum(
+        np.sin(np.maximum(line.theta - turned, 0.0)), np.sin(np.minimum(line.theta + turned, np.pi))
+    )
+    end_on = width > leg.length * least_sine
+    density = mixture.densities(leg.origin + s[..., None] * leg.direction) * leg.reflected / (4 * np.pi)
+    bright = np.zeros_like(s)
+    for component, amount in zip(mixture.components, density, strict=True):
+        bright += amount * component.matrix.greatest_near(line.theta, turned)
+    bound = np.zeros(count)
+    with np.errstate(divide="ignore"):
+        np.maximum.at(bound, owner, np.where(end_on, 0.0, bright / (width * least_sine) * PEAK_OVER_MEAN[profile]))
+    void = np.zeros(count, dtype=bool)
+    np.logical_or.at(void, owner, end_on)
+    return radiance, bound, void

@@ -67,6 +67,9 @@ LADDER = np.concatenate([_LADDER, [np.pi / 2], np.pi - _LADDER[::-1]])
 # Relative to the unpolarised value of the leg.
 TOLERANCE = 1e-6
 
+# Nearer than this to an element a reach counts as touching: the bound is then far above any limit, and finite. [m]
+LEAST_GAP = 1e-3
+
 # Load fractions among which the greatest exposure is sought before it is refined.
 FRACTIONS = np.concatenate([np.geomspace(1e-4, 0.05, 24, endpoint=False), np.linspace(0.05, 1.0, 39)])
 
@@ -94,6 +97,15 @@ class Nodes:
 
 
 @dataclass(frozen=True)
+class PanelEdges:
+    """The panels on which a leg's integral converged: within each the integrand is smooth. Axis 0: panels."""
+
+    owner: Integers
+    low: Floats
+    high: Floats
+
+
+@dataclass(frozen=True)
 class LegLight:
     """One leg seen by all observers, per watt at the beam's start."""
 
@@ -108,6 +120,9 @@ class LegLight:
     """(observers,) [m⁻²]"""
     error: Floats
     """Quadrature error, (observers,). [m⁻²]"""
+    within_reach: Floats
+    """No place within the observer's reach gets more, at any load fraction, (observers,). [m⁻²]"""
+    edges: PanelEdges
 
 
 @dataclass(frozen=True)
@@ -124,6 +139,7 @@ def scattered(
     mixture: Mixture,
     points: Floats,
     least_offsets: Floats,
+    reaches: Floats | float = 0.0,
     tolerance: float = TOLERANCE,
 ) -> tuple[IntegratedLeg, ...]:
     """Irradiance at each observer from each leg, per watt at the beam's start, facing each element (E2).
@@ -134,21 +150,34 @@ def scattered(
         [m]
     least_offsets : ndarray (legs, observers)
         Least distance from the axis that is integrated: the beam's own radius. [m]
+    reaches : float or ndarray (observers,)
+        How far each head moves. [m]
     tolerance : float
         Relative to the unpolarised value of each leg.
     """
     found = []
+    reaches = np.broadcast_to(np.asarray(reaches, dtype=float), len(points))
     tau_before = np.zeros(len(mixture.components))
     for leg, swing, least in zip(legs, swings, least_offsets, strict=True):
         sight = sightlines(leg, points, least)
         nodes = _nodes(leg, swing, mixture, sight, points, tau_before, tolerance)
-        found.append(IntegratedLeg(_summed(leg, swing, sight, tau_before, nodes, len(points)), nodes))
+        found.append(IntegratedLeg(_summed(leg, swing, mixture, sight, tau_before, nodes, reaches), nodes))
         if np.isfinite(leg.length):
             tau_before = tau_before + mixture.thicknesses(leg.origin, leg.origin + leg.length * leg.direction)
     return tuple(found)
 
 
-def _summed(leg: Leg, swing: Swing, sight: Sightlines, tau_before: Floats, nodes: Nodes, count: int) -> LegLight:
+def _summed(
+    leg: Leg,
+    swing: Swing,
+    mixture: Mixture,
+    sight: Sightlines,
+    tau_before: Floats,
+    nodes: Nodes,
+    reaches: Floats,
+) -> LegLight:
+    count = len(reaches)
+    near = reach_brightness(leg, mixture, sight, nodes.owner, nodes.theta, reaches[nodes.owner])
     passed = np.exp(-nodes.tau_steady - nodes.tau_load) * nodes.weight
     return LegLight(
         leg=leg,
@@ -158,7 +187,32 @@ def _summed(leg: Leg, swing: Swing, sight: Sightlines, tau_before: Floats, nodes
         by_component=np.stack([sums_by_owner(nodes.owner, row * passed, count) for row in nodes.emitted]),
         unpolarised=sums_by_owner(nodes.owner, nodes.unpolarised * passed, count),
         error=sums_by_owner(nodes.panels.owner, nodes.panels.errors(), count),
+        within_reach=sums_by_owner(nodes.owner, nodes.weight * near, count),
+        edges=PanelEdges(nodes.panels.owner, nodes.panels.low, nodes.panels.high),
     )
+
+
+def reach_brightness(
+    leg: Leg, mixture: Mixture, sight: Sightlines, owner: Integers, theta: Floats, reach: Floats
+) -> Floats:
+    """Bound on dE/dtheta's elements from every place within a reach, (nodes,). [m⁻² rad⁻¹]
+
+    A head that moves by the reach brings no element nearer than r − reach and sees none under an angle that differs
+    by more than asin(reach/r). Each element is taken that near, at the worst angle and axis among those, and nothing
+    is lost on the way: so it holds at any load fraction.
+    """
+    b = sight.b[owner]
+    r = b / np.sin(theta)
+    s = np.clip(sight.s0[owner] - b * np.cos(theta) / np.sin(theta), 0.0, leg.length)
+    density = mixture.densities(leg.origin + s[..., None] * leg.direction) * (leg.reflected / (4 * np.pi) / b)
+    turned = np.arcsin(np.clip(reach / r, 0.0, 1.0))
+    # An element within reach can be seen under any angle.
+    turned = np.where(r <= reach, np.pi, turned)
+    nearer = np.square(r / np.maximum(r - reach, np.minimum(LEAST_GAP, r)))
+    bright = np.zeros_like(r)
+    for component, amount in zip(mixture.components, density, strict=True):
+        bright += amount * component.matrix.greatest_near(theta, turned)
+    return bright * nearer
 
 
 def breaks_of(leg: Leg, sight: Sightlines, mixture: Mixture) -> Floats:

@@ -11,9 +11,10 @@ from lasescatter.exposure.legs import Leg
 
 Floats = NDArray[np.float64]
 
-# An observer on the leg's line beyond its ends has b = 0; this share of the distance stands for it. The
-# integral there tends to a limit that is reached long before.
-LEAST_OFFSET = 1e-9
+# An observer on the leg's line beyond its ends has b = 0; this share of the distance, and at least as many metres,
+# stands for it. The integral there tends to a limit that is reached long before, and a smaller offset would leave
+# too few digits to the place of far elements.
+LEAST_OFFSET = 1e-5
 
 
 @dataclass(frozen=True)
@@ -59,7 +60,7 @@ def sightlines(leg: Leg, points: Floats, least_offset: Floats | float = 0.0) -> 
     b = np.linalg.norm(across, axis=-1)
     outward = np.where(b[:, None] > 0, across / np.where(b > 0, b, 1.0)[:, None], _any_normal(leg.direction))
     alongside = (s0 >= 0) & (s0 <= leg.length)
-    floor = np.maximum(LEAST_OFFSET * np.maximum(np.abs(s0), 1e-3), np.where(alongside, least_offset, 0.0))
+    floor = np.maximum(LEAST_OFFSET * np.maximum(np.abs(s0), 1.0), np.where(alongside, least_offset, 0.0))
     b = np.maximum(b, floor)
     return Sightlines(
         s0=s0,

@@ -67,6 +67,11 @@ class HazardJudgement:
     not_judged: str
     """The user's reason where the hazard was left out on purpose, else ""."""
 
+    @property
+    def optical_density(self) -> float:
+        """That would bring the summed ratio to 1; 0 where it is below."""
+        return math.log10(self.ratio) if self.ratio is not None and self.ratio > 1 else 0.0
+
 
 @dataclass(frozen=True)
 class Received:

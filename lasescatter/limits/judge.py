@@ -217,7 +217,8 @@ def _widest(governing: list[Comparison]) -> str:
     """What widens the bounds most, in brackets."""
     causes: dict[str, float] = {}
     for comparison in governing:
-        for cause, amount in comparison.allowances:
+        orders = tuple(part for part in comparison.by_origin if part[0].startswith("allowance"))
+        for cause, amount in comparison.allowances + orders:
             causes[cause] = causes.get(cause, 0.0) + amount / comparison.limit_value
     return f" (mostly: {max(causes, key=lambda cause: causes[cause])})" if causes else ""
 

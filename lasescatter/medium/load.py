@@ -34,6 +34,12 @@ SPHERES = Assumption(
     source="Mie theory is for spheres (Bohren & Huffman 1983, ch. 4); size of the effect: common practice, no source",
 )
 
+STEADY = Assumption(
+    name="Loads that a role vouches for neither thin nor clear",
+    direction="low",
+    size="by the shielding of the load: exp(optical thickness) at most",
+    source="entered by the user",
+)
 CLEAN_AIR = Assumption(
     name="Air outside the stated loads holds no particles",
     direction="low",

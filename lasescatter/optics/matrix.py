@@ -64,6 +64,30 @@ class ScatteringMatrix:
         return f11.integral(angle) / (4 * np.pi), signed / (4 * np.pi), absolute / (4 * np.pi)
 
     @cached_property
+    def _envelopes(self) -> list[NDArray[np.float64]]:
+        """Largest F11 + |F12| over 1, 2, 4 … neighbouring nodes, by the first of them."""
+        levels = [self.f11 + np.abs(self.f12)]
+        while 2 ** len(levels) <= self.angles.size:
+            step = 2 ** (len(levels) - 1)
+            levels.append(np.maximum(levels[-1][:-step], levels[-1][step:]))
+        return levels
+
+    def greatest_near(self, theta: ArrayLike, within: ArrayLike) -> NDArray[np.float64]:
+        """Largest F11 + |F12| at the nodes that enclose theta ± within [rad]. Broadcast shape of both."""
+        theta, within = np.broadcast_arrays(np.asarray(theta, dtype=float), np.asarray(within, dtype=float))
+        step = np.pi / (self.angles.size - 1)
+        last = self.angles.size - 1
+        low = np.clip(np.floor((theta - within) / step), 0, last).astype(np.int64)
+        high = np.clip(np.ceil((theta + within) / step), 0, last).astype(np.int64)
+        level = np.frexp((high - low + 1).astype(float))[1] - 1
+        found = np.empty(theta.shape)
+        for k in np.unique(level):
+            chosen = level == k
+            table = self._envelopes[k]
+            found[chosen] = np.maximum(table[low[chosen]], table[high[chosen] - 2**k + 1])
+        return found
+
+    @cached_property
     def asymmetry(self) -> float:
         """Mean cosine of the scattering angle."""
         series = cosines.from_samples(self.f11)

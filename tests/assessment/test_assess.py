@@ -372,3 +372,128 @@ def test_assumptions_in_force():
     assert [entry.direction for entry in close.assumptions] == sorted(
         (entry.direction for entry in close.assumptions), key=["low", "either", "high"].index
     )
+
+
+def _ratios(scene, place, reach=0.0, name="eye"):
+    found = only(replace(scene, observers=(observer(position=place, reach=reach),)))
+    comparison = next(c for c in found.comparisons if c.limit == name)
+    return comparison, found
+
+
+def _big_drops_without_stop_light():
+    """Light that goes forward within a few degrees."""
+    path = replace(bay().beams[0], stop=Stop(0.0, (-1.0, 0.0, 0.0)))
+    drops = haze(sizes=(SizeMode(Lognormal(5e-6, 1.3)),), index=1.33 + 0j,
+                 region=haze().region.__class__((0.0, -2.0, 0.0), (9.0, 2.0, 3.0)))  # fmt: skip
+    return bay(beams=(path,), loads=(drops,), limits=(limit(value=0.08), skin()))
+
+
+def test_reach_bound_covers_the_forward_peak():
+    """A head beyond the end of the beam that moves towards its axis meets the forward peak."""
+    scene = _big_drops_without_stop_light()
+    bound, found = _ratios(scene, (10.0, 0.3, 1.2), reach=0.25)
+    there, _ = _ratios(scene, (9.95, 0.15, 1.2))
+    assert there.ratio > 1
+    assert bound.ratio_high >= there.ratio
+    assert found.verdict == "not established"
+
+
+def test_reach_bound_covers_the_polarization_null():
+    small = haze(sizes=(SizeMode(Lognormal(0.03e-6, 1.2)),), reading=LoadReading("extinction", 0.3, 532e-9),
+                 region=haze().region.__class__((3.9, -2.0, 0.0), (4.1, 2.0, 3.0)))  # fmt: skip
+    path = replace(bay().beams[0], stop=Stop(0.0, (-1.0, 0.0, 0.0)))
+    scene = bay(beams=(path,), loads=(small,), limits=(limit(value=3.67e-4), skin()))
+    bound, _ = _ratios(scene, (4.0, 0.0, 2.2), reach=0.25)
+    there, _ = _ratios(scene, (4.0, 0.21, 2.1))
+    assert there.ratio > 2 * bound.ratio
+    assert bound.ratio_high >= there.ratio
+
+
+def test_radiance_bound_sees_round_the_edge_of_the_stop():
+    scene = bay(limits=(limit(name="bright", quantity="radiance", value=4e3), skin()))
+    bound, _ = _ratios(scene, (9.05, 0.3, 1.2), reach=0.25, name="bright")
+    there, _ = _ratios(scene, (8.85, 0.3, 1.2), name="bright")
+    assert there.ratio > 1
+    assert bound.ratio_high >= there.ratio
+
+
+@pytest.mark.parametrize("quantity", ["irradiance", "radiance"])
+@pytest.mark.parametrize("acceptance", [None, 0.1])
+def test_bound_of_every_kind_of_limit_holds_within_reach(quantity, acceptance):
+    rng = np.random.default_rng(17)
+    entry = limit(quantity=quantity, acceptance=acceptance)
+    for centre in ([4.0, 1.2, 1.5], [9.6, 0.8, 1.3], [-0.8, 0.7, 1.0]):
+        home = only(bay(limits=(entry,), observers=(observer(position=tuple(centre), reach=0.3),)))
+        bound = home.comparisons[0].ratio_high if home.comparisons else np.inf
+        steps = rng.normal(size=(25, 3))
+        steps *= (0.3 * rng.uniform(0, 1, 25) ** (1 / 3) / np.linalg.norm(steps, axis=1))[:, None]
+        people = tuple(
+            observer(name=str(i), key=str(i), position=tuple(np.array(centre) + s), reach=0.0)
+            for i, s in enumerate(steps)
+        )
+        for person in assess(bay(limits=(entry,), observers=people)).observers:
+            for comparison in person.comparisons:
+                assert comparison.ratio <= bound * (1 + 1e-6)
+
+
+def test_adding_a_limit_never_shortens_the_hazard_distance():
+    """Per place the largest multiple over the limits; the hazard distance is the longest over the eye limits."""
+    eye = limit(value=25.0)
+    narrow = skin(value=50.0, aperture=1e-3)
+    (alone,) = assess(bay(limits=(eye,))).in_the_beam
+    (both,) = assess(bay(limits=(eye, narrow))).in_the_beam
+    assert both.hazard_distance == pytest.approx(alone.hazard_distance, rel=1e-12)
+    assert both.hazard_limit == "eye"
+    (narrow_alone,) = assess(bay(limits=(narrow,))).in_the_beam
+    for spot, first, second in zip(both.spots, alone.spots, narrow_alone.spots, strict=True):
+        assert spot.multiple == pytest.approx(max(first.multiple, second.multiple), rel=1e-12)
+        assert spot.diffuse_distance == pytest.approx(max(first.diffuse_distance, second.diffuse_distance), rel=1e-12)
+
+
+def test_a_point_on_a_straight_path_is_no_mirror():
+    middle = replace(
+        bay().beams[0], points=((0.0, 0.0, 1.2), (5.0, 0.0, 1.2), (9.0, 0.0, 1.2)), mirror_reflectance=(1.0,)
+    )
+    for mirrors in ("real", "ideal"):
+        path = replace(middle, mirrors=mirrors)
+        assert_allclose(only(bay(beams=(path,))).total("scattered"), only(bay()).total("scattered"), rtol=1e-6)
+
+
+def test_behind_the_laser_on_its_axis_a_far_box_is_still_seen():
+    """Backscatter of a box 1 km ahead, seen from the axis: P beta(pi) (1/r1 − 1/r2) T² (integral of 1/r²)."""
+    from lasescatter.scene import Box
+
+    far = haze(
+        reading=LoadReading("extinction", 0.01, 532e-9), region=Box((1000.1234, -5.0, 0.0), (1001.1234, 5.0, 9.0))
+    )
+    path = beam((0.0, 0.0, 2.0), (9.0, 0.0, 2.0), lines=(line(name="b", key="b", divergence=1e-4),))
+    found = only(bay(beams=(path,), loads=(far,), observers=(observer(position=(-1.0, 0.0, 2.0)),)))
+    row = next(r for r in found.hand_checks if r.component == "test haze")
+    optics = next(c for c in assess(bay(beams=(path,), loads=(far,))).components if c.name == "test haze")
+    r1, r2 = 1001.1234, 1002.1234
+    expected = optics.scattering * optics.phase[-1] * (1 / r1 - 1 / r2) * math.exp(-2 * 0.005 - 2 * 1.28e-5 * 1e3)
+    assert_allclose(row.program, expected, rtol=2e-3)
+
+
+def test_hot_spot_multiplies_the_peak_radiance_of_the_stop():
+    bright = limit(
+        name="bright", quantity="radiance dose", value=1e6, durations=(1e-9, 1e-6), per="pulse", train="none"
+    )
+    ratios = []
+    for hot in (1.0, 3.0):
+        pulsed = replace(bay().beams[0].lines[0], power=0.2, pulses=Pulses(10e-3, 8e-9, 20.0, None, hot))
+        found = only(bay(beams=(replace(bay().beams[0], lines=(pulsed,)),), limits=(bright,)))
+        ratios.append(dict(found.comparisons[0].by_origin)["stop"])
+    assert ratios[1] == pytest.approx(3 * ratios[0], rel=1e-12)
+
+
+def test_optical_density_of_a_hazard_is_that_of_the_sum():
+    lines = tuple(
+        replace(bay().beams[0].lines[0], name=str(i), key=str(i), wavelength=(530 + i) * 1e-9) for i in range(3)
+    )
+    near = observer(position=(8.7, 0.3, 1.2), reach=0.01)
+    found = only(bay(beams=(replace(bay().beams[0], lines=lines),), observers=(near,), limits=(limit(value=2.0),)))
+    thermal = next(h for h in found.hazards if h.hazard == "retina thermal")
+    assert thermal.ratio > 1
+    assert thermal.optical_density == pytest.approx(math.log10(thermal.ratio), rel=1e-12)
+    assert thermal.optical_density > max(c.optical_density for c in found.comparisons)

@@ -9,7 +9,7 @@ from scipy.integrate import quad, simpson
 from scipy.interpolate import CubicSpline
 
 from lasescatter.optics import cosines
-from lasescatter.optics.air import rayleigh_matrix
+from lasescatter.optics.air import air_optics, rayleigh_matrix
 from lasescatter.optics.matrix import SPLINE_ERROR, ScatteringMatrix, from_series
 from lasescatter.optics.mie import averaged, sphere
 from lasescatter.optics.spline import EvenSpline
@@ -157,3 +157,20 @@ def test_grid_follows_a_single_large_sphere(x):
     exact = (abs(s1) ** 2 + abs(s2) ** 2) / 2 / cosines.sphere_mean(series[0])
     lobe = np.max([matrix.at(THETA + shift)[0] for shift in np.linspace(-0.5, 0.5, 11) * np.pi / x], axis=0)
     assert (abs(matrix.at(THETA)[0] - exact) / lobe).max() < 1.5 * SPLINE_ERROR
+
+
+def test_greatest_near_against_plain_search():
+    """Largest F11 + |F12| within an angle: every node in reach looked at one by one."""
+    matrix = air_optics(532e-9, 288.15, 101_325.0).matrix
+    total = matrix.f11 + np.abs(matrix.f12)
+    rng = np.random.default_rng(6)
+    theta, within = rng.uniform(0, np.pi, 200), rng.uniform(0, 2, 200) ** 3
+    step = np.pi / (matrix.angles.size - 1)
+    for angle, reach, found in zip(theta, within, matrix.greatest_near(theta, within), strict=True):
+        inside = (matrix.angles >= angle - reach - step) & (matrix.angles <= angle + reach + step)
+        assert found <= total[inside].max()
+        strictly = (matrix.angles >= angle - reach) & (matrix.angles <= angle + reach)
+        if strictly.any():
+            assert found >= total[strictly].max()
+        f11, f12 = matrix.at(angle)
+        assert found >= (f11 + np.abs(f12)) * (1 - 1e-5)
