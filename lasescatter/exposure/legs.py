@@ -32,7 +32,7 @@ MIRROR_SCATTER = Assumption(
 UNPOLARIZED_KEPT = Assumption(
     name="Mirrors leave unpolarized light unpolarized",
     direction="low",
-    size="a mirror of reflectance R can polarize by (1 − R)/R at most: up to that share of |F12|/F11 more, "
+    size="a mirror of reflectance R can polarize by (1 − R)/R at most: up to that share of F12/F11 more, "
     'at the very most a factor 2; enter polarization = "unknown" to cover it',
     source="conservation of energy over the s and p directions",
 )

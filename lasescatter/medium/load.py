@@ -24,7 +24,7 @@ FORWARD_LIGHT = Assumption(
 ONE_INDEX = Assumption(
     name="The refractive index given is used at every wavelength of the site",
     direction="either",
-    size="not quantified; enter each wavelength as a site of its own where the index differs",
+    size="not quantified; where the index differs much, assess each wavelength with its own index",
     source="entered by the user",
 )
 SPHERES = Assumption(
