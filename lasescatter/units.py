@@ -135,6 +135,7 @@ KINDS: Mapping[str, Kind] = {
 
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?(?![0-9.])")
 _TOKEN = re.compile(r"\s*(?:[A-Za-z%]+|\^\s*[+-]?[0-9]+|[/*()])")
+_UNRAISED = re.compile(r"(?<![A-Za-z])(?P<name>[A-Za-z]+)\s?(?P<power>-?[1-4])(?![0-9.])")
 _LONGEST_NUMBER = 40
 _LARGEST_EXPONENT = 40
 _LONGEST_TEXT = 200
@@ -230,6 +231,9 @@ def _split_number(text: str, plain: str, kind: str) -> tuple[Decimal, str]:
             f"has {rest[0]!r} inside the number",
             "Use a point for decimals and nothing between thousands, for example 2.5 or 12000",
         )
+    reciprocal = re.match(r"\s+1\s*(/.*)", rest)
+    if reciprocal:
+        raise QuantityError(text, "has two numbers", f"Leave out the 1 before the unit: write {digits} {reciprocal[1]}")
     if re.match(r"\s*[x×]\s*10|\s+[0-9.+-]", rest):
         raise QuantityError(text, "has two numbers", 'Write one number, with "e" for powers of ten: 5e-3')
     exponent = re.search(r"[eE]([+-]?[0-9]+)$", digits)
@@ -251,8 +255,10 @@ def _plain_ascii(rest: str) -> str:
 
 def _read_unit(text: str, rest: str, kind: str) -> dict[str, int]:
     """Exponent of every unit name of an expression, in the order of writing."""
-    junk = QuantityError(text, f"has a unit that cannot be read ({rest.strip()!r})", _say_due(kind))
     plain, tokens, position = _plain_ascii(rest).strip(), list[str](), 0
+    junk = _unraised(text, plain, kind) or QuantityError(
+        text, f"has a unit that cannot be read ({rest.strip()!r})", _say_due(kind)
+    )
     while position < len(plain):
         token = _TOKEN.match(plain, position)
         if token is None:
@@ -274,6 +280,17 @@ def _read_unit(text: str, rest: str, kind: str) -> dict[str, int]:
     if len(dict(factors)) < len(factors):
         raise QuantityError(text, "has the same unit twice", _say_due(kind))
     return dict(factors)
+
+
+def _unraised(text: str, plain: str, kind: str) -> QuantityError | None:
+    """For an exponent without its sign (cm2, m-2): what to write."""
+    names = [found for found in _UNRAISED.finditer(plain) if found["name"] in UNITS]
+    if not names:
+        return None
+    told = " and ".join(dict.fromkeys(f"{found['name']}^{found['power']}" for found in names))
+    due = KINDS[kind].phrase
+    return QuantityError(text, f"has an exponent without the sign ^ ({names[0].group()})",
+                         f"Write {told}; for {due} fits: {fitting_units(kind)}")  # fmt: skip
 
 
 class _Junk(Exception):

@@ -159,6 +159,9 @@ REFUSED = (
     ("5 __import__('os')", "power", "cannot be read"),
     ("10 W/m^2 sr", "radiance", "two ways"),
     ("10 W/m^2*sr", "radiance", "two ways"),
+    ("5 mW/cm2", "irradiance", "without the sign ^ (cm2)"),
+    ("5 m2", "length", "without the sign ^ (m2)"),
+    ("0.01 1/m", "extinction", "has two numbers"),
 )
 
 
@@ -175,6 +178,29 @@ def test_the_message_names_the_text_and_what_fits():
         QuantityError, match=r"'5 watts' has a unit that is not known \(watts\)\. .*W, mW.*perhaps W was"
     ):
         parse_quantity("5 watts", "power")
+
+
+@pytest.mark.parametrize(
+    ("text", "kind", "mend"),
+    [
+        ("2.55 mW/cm2", "irradiance", "Write cm^2;"),
+        ("2.55 mW/cm 2", "irradiance", "Write cm^2;"),
+        ("10 W/m2", "irradiance", "Write m^2;"),
+        ("10 W m-2", "irradiance", "Write m^-2;"),
+        ("10 W/(m2 sr)", "radiance", "Write m^2;"),
+        ("10 W m-2 sr-1", "radiance", "Write m^-2 and sr^-1;"),
+        ("1e5 /cm3", "number concentration", "Write cm^3;"),
+        ("1.06 g/cm3", "density", "Write cm^3;"),
+        ("0.01 m-1", "extinction", "Write m^-1;"),
+        ("0.01 1/m", "extinction", "write 0.01 /m"),
+        ("1e5 1/cm^3", "number concentration", "write 1e5 /cm^3"),
+        ("20 1/s", "rate", "write 20 /s"),
+    ],
+)
+def test_common_ways_to_write_powers_are_mended(text, kind, mend):
+    with pytest.raises(QuantityError) as caught:
+        parse_quantity(text, kind)
+    assert mend in caught.value.mend
 
 
 def test_both_readings_of_a_wrong_case_are_offered():

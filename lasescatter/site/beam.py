@@ -12,7 +12,7 @@ from lasescatter.site.faults import Fault, Place, quoted
 from lasescatter.site.fields import (
     Direction,
     Flag,
-    Number,
+    Fraction,
     PlacePoint,
     Text,
     Vector3,
@@ -45,8 +45,8 @@ SHORTEST_LEG = 1e-9
 class StopTable(Table):
     """The matt surface that ends a beam."""
 
-    reflectance: Annotated[float, Number(0, 1, "0.3")] = key(
-        "Share of the light that the surface sends back, 0 to 1", 0.3
+    reflectance: Annotated[float, Fraction("0.3")] = key(
+        "Share of the light that the surface sends back, 0 to 1 or in per cent", 0.3
     )
     facing: Annotated[Direction, Vector3("[-1, 0, 0]")] = key(
         "Direction that the lit side faces, of any length", [-1, 0, 0]
@@ -90,7 +90,7 @@ class BeamTable(Table):
     )
     divergence: Divergence | None = key("Full angle, by the same criterion", "1.0 mrad", default=None)
     path: tuple[PlacePoint, ...] = key("Start, mirrors and end of the beam", [[0, 0, 1.2], [9, 0, 1.2]])
-    mirror_reflectance: tuple[Annotated[float, Number(0, 1, "0.99", above_low=True)], ...] | None = key(
+    mirror_reflectance: tuple[Annotated[float, Fraction("0.99", above_low=True)], ...] | None = key(
         "Reflectance of each mirror, one per inner point of path; 1 where it is left out", [0.99], default=None
     )
     leaves_site: Annotated[bool, Flag()] | None = key(
@@ -125,8 +125,7 @@ class BeamTable(Table):
         reflectances = tuple(float(value) for value in self.mirror_reflectance or ())
         if inner and not reflectances:
             reflectances = (1.0,) * inner
-            note = ledger.took if self.mirror_reflectance is None else ledger.explain
-            note((*place, "mirror_reflectance"), "1 at each mirror")
+            ledger.took((*place, "mirror_reflectance"), "1 at each mirror")
         stop = None
         if self.beam_stop is not None:
             stop = Stop(float(self.beam_stop.reflectance), vector(self.beam_stop.facing))
@@ -178,10 +177,11 @@ def _path_rules(seen: Seen) -> Iterator[Fault]:
             yield Fault(("path", number), "this point is the same as the one before it",
                         "Leave one of them out: each leg of the path must have a length")  # fmt: skip
     reflectances = seen.get("mirror_reflectance")
-    if reflectances and len(reflectances) != len(points) - 2:
+    if reflectances is not None and len(reflectances) != len(points) - 2:
         yield Fault(("mirror_reflectance",),
-                    f"{len(reflectances)} given and {len(points) - 2} due",
-                    "Give one for each inner point of path, in its order, or leave the key out")  # fmt: skip
+                    f"{len(reflectances) or 'none'} given and {len(points) - 2} due",
+                    "Give one number for each mirror (inner point of path), in its order, or leave the key out, "
+                    "which takes each as 1")  # fmt: skip
 
 
 def _end_rules(seen: Seen) -> Iterator[Fault]:

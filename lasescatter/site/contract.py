@@ -6,11 +6,13 @@ with what to do meanwhile. The list is data; a test walks it.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import Any
 
 TableName = tuple[str, ...]
 
-_LEAVE = "Leave it out of the file"
+_LEAVE = "Leave {it} out of the file"
 _BY_EXTINCTION = "Give the load as extinction, with at"
 
 
@@ -26,6 +28,7 @@ class NotBuilt:
     what: str
     """What it would do, in a few words."""
     mend: str = _LEAVE
+    """What to do instead; {it} stands for the key or the table, as the user wrote it."""
     wrong: str = ""
     """Wording in full, where "not built yet" does not say enough."""
     instead_of: tuple[str, ...] = ()
@@ -35,6 +38,15 @@ class NotBuilt:
     def message(self) -> str:
         """What is wrong, for the user."""
         return self.wrong or f"not built yet ({self.what})"
+
+    def advice(self, value: Any) -> str:
+        """What to do instead, worded for what the user wrote: a key with its value, or one or more tables."""
+        it = "the key"
+        if isinstance(value, Mapping):
+            it = "the table"
+        elif isinstance(value, list) and any(isinstance(entry, Mapping) for entry in value):
+            it = "the tables"
+        return self.mend.replace("{it}", it)
 
 
 _POINT = "[0, 0, 2]"
@@ -136,7 +148,7 @@ NOT_BUILT: tuple[NotBuilt, ...] = (
     NotBuilt(_OBSERVER, "looking", "[9, 0, 1.2]", "a direction of gaze", "Leave it out: the worst direction is used"),
     NotBuilt(_OBSERVER, "background", '"80 cd/m^2"', "visibility of the beam"),
     NotBuilt(_OBSERVER, "optical_aid", '{ objective = "50 mm", magnification = 7 }', "binoculars and telescopes",
-             "Do not rely on this result where optical aids are used, and leave the table out"),
+             "Do not rely on this result where optical aids are used, and leave {it} out of the file"),
     NotBuilt(_OBSERVER, "eyewear", '{ optical_density = 4 }', "protective eyewear",
              "Leave it out: the report prints the optical density that brings an exposure to its limit"),
     NotBuilt(_LIMIT, "replaces", '["RT-4"]', "standing in for published rows"),

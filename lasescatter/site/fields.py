@@ -26,6 +26,8 @@ FARTHEST = 1e6
 
 _SCHEMA_QUANTITY = r"^\s*[+-]?([0-9]+\.?[0-9]*|\.[0-9]+)([eE][+-]?[0-9]+)?\s*[^0-9\s.].*$"
 
+_SCHEMA_PERCENT = r"^\s*\+?([0-9]+\.?[0-9]*|\.[0-9]+)([eE][+-]?[0-9]+)?\s*%\s*$"
+
 
 @dataclass
 class Reading:
@@ -163,6 +165,33 @@ def read_number(value: Any, due: Number) -> float:
         raise refusal(f"{quoted(value)} is outside the range of this key",
                       f"Give a {sort} {span}, for example {due.example}")  # fmt: skip
     return int(value) if due.whole else float(value)
+
+
+@dataclass(frozen=True)
+class Fraction(Marker):
+    """A share of a whole: a plain number up to 1, or text in per cent."""
+
+    example: str
+    above_low: bool = False
+    """Nothing at all is refused."""
+
+    def read(self, value: Any, info: ValidationInfo) -> float:
+        due = Number(0, 1, f'{self.example}, or "{float(self.example) * 100:g} %"', above_low=self.above_low)
+        if not isinstance(value, str):
+            return read_number(value, due)
+        try:
+            share = units.parse_quantity(value, "fraction")
+        except units.QuantityError as error:
+            raise refusal(f"{quoted(value)} {error.wrong}",
+                          f"Write a plain number without quotes, for example {due.example}") from None  # fmt: skip
+        if not 0 <= share <= 1 or (self.above_low and share == 0):
+            span = "above 0 % and up to 100 %" if self.above_low else "from 0 % to 100 %"
+            raise refusal(f"{quoted(value)} is outside the range of this key", f"Give a share {span}")
+        return share
+
+    def schema(self) -> dict[str, Any]:
+        number = Number(0, 1, self.example, above_low=self.above_low).schema()
+        return {"anyOf": [number, {"type": "string", "pattern": _SCHEMA_PERCENT}]}
 
 
 @dataclass(frozen=True)

@@ -30,6 +30,8 @@ MOST_POWER = 1e6
 NEAREST_TO_BEAM = math.radians(10)
 """A stated field axis nearer to the beam's direction than this is refused: projected, it hardly says anything."""
 DEFAULT_PURITY = 100.0
+LONGEST_OF_COMMON_LASERS = 20e-6
+"""Carbon dioxide lasers reach 11 um; a stated wavelength beyond this is often a mistyped unit. [m]"""
 
 PulseEnergy = Annotated[float, Quantity("energy", "1 pJ", "10 kJ", "10 mJ")]
 PulseDuration = Annotated[float, Quantity("time", "1 fs", "1 s", "8 ns")]
@@ -198,10 +200,14 @@ def _diffraction_rule(line: LineValues, profile: str, criterion: str) -> Iterato
     else:
         least, formula = wavelength / diameter, "λ/d"
     if divergence * scale < least:
+        # A wavelength in um where nm was meant is a thousand times too long, and its limit too wide.
+        mistyped = wavelength > LONGEST_OF_COMMON_LASERS or least > 10 * divergence * scale
+        read_as = f"{wavelength * 1e6:.6g} um"
+        doubt = f"; check the unit of wavelength (read as {read_as}) and of diameter" if mistyped else ""
         yield Fault(line.key("divergence"),
                     f"{divergence * 1e3:.3g} mrad is below the diffraction limit of this beam ({formula})",
                     f"Give the full angle, at least {_rounded_up(least / scale * 1e3)} mrad for this wavelength "
-                    "and diameter; a beam that converges is not computed")  # fmt: skip
+                    f"and diameter; a beam that converges is not computed{doubt}")  # fmt: skip
 
 
 def _rounded_up(value: float) -> str:

@@ -49,6 +49,8 @@ class LineIndex:
     """Line on which an inline table breaks off."""
     too_deep: int | None = None
     """Line on which nesting goes deeper than `DEEPEST`."""
+    repeated: tuple[str, int, int] | None = None
+    """The first key that is given twice, the line on which it is given again, and its first line."""
     too_many: int | None = None
     """Line on which the count of values goes beyond `MOST_VALUES`."""
 
@@ -143,6 +145,9 @@ class _Scan:
         place = (*place, keys[-1])
         self.check_depth(len(place))
         began = self.at
+        first = self.index.spots.get(place)
+        if first is not None and self.index.repeated is None:
+            self.index.repeated = (keys[-1], self.line_of(start), first.line)
         self.value(place, len(place))
         self.note(place, began, self.at, self.line_of(start))
 

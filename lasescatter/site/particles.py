@@ -22,6 +22,7 @@ from lasescatter.scene import (
 from lasescatter.site.contract import NOT_BUILT_REGIONS, NOT_BUILT_SIZES
 from lasescatter.site.faults import Fault, Place, quoted, refusal
 from lasescatter.site.fields import (
+    Fraction,
     Number,
     PlacePoint,
     Quantity,
@@ -65,7 +66,7 @@ class SizesTable(Table):
         "modified gamma: exponent of the decline", 1, default=None
     )
     radius: Radius | None = key("single: the radius of all particles", "0.25 um", default=None)
-    weight: Annotated[float, Number(0, 1, "0.5", above_low=True)] | None = key(
+    weight: Annotated[float, Fraction("0.5", above_low=True)] | None = key(
         "Share of the particles by number, where there are several modes", 0.5, default=None
     )
 
@@ -149,11 +150,14 @@ class RegionTable(Table):
                 yield Fault((spelling,), 'the key does not belong to shape "everywhere"',
                             'Leave it out, or write shape = "box"')  # fmt: skip
         if shape == "box" and seen.good("from_", "to"):
-            flat = [
-                axis for axis, low, high in zip("xyz", seen.get("from_"), seen.get("to"), strict=True) if low >= high
-            ]
+            corners = list(zip("xyz", seen.get("from_"), seen.get("to"), strict=True))
+            swapped = " and ".join(axis for axis, low, high in corners if low > high)
+            flat = " and ".join(axis for axis, low, high in corners if low == high)
+            if swapped:
+                yield Fault(("to",), f"the corners are the wrong way round along {swapped}: from is above to",
+                            f"Swap the two numbers of {swapped}: from takes the lower, to the higher")  # fmt: skip
             if flat:
-                yield Fault(("to",), f"the box has no size along {' and '.join(flat)}",
+                yield Fault(("to",), f"the box has no size along {flat}: from and to are the same there",
                             "Each number of to must be larger than the same number of from")  # fmt: skip
 
     def to_scene(self) -> Region:

@@ -66,14 +66,16 @@ def not_built(table: TableName, key: str) -> NotBuilt | None:
     return next((entry for entry in NOT_BUILT if entry.table == table and entry.key == key), None)
 
 
-def unknown_key(table: TableName, key: str, known: Mapping[TableName, Collection[str]]) -> tuple[str, str]:
+def unknown_key(
+    table: TableName, key: str, known: Mapping[TableName, Collection[str]], value: Any = None
+) -> tuple[str, str]:
     """What is wrong with a key that no field reads, and what would be right.
 
-    `known` holds the keys that are read, by table.
+    `known` holds the keys that are read, by table; `value` is what the key has in the file.
     """
     entry = not_built(table, key)
     if entry:
-        return entry.message, entry.mend
+        return entry.message, entry.advice(value)
     wrong = f"this key is not known in {header(table)}" if table else "this key is not known"
     read, later = list(known.get(table, ())), [entry.key for entry in NOT_BUILT if entry.table == table]
     near = nearest(key, [*read, *later])
@@ -85,7 +87,7 @@ def unknown_key(table: TableName, key: str, known: Mapping[TableName, Collection
     entry = next((entry for entry in NOT_BUILT if entry.key == key), None)
     if entry:
         home = header(entry.table) if entry.table else "the top of the file"
-        return f"{entry.message}; it would belong in {home}", entry.mend
+        return f"{entry.message}; it would belong in {home}", entry.advice(value)
     return wrong, f"Known here are {', '.join(read)}"
 
 
@@ -123,7 +125,7 @@ def with_placeholders(
         stood_for = [name for name in (entry.instead_of if entry else (near,)) if name and name not in result]
         if stood_for:
             del result[key]
-            wrong, mend = unknown_key(table, key, known)
+            wrong, mend = unknown_key(table, key, known, document[key])
             result[stood_for[0]] = Placeholder(key, wrong, mend)
             result.update({name: Placeholder(key, "", "") for name in stood_for[1:]})
     return result

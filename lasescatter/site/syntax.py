@@ -8,6 +8,7 @@ from collections.abc import Mapping
 from typing import Any
 
 from lasescatter.problems import Problem, SiteError
+from lasescatter.site.faults import quoted
 from lasescatter.site.line_index import DEEPEST, MOST_VALUES, LineIndex, index_lines
 
 LARGEST_FILE = 5_000_000
@@ -51,7 +52,11 @@ def parsed(text: str, file: str) -> tuple[dict[str, Any], LineIndex]:
     problem = _beyond_bounds(index)
     if problem is None:
         try:
-            return tomllib.loads(text), index
+            document = tomllib.loads(text)
+            if document:
+                return document, index
+            wrong = "the file holds nothing but remarks" if text.strip() else "the file is empty"
+            problem = Problem("", wrong, "Fill it in; lasescatter new makes a commented file to start from")
         except tomllib.TOMLDecodeError as error:
             problem = _syntax_problem(error, text, index)
         except (ValueError, RecursionError):
@@ -83,10 +88,12 @@ _BARE_VALUE = re.compile(
 )
 _BARE_WORD = re.compile(r"""^\s*(?P<key>[^=#"'\[]+?)\s*=\s*(?P<value>[A-Za-z][^"'#=\[{]*?)\s*(?:#.*)?$""")
 
+_KEEP_ONE = "Keep one of the two and delete the other"
+
 # What the parser says, by how it begins: what is wrong, what would be right.
 _PARSER_SAYS: Mapping[str, tuple[str, str]] = {
-    "Cannot overwrite a value": ("a key on this line is given twice", "Keep one of the two and delete the other"),
-    "Duplicate inline table key": ("a key on this line is given twice", "Keep one of the two and delete the other"),
+    "Cannot overwrite a value": ("a key on this line is given twice", _KEEP_ONE),
+    "Duplicate inline table key": ("a key on this line is given twice", _KEEP_ONE),
     "Cannot declare": ("this table is given twice",
                        "Join the two; a table that may occur several times has double brackets, such as [[beam]]"),
     "Cannot redefine namespace": ("this table is given twice",
@@ -137,6 +144,10 @@ def _syntax_problem(error: tomllib.TOMLDecodeError, text: str, index: LineIndex)
     if word:
         return Problem("", f"the value of {word['key']} is text but has no quotes",
                        f'Write {word["key"]} = "{word["value"]}"', line)  # fmt: skip
+    if said.startswith(("Cannot overwrite", "Duplicate inline")) and index.repeated is not None:
+        key, again, first = index.repeated
+        where = f"first on line {first}" if first != again else "both times on this line"
+        return Problem("", f"{quoted(key)} is given twice in one table, {where}", _KEEP_ONE, again)
     for begins, (wrong, mend) in _PARSER_SAYS.items():
         if said.startswith(begins):
             return Problem("", wrong, mend, line)

@@ -78,7 +78,7 @@ def _in_words(place: Place, error: Mapping[str, Any]) -> tuple[str, str]:
     table, name = names[:-1], names[-1]
     known = known_fields()
     if error["type"] == "extra_forbidden":
-        return unknown_key(table, str(last), known)
+        return unknown_key(table, str(last), known, error["input"])
     field = known.get(table, {}).get(name)
     example = f"{name} = {_toml(field.examples[0])}" if field and field.examples else name
     if error["type"] == "missing":

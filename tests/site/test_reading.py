@@ -368,10 +368,35 @@ def test_files_that_are_too_large(tmp_path):
 
 
 def test_empty_texts():
-    for text in ("", "\n\n", "# only a remark"):
+    for text, wrong in (("", "is empty"), ("\n \n", "is empty"), ("# only a remark", "nothing but remarks")):
         with pytest.raises(SiteError) as caught:
             read_site_text(text)
-        assert {"format", "title", "beam", "observer"} <= {problem.key for problem in caught.value.problems}
+        (problem,) = caught.value.problems
+        assert wrong in problem.wrong and "lasescatter new" in problem.mend
+
+
+def test_what_is_missing_from_a_nearly_empty_text_is_told():
+    with pytest.raises(SiteError) as caught:
+        read_site_text("[air]")
+    assert {"format", "title", "beam", "observer"} <= {problem.key for problem in caught.value.problems}
+
+
+def test_shares_in_per_cent_are_the_same_as_plain_numbers():
+    """Per cent of a stop, of mirrors and of modes: 30 % is 0.3 to the last bit."""
+    text = GOOD["good_continuous"].replace("reflectance = 0.3", 'reflectance = "30 %"')
+    text = text.replace("mirror_reflectance = [0.99]", 'mirror_reflectance = ["99%"]')
+    beam = read_site_text(text).beams[0]
+    assert beam.stop.reflectance == 0.3 and beam.mirror_reflectance == (0.99,)
+    listed = {line.key: (line.written, line.read) for line in read_site_text(text).inputs}
+    assert listed['beam["main beam"].beam_stop.reflectance'] == ("30 %", "0.3")
+    assert listed['beam["main beam"].mirror_reflectance'] == ('["99%"]', "0.99")
+    modes = GOOD["good_pulsed"].replace("weight = 0.4", 'weight = "40 %"').replace("weight = 0.6", 'weight = "60 %"')
+    assert read_site_text(modes).loads == read_site_text(GOOD["good_pulsed"]).loads
+
+
+def test_a_plausible_wavelength_is_not_doubted():
+    problems = problems_with(('"1.0 mrad"', '"0.1 mrad"'))
+    assert problems and all("unit of wavelength" not in problem.mend for problem in problems)
 
 
 def test_many_faults_are_cut_short():
@@ -461,4 +486,6 @@ def test_any_bytes_raise_nothing_else(tmp_path_factory, content):
 def test_the_sample_reads():
     scene = read_site(SAMPLE)
     assert len(scene.observers) == 3 and scene.beams[0].lines[0].power == 2.0
+    # Nobody in the sample counts on turning away: whoever looks on purpose is judged for 10 s.
+    assert {(observer.viewing, observer.durations) for observer in scene.observers} == {("deliberate", (10.0,))}
     assert all(len(line) <= 100 for line in SAMPLE.read_text(encoding="utf-8").split("\n"))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import tomllib
 from pathlib import Path
 
@@ -42,6 +43,7 @@ def test_good_files_satisfy_the_schema(name):
         ('name = "main beam"\n', ""),
         ("position = [4, 1.5, 1.6]", "position = [4, 1.5]"),
         ("reflectance = 0.3", "reflectance = 3"),
+        ("reflectance = 0.3", 'reflectance = "0.3"'),
         ("geometric_sd = 1.6", "geometric_sd = 1"),
         ('"lasescatter site 1"', '"lasescatter site 2"'),
         ('shape = "lognormal"', 'shape = "table"'),
@@ -76,6 +78,11 @@ def test_the_examples_satisfy_their_own_key():
                 assert not list(jsonschema.Draft202012Validator(field).iter_errors(example)), (name, key, example)
 
 
+def test_shares_in_per_cent_satisfy_the_schema():
+    text = GOOD["good_continuous"].replace("reflectance = 0.3", 'reflectance = "30 %"')
+    VALIDATOR.validate(tomllib.loads(text.replace("mirror_reflectance = [0.99]", 'mirror_reflectance = ["99.5%"]')))
+
+
 def test_the_schema_knows_no_null():
     assert "'null'" not in str(site_schema())
 
@@ -93,6 +100,20 @@ def test_starters_are_commented_and_narrow(name):
     explained = {line.split(" = ")[0] for line in lines if " = " in line and " # " in line}
     keys = {line.split(" = ")[0] for line in lines if " = " in line and not line.startswith("#")}
     assert keys - explained <= PLAIN
+
+
+@pytest.mark.parametrize("name", STARTERS)
+def test_all_that_a_user_must_replace_begins_with_example(name):
+    """Whoever leaves any of it as it is leaves a mark on which the verdict depends."""
+    text = starter_text(name)
+    scene = read_site_text(text)
+    texts = [scene.title, scene.reference, scene.prepared_by, *(reason for _, reason in scene.not_judged)]
+    texts += [words for limit in scene.limits for words in (limit.source, limit.entered_by)]
+    assert len(texts) >= 9 and all(words.startswith("EXAMPLE: ") for words in texts), texts
+    # What stands ready behind a # as well; and the top of the file says what the word means.
+    held_back = re.findall(r'^# (?:"[a-z ]+"|steady_by) = "([^"]*)"', text, re.MULTILINE)
+    assert all(words.startswith("EXAMPLE: ") for words in held_back)
+    assert "begins with the word EXAMPLE" in text.partition("format =")[0]
 
 
 def test_there_is_no_other_starter():
