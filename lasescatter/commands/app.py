@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import sys
+from collections.abc import Callable
 from pathlib import Path
 from typing import Annotated
 
 import typer
 
 import lasescatter
-from lasescatter.problems import SiteError
+from lasescatter.problems import Problem, SiteError
 
 app = typer.Typer(
     add_completion=False,
@@ -20,8 +21,27 @@ app = typer.Typer(
     epilog="Verdicts hold only for the site as described. The laser safety officer decides.",
 )
 
-SiteFile = Annotated[Path, typer.Argument(metavar="FILE", help="Site file (TOML); - reads standard input.")]
-Quiet = Annotated[bool, typer.Option("--quiet", "-q", help="Print nothing but errors.")]
+
+def _path_of(name: str, mend: str) -> Callable[[str], Path]:
+    """A reader of paths: an empty one is refused, where the path library would take it as this folder."""
+
+    def read(text: str | Path) -> Path:
+        if not str(text):
+            raise SiteError([Problem(name, "the name is empty", mend)], "command line")
+        return Path(text)
+
+    return read
+
+
+_file = _path_of("FILE", "Give the path of a site file")
+_folder = _path_of("--out", "Give a folder, or leave the option out for this folder")
+
+SiteFile = Annotated[
+    Path, typer.Argument(metavar="FILE", parser=_file, help="Site file (TOML); - reads standard input.")
+]
+Quiet = Annotated[
+    bool, typer.Option("--quiet", "-q", help="Print nothing but errors, and how many earlier files were replaced.")
+]
 AsJson = Annotated[bool, typer.Option("--json", help="Print JSON to standard output.")]
 
 
@@ -44,7 +64,8 @@ def _common(
 def assess_command(
     file: SiteFile,
     out: Annotated[
-        Path, typer.Option("--out", metavar="DIR", help="Folder for the files; made if it is missing.")
+        Path,
+        typer.Option("--out", metavar="DIR", parser=_folder, help="Folder for the files; made if it is missing."),
     ] = Path("."),
     page_size: Annotated[str, typer.Option("--page-size", help="A4 or Letter.")] = "A4",
     verdict_exit: Annotated[
@@ -70,7 +91,9 @@ def check_command(file: SiteFile, as_json: AsJson = False, quiet: Quiet = False)
 
 @app.command("new")
 def new_command(
-    file: Annotated[Path, typer.Argument(metavar="FILE", help="Site file to write; it must not exist yet.")],
+    file: Annotated[
+        Path, typer.Argument(metavar="FILE", parser=_file, help="Site file to write; it must not exist yet.")
+    ],
     starter: Annotated[str, typer.Option("--starter", metavar="NAME", help="indoor, outdoor or pulsed.")] = "indoor",
     quiet: Quiet = False,
 ) -> None:
@@ -96,14 +119,18 @@ def main() -> None:
     try:
         app(prog_name="lasescatter")
     except SiteError as fault:
-        typer.echo(str(fault), err=True)
+        from lasescatter.report.typography import plain
+
+        typer.echo(str(SiteError(fault.problems, plain(fault.file))), err=True)
         sys.exit(2)
     except BrokenPipeError:
         # Whoever read our output has gone; there is nobody to tell.
         sys.stderr.close()
         sys.exit(1)
     except OSError as fault:
-        typer.echo(f"{fault.filename or 'file'}: {fault.strerror or fault}", err=True)
+        from lasescatter.report.typography import plain
+
+        typer.echo(f"{plain(str(fault.filename or 'file'))}: {plain(fault.strerror or str(fault))}", err=True)
         sys.exit(1)
 
 

@@ -3,17 +3,18 @@
 from __future__ import annotations
 
 import os
-import shutil
-import tempfile
 from datetime import UTC, datetime
 from pathlib import Path
 
 import typer
 
 from lasescatter.assessment.outcome import Assessment
+from lasescatter.commands.delivery import Delivery, delivery_to
 from lasescatter.commands.sources import STANDARD_INPUT, site_from
+from lasescatter.commands.steps import Steps
 from lasescatter.limits.verdict import ABOVE, NOT_ESTABLISHED
 from lasescatter.problems import Problem, SiteError
+from lasescatter.report.typography import plain
 
 PAGE_SIZES = ("A4", "Letter")
 EXIT_ABOVE, EXIT_NOT_ESTABLISHED = 3, 4
@@ -31,17 +32,17 @@ def assess_site(file: Path, out: Path, page_size: str, verdict_exit: bool, as_js
         raise SiteError([problem], "command line")
     scene = site_from(file)
     made_at = _time_stamp()
-    errors = Console(stderr=True, highlight=False)
-    if quiet or not errors.is_terminal:
-        assessment = assess(scene, made_at)
-    else:
-        with errors.status("reading") as status:
-            assessment = assess(scene, made_at, lambda step: status.update(step))
-    body = record(assessment)
-    assessment = with_digest(assessment, body["digest"])
-    stem = "site" if file == STANDARD_INPUT else file.stem
-    text = record_text(body)
-    written, replaced = _write_all(assessment, text, out, stem, page_size, made_at)
+    from_input = file == STANDARD_INPUT
+    stem = "site" if from_input else file.stem
+    # The folder is opened first: nobody should wait for a result that then has nowhere to go.
+    with delivery_to(out) as delivery, Steps(Console(stderr=True, highlight=False), quiet) as steps:
+        delivery.refuse_taken(_names(stem), None if from_input else file)
+        assessment = assess(scene, made_at, steps.begin)
+        body = record(assessment)
+        assessment = with_digest(assessment, body["digest"])
+        text = record_text(body)
+        names = _make_all(assessment, text, delivery, stem, page_size, made_at, steps)
+        written, replaced = delivery.put_in_place(names)
     if as_json:
         typer.echo(text, nl=False)
     elif not quiet:
@@ -50,9 +51,10 @@ def assess_site(file: Path, out: Path, page_size: str, verdict_exit: bool, as_js
         print_summary(assessment, Console(highlight=False, markup=False))
         typer.echo("")
         for path in written:
-            typer.echo(f"wrote {path}{' (replaced)' if path in replaced else ''}")
-    elif replaced:
-        typer.echo(f"replaced {len(replaced)} files of an earlier run in {out}", err=True)
+            typer.echo(f"wrote {plain(str(path))}{' (replaced)' if path in replaced else ''}")
+    if replaced and (as_json or quiet):
+        files = "1 file" if len(replaced) == 1 else f"{len(replaced)} files"
+        typer.echo(f"replaced {files} of an earlier run in {plain(str(out))}", err=True)
     return _status(assessment) if verdict_exit else 0
 
 
@@ -62,36 +64,30 @@ def _status(assessment: Assessment) -> int:
     return EXIT_NOT_ESTABLISHED if assessment.verdict == NOT_ESTABLISHED else 0
 
 
-def _write_all(
-    assessment: Assessment, record_text: str, out: Path, stem: str, page_size: str, made_at: datetime
-) -> tuple[list[Path], set[Path]]:
-    """Make every file in a folder of its own beside the target, then move them into place."""
+def _names(stem: str) -> list[str]:
+    return [f"{stem}.pdf", f"{stem}.json", f"{stem}.csv"]
+
+
+def _make_all(
+    assessment: Assessment, record_text: str, delivery: Delivery, stem: str, page_size: str, made_at: datetime,
+    steps: Steps,
+) -> list[str]:  # fmt: skip
+    """Make every file. Returns their names."""
     from lasescatter.report.csv_table import write_csv
     from lasescatter.report.document import write_pdf
     from lasescatter.report.figures import write_figures
 
-    _make_folder(out)
-    workshop = Path(tempfile.mkdtemp(prefix=".lasescatter-", dir=out))
-    try:
-        write_pdf(assessment, workshop / f"{stem}.pdf", page_size, made_at)
-        (workshop / f"{stem}.json").write_text(record_text, encoding="utf-8", errors="surrogatepass")
-        write_csv(assessment, workshop / f"{stem}.csv")
-        figures = write_figures(assessment, workshop, stem)
-        names = [f"{stem}.pdf", f"{stem}.json", f"{stem}.csv", *(figure.name for figure in figures)]
-        written = [out / name for name in names]
-        replaced = {path for path in written if path.exists()}
-        for name, path in zip(names, written, strict=True):
-            os.replace(workshop / name, path)
-    finally:
-        shutil.rmtree(workshop, ignore_errors=True)
-    return written, replaced
-
-
-def _make_folder(out: Path) -> None:
-    try:
-        out.mkdir(parents=True, exist_ok=True)
-    except (FileExistsError, NotADirectoryError) as fault:
-        raise SiteError([Problem("--out", f"{out} is a file", "Give a folder")], "command line") from fault
+    pdf, record, table = _names(stem)
+    steps.begin("report")
+    delivery.make(pdf, lambda path: write_pdf(assessment, path, page_size, made_at))
+    steps.begin("record, table and figures")
+    delivery.make(record, lambda path: path.write_text(record_text, encoding="utf-8", errors="surrogatepass"))
+    delivery.make(table, lambda path: write_csv(assessment, path))
+    figures: list[Path] = []
+    delivery.make_in_folder(
+        delivery.out / f"{stem}_*", lambda folder: figures.extend(write_figures(assessment, folder, stem))
+    )
+    return [pdf, record, table, *(figure.name for figure in figures)]
 
 
 def _time_stamp() -> datetime:

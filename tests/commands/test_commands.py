@@ -3,24 +3,11 @@
 from __future__ import annotations
 
 import json
-import os
 import subprocess
 import sys
-from pathlib import Path
 
 import pytest
-
-ROOT = Path(__file__).parents[2]
-SAMPLE = ROOT / "sample_sites" / "hazed_test_bay.toml"
-
-
-def run(*arguments, cwd=None, stdin=None, **environment):
-    changed = {**os.environ, "SOURCE_DATE_EPOCH": "1767355200", "COLUMNS": "80", "NO_COLOR": "1", **environment}
-    changed["PYTHONPATH"] = str(ROOT)
-    return subprocess.run(
-        [sys.executable, "-m", "lasescatter", *map(str, arguments)],
-        capture_output=True, cwd=cwd, input=stdin, env=changed, timeout=120, encoding="utf-8", check=False,
-    )  # fmt: skip
+from commands.calls import ROOT, SAMPLE, run
 
 
 @pytest.fixture(scope="module")
@@ -71,7 +58,12 @@ def test_second_run_mentions_what_it_replaced(tmp_path):
     again = run("assess", SAMPLE, "--out", tmp_path)
     assert "(replaced)" in again.stdout
     quiet = run("assess", SAMPLE, "--out", tmp_path, "--quiet")
-    assert quiet.stdout == "" and "replaced" in quiet.stderr
+    written = list(tmp_path.iterdir())
+    assert quiet.stdout == "" and quiet.stderr == f"replaced {len(written)} files of an earlier run in {tmp_path}\n"
+    for path in written[1:]:
+        path.unlink()
+    as_json = run("assess", SAMPLE, "--out", tmp_path, "--json")
+    assert json.loads(as_json.stdout) and as_json.stderr == f"replaced 1 file of an earlier run in {tmp_path}\n"
 
 
 def test_verdict_exit(tmp_path):
@@ -122,6 +114,11 @@ def test_bad_input_is_one_message_status_2_and_nothing_written(tmp_path):
         (["banana"], "No such command"),
         (["assess", SAMPLE, "--banana"], "No such option"),
         (["check", "."], "."),
+        (["check", ""], "FILE: the name is empty"),
+        (["assess", ""], "FILE: the name is empty"),
+        (["assess", SAMPLE, "--out", ""], "--out: the name is empty"),
+        (["new", ""], "FILE: the name is empty"),
+        (["new", "."], ". is a folder"),
     ],
 )
 def test_bad_calls_say_what_is_right(arguments, words, tmp_path):
