@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 import lasescatter
-from lasescatter.assessment.components import DRY_AIR, SIZE_AVERAGE, SiteOptics
+from lasescatter.assessment.components import DRY_AIR, SIZE_AVERAGE, SiteOptics, is_vouched
 from lasescatter.assessment.detector import received
 from lasescatter.assessment.field import LineField, distance_to, line_field
 from lasescatter.assessment.handcheck import hand_checks, stop_checks
@@ -262,9 +262,9 @@ def _line_exposure(field: LineField, index: int, power: float) -> LineExposure:
 
 def _assumptions(scene: Scene, wavelengths: set[float]) -> tuple[Assumption, ...]:
     found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, direct_light.NAKED_EYE, DRY_AIR]
-    if any(load.steady_by is None for load in scene.loads):
+    if not all(is_vouched(load) for load in scene.loads):
         found.append(WORST_FRACTION)
-    if any(load.steady_by is not None for load in scene.loads):
+    if any(is_vouched(load) for load in scene.loads):
         found.append(loads.STEADY)
     if any(observer.reach < USUAL_REACH for observer in scene.observers):
         found.append(first_order.SHORT_REACH)

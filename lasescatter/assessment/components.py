@@ -8,6 +8,7 @@ import numpy as np
 
 from lasescatter.assessment.outcome import ComponentSummary
 from lasescatter.assumptions import Assumption
+from lasescatter.limits.judge import is_placeholder
 from lasescatter.medium.load import Concentration, concentration
 from lasescatter.medium.mixture import Component, Mixture
 from lasescatter.medium.profiles import Unbounded, profile_of
@@ -39,6 +40,11 @@ CURVE_ANGLES = np.radians(
 )
 
 ROUNDING = 1e-12
+
+
+def is_vouched(load: Load) -> bool:
+    """Whether somebody vouches that a load neither thins nor clears; a placeholder is nobody."""
+    return load.steady_by is not None and not is_placeholder(load.steady_by)
 
 
 class SiteOptics:
@@ -88,7 +94,7 @@ class SiteOptics:
                     amount.scattering(optics),
                     optics.matrix,
                     profile_of(load.region),
-                    load.steady_by is not None,
+                    is_vouched(load),
                     optics.error_f11,
                 )
             )

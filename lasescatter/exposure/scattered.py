@@ -42,8 +42,8 @@ NO_SHADOWS = Assumption(
 STAYS_THERE = Assumption(
     name="Scattered and stop light are computed at the observer's stated position",
     direction="low",
-    size="the printed ratio holds there; its upper bound, which decides below, takes every element of the beam as near and "
-    "at the worst angle that the head can bring it, and the stop as seen square from r − reach",
+    size="the printed ratio holds there; its upper bound, which decides below, takes every element of the beam as near "
+    "and at the worst angle that the head can bring it, and the stop as seen square from r − reach",
     source="inverse squares",
 )
 SPECKLE = Assumption(

@@ -497,3 +497,13 @@ def test_optical_density_of_a_hazard_is_that_of_the_sum():
     assert thermal.ratio > 1
     assert thermal.optical_density == pytest.approx(math.log10(thermal.ratio), rel=1e-12)
     assert thermal.optical_density > max(c.optical_density for c in found.comparisons)
+
+
+def test_a_role_that_vouches_is_somebody():
+    thick = LoadReading("extinction", 2.0, 532e-9)
+
+    def fraction(role):
+        return only(bay(loads=(haze(reading=thick, steady_by=role),))).lines[0].load_fraction
+
+    assert fraction("duty laser safety officer") == 1.0
+    assert fraction("EXAMPLE: role") == fraction(None) < 1.0
