@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import math
+import unicodedata
 from pathlib import Path
 
 from lasescatter.assessment.outcome import Assessment, LineExposure, ObserverOutcome
@@ -16,9 +17,9 @@ OBSERVER_HEADS = (
 )  # fmt: skip
 COMPARISON_HEADS = (
     "limit", "beam", "line", "wavelength_m", "hazard", "tissue", "mechanism", "quantity", "unit", "duration_s",
-    "time_s", "exposure_in_unit", "scattered_in_unit", "higher_orders_allowance_in_unit",
+    "counted_s", "time_s", "exposure_in_unit", "scattered_in_unit", "higher_orders_allowance_in_unit",
     "stop_in_unit", "direct_in_unit", "limit_in_unit", "ratio",
-    "ratio_low", "ratio_high", "optical_density", "pulses", "verdict", "note",
+    "ratio_low", "ratio_high", "allowances_in_unit", "optical_density", "pulses", "verdict", "note",
 )  # fmt: skip
 HEADS = OBSERVER_HEADS + COMPARISON_HEADS
 
@@ -26,14 +27,16 @@ HEADS = OBSERVER_HEADS + COMPARISON_HEADS
 ORIGINS = ("scattered", "allowance for higher orders", "stop", "direct")
 
 # A spreadsheet takes a cell that starts so for a formula and would run it.
-_FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
+_FORMULA_STARTS = ("=", "+", "-", "@")
+_BREAKS = "\t\n\r"
 
 
 def write_csv(assessment: Assessment, path: Path) -> None:
     """Write the table (UTF-8, comma, CRLF).
 
     An observer without any comparison has one row with those columns empty. A text that a spreadsheet would
-    take for a formula is written with an apostrophe before it.
+    take for a formula is written with an apostrophe before it; control characters are left out. `allowances_in_unit`
+    names what the upper bound adds: "cause: amount; cause: amount".
     """
     with path.open("w", encoding="utf-8", newline="", errors="backslashreplace") as target:
         writer = csv.writer(target)
@@ -48,8 +51,9 @@ def write_csv(assessment: Assessment, path: Path) -> None:
 
 
 def text_cell(text: str) -> str:
-    """A text that no spreadsheet runs."""
-    return f"'{text}" if text.startswith(_FORMULA_STARTS) else text
+    """A text that no spreadsheet runs, without control characters."""
+    text = "".join(" " if c in _BREAKS else c for c in text if c in _BREAKS or unicodedata.category(c) != "Cc")
+    return f"'{text}" if text.lstrip().startswith(_FORMULA_STARTS) else text
 
 
 def _number(value: float | None) -> str:
@@ -81,9 +85,10 @@ def _comparison_cells(entry: Comparison, line: LineExposure | None) -> list[str]
     by_origin = [_number(origins.get(word)) for word in ORIGINS]
     return [
         text_cell(entry.limit), text_cell(entry.beam), text_cell(entry.line), _number(wavelength), entry.hazard,
-        entry.tissue, entry.mechanism, entry.quantity, entry.unit, _number(entry.duration), _number(entry.time),
+        entry.tissue, entry.mechanism, entry.quantity, entry.unit, _number(entry.duration), _number(entry.counted), _number(entry.time),
         _number(entry.exposure), *by_origin,
         _number(entry.limit_value), _number(entry.ratio), _number(entry.ratio_low), _number(entry.ratio_high),
+        "; ".join(f"{cause}: {_number(amount)}" for cause, amount in entry.allowances),
         _number(entry.optical_density), "" if entry.pulses is None else str(entry.pulses), entry.verdict,
         text_cell(entry.note),
     ]  # fmt: skip

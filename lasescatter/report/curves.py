@@ -1,4 +1,4 @@
-"""The phase functions: how much light each component sends at which scattering angle, and its polarisation."""
+"""The phase functions: how much light each component sends at which scattering angle, and its polarization."""
 
 from __future__ import annotations
 
@@ -14,7 +14,7 @@ if TYPE_CHECKING:
 
 SHEET = 174.0
 _LEFT, _WIDTH = 17.0, 153.0
-_UPPER, _LOWER = 72.0, 34.0
+_UPPER, _LOWER = 50.0, 25.0
 _ROW = 4.1
 _COLUMNS = 2
 _MOST_CURVES = 16
@@ -54,7 +54,7 @@ def draw_phase(assessment: Assessment) -> Figure:
     _dress(lower, "−F12/F11", labelled=True)
     lower.set_xlabel("scattering angle [deg]: 0 straight on, 180 straight back", fontsize=7, labelpad=1.5, color=DARK)
     lower.axhline(0, color=DARK, linewidth=0.4)
-    upper.set_title("Scattering by direction, and its polarisation", fontsize=7.6, fontweight="bold", loc="left", pad=4)
+    upper.set_title("Scattering by direction, and its polarization", fontsize=7.6, fontweight="bold", loc="left", pad=4)
     _key(figure, shown, len(assessment.components) - len(shown), below - 12.0)
     return figure
 
@@ -103,7 +103,7 @@ def _key(figure: Figure, shown: tuple[ComponentSummary, ...], hidden: int, top: 
         axes.plot(
             [x, x + 5, x + 10], [y] * 3, color=ink, linestyle=dash, linewidth=1.1, markevery=[1], **_marks(sign, ink)
         )
-        write(axes, x + 12, y, cut(f"{entry.name}, {wavelength(entry.wavelength)}", 6.3, column - 14), fontsize=6.3,
+        write(axes, x + 12, y, cut(f"{wavelength(entry.wavelength)}, {entry.name}", 6.3, column - 14), fontsize=6.3,
               va="center")  # fmt: skip
     if hidden:
         write(axes, _LEFT, top - (rows + 0.5) * _ROW, f"{hidden} more in the tables only", fontsize=6.3, va="center")

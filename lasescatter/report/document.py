@@ -77,7 +77,7 @@ def pdf_bytes(assessment: Assessment, page_size: str = "A4", made_at: datetime |
 
 def _story(assessment: Assessment, moment: datetime, sizes: dict[str, tuple[float, float]]) -> list[Flowable]:
     """Everything printed, in order."""
-    from lasescatter.report import grounds, handcheck, particles, results, signoff
+    from lasescatter.report import comparisons, grounds, handcheck, particles, results, signoff
     from lasescatter.report.front import front
     from lasescatter.report.page_frame import SectionHead
     from lasescatter.report.site_pages import site_section
@@ -93,8 +93,8 @@ def _story(assessment: Assessment, moment: datetime, sizes: dict[str, tuple[floa
         "drawings": site_section(assessment, sizes),
         "beam": results.beam_section(assessment),
         "exposures": results.exposure_section(assessment),
-        "comparisons": results.comparison_section(assessment),
-        "contributions": results.contribution_section(assessment),
+        "comparisons": comparisons.comparison_section(assessment),
+        "contributions": comparisons.contribution_section(assessment),
         "particles": particles.component_section(assessment, sizes.get("phase")) + particles.running_tables(assessment),
         "hand": handcheck.equations() + handcheck.blocks(assessment),
         "inputs": grounds.input_section(assessment),
@@ -105,7 +105,7 @@ def _story(assessment: Assessment, moment: datetime, sizes: dict[str, tuple[floa
     }
     story = front(assessment, moment, numbers)
     for name, body in bodies.items():
-        if name in ("drawings", "hand", "inputs", "review"):
+        if name in ("drawings", "review"):
             story.append(PageBreak())
         story += [CondPageBreak(_LEAST_ROOM), head(name), *body]
     return story

@@ -22,6 +22,7 @@ from lasescatter.report.ink import (
     write,
 )
 from lasescatter.report.labels import Rect, Room
+from lasescatter.report.naming import beam_letter
 from lasescatter.report.quantities import trimmed
 from lasescatter.report.site_view import Kind, Point, View, scale_words, ticks, views
 from lasescatter.report.typography import printable
@@ -40,16 +41,6 @@ _NAME_LENGTH = 28
 _LABEL_SHARES = (0.5, 0.36, 0.64, 0.25, 0.75)
 _SQUARE_ON = 0.08
 """Share in the paper below which a leg counts as square to it."""
-
-
-def beam_letter(place: int) -> str:
-    """A, B … Z, AA, AB …"""
-    letters = ""
-    place += 1
-    while place:
-        place, rest = divmod(place - 1, 26)
-        letters = chr(ord("A") + rest) + letters
-    return letters
 
 
 def draw_site(assessment: Assessment, kind: Kind) -> Figure:
@@ -100,8 +91,8 @@ def _frame(axes: Axes, view: View, unit: LengthUnit) -> None:
     axes.set_axisbelow(True)
     name = view.kind.capitalize()
     write(axes, 0, view.height + 1.6, f"{name}, {view.seen}", fontsize=7.6, fontweight="bold")
-    write(axes, view.width, view.height + 1.6, f"{scale_words(view.scale)} at a printed width of {SHEET:.0f} mm",
-          fontsize=7, ha="right")  # fmt: skip
+    told = f"{scale_words(view.scale)} at a printed width of the whole figure of {SHEET:.0f} mm"
+    write(axes, view.width, view.height + 1.6, told, fontsize=7, ha="right")  # fmt: skip
 
 
 def _scale_bar(axes: Axes, view: View, unit: LengthUnit, y: float) -> None:
@@ -116,7 +107,7 @@ def _scale_bar(axes: Axes, view: View, unit: LengthUnit, y: float) -> None:
                           facecolor=DARK if i % 2 == 0 else "white", edgecolor=DARK, linewidth=0.5)  # fmt: skip
     write(axes, _LEFT, y - 0.8, "0", fontsize=6.3, ha="center", va="top")
     write(axes, _LEFT + length, y - 0.8, f"{trimmed(size)} {unit.name}", fontsize=6.3, ha="center", va="top")
-    write(axes, SHEET - 3, y + 0.6, f"scale {scale_words(view.scale)}; everything but the signs is to scale",
+    write(axes, SHEET - 3, y + 0.6, f"scale {scale_words(view.scale)}; symbols are not to scale",
           fontsize=6.3, ha="right", va="center")  # fmt: skip
 
 
@@ -301,8 +292,9 @@ def _candidates(assessment: Assessment, group: list[int]) -> list[tuple[str, boo
 def _beam_entries(assessment: Assessment) -> list[Entry]:
     entries = []
     for place, beam in enumerate(assessment.scene.beams):
+        # The name last: what is too long is cut at its end.
         lines = ", ".join(f"{trimmed(line.wavelength * 1e9)} nm" for line in beam.lines)
-        text = f"{beam_letter(place)}  {beam.name}, {lines}"
+        text = f"{beam_letter(place)}  {lines}, {beam.name}"
         entries.append(Entry("beam", text, BEAM_INKS[place % len(BEAM_INKS)], BEAM_DASHES[place % len(BEAM_DASHES)]))
     return entries
 

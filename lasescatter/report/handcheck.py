@@ -1,4 +1,4 @@
-"""The hand check: equations, symbols, and one block of numbers per observer, leg and component.
+"""The hand check: equations, symbols, and one block of numbers per observer, leg and component, and per stop.
 
 The blocks are set in a fixed-width face as `label = value unit` items, so that a person with a pocket
 calculator and a program that reads the page's text both find every number.
@@ -12,14 +12,21 @@ from typing import Any
 
 from reportlab.platypus import Flowable
 
-from lasescatter.assessment.outcome import Assessment, HandCheck
+from lasescatter.assessment.outcome import Assessment, HandCheck, ObserverOutcome, StopCheck
+from lasescatter.report.naming import leg_sign, line_sign
 from lasescatter.report.quantities import degrees, digits, line_label
 from lasescatter.report.results import observer_head
 from lasescatter.report.styles import MM, heads, paragraph, paragraph_styles, ruled
-from lasescatter.report.typography import BOLD, fitted, printable
+from lasescatter.report.typography import BOLD, fitted, printable, shortened
+from lasescatter.scene import Scene, Vector
 
 DIGITS = 5
 _COLUMNS = 4
+MOST_BLOCKS = 60
+"""More would bury the reader: then only what matters is printed, the rest stays in the record."""
+SHARE_PRINTED = 0.01
+"""Of the observer's light; blocks above it are printed in any case."""
+_COMPONENT_NAME = 40
 _CELL = 29
 """Characters per item, so that four items fill the text column."""
 
@@ -33,20 +40,22 @@ EQUATIONS = (
 
 WORKING = (
     "E_hand = (P / b) × beta_sca × I × T_beam × T_sight",
-    "I = dB11&nbsp;&nbsp; for unpolarised light (q = 0)",
+    "I = dB11&nbsp;&nbsp; for unpolarized light (q = 0)",
     "I = dB11 + q × cos(2 phi) × dB12&nbsp;&nbsp; where the axis is known",
     "I = dB11 + dB12&nbsp;&nbsp; for the worst axis; dB12 is then taken from |F12|",
     "T_beam = exp(−tau_beam),&nbsp;&nbsp; T_sight = exp(−tau_sight)",
+    "Stop:&nbsp;&nbsp; E_compared = rho × P × cos / (π r²)&nbsp;&nbsp; (Lambert's law),&nbsp;&nbsp; "
+    "E_stated = E_compared × exp(−tau)",
 )
 
 SYMBOLS = (
     ("P", "W", "power at the start of the leg: losses at mirrors taken off, extinction not; mean over time for pulses"),
-    ("b", "m", "distance of the observer from the line of the leg, square to it"),
+    ("b", "m", "distance of the observer from the line of the leg, square to it; never less than the beam's radius"),
     ("s0", "m", "place on that line nearest to the observer, from the start of the leg; below 0 behind the start"),
     ("length", "m", "of the leg; “no end” where the beam leaves the site"),
     ("theta1, theta2", "deg", "scattering angles at the ends of the part of the leg in the component's region"),
     ("beta_sca", "1/m", "scattering coefficient of the component where it is"),
-    ("q", "", "Stokes Q/I along the electric-field axis: 0 for unpolarised light, near 1 for linear light"),
+    ("q", "", "Stokes Q/I along the electric-field axis: 0 for unpolarized light, near 1 for linear light"),
     ("phi", "deg", "angle φ about the beam from the electric-field axis to the plane of leg and observer"),
     ("dB11, dB12", "", "B(theta2) − B(theta1), with B11 = ∫ F11/(4π) dθ and B12 = ∫ F12/(4π) dθ"),
     ("I", "", "what multiplies (P/b) beta_sca"),
@@ -56,6 +65,10 @@ SYMBOLS = (
     ("T_beam, T_sight", "", "transmittances that go with them"),
     ("E_hand", "W/m²", "E3 by hand from this block"),
     ("E_program", "W/m²", "what the program found by integrating E2 along this leg, load as stated"),
+    ("rho", "", "reflectance of the stop"),
+    ("r, cos", "m, –", "distance from the lit spot, and cosine between the stop's normal and the way to the observer"),
+    ("tau, T", "", "optical thickness and transmittance from the beam's start by the stop to the observer"),
+    ("E_stated, E_compared", "W/m²", "the stop's light with the load's extinction, and without, as limits meet it"),
 )  # fmt: skip
 
 
@@ -66,7 +79,8 @@ def equations() -> list[Any]:
             "A reviewer can redo any block below with a pocket calculator. E2 is what the program integrates; E3 "
             "is its closed form where extinction along the way hardly changes, which the block applies with the "
             "transmittance to one element, at theta_mid. Where hand and program differ by more than 5 %, the "
-            "block says which factor is responsible."
+            "block says which factor is responsible. The sum of E_program over an observer's blocks is "
+            "“Scattered, stated” in the exposure of that observer; the sum of E_stated is “Stop light, stated”."
         )
     ]
     story += [paragraph(f"<b>{name}</b>&nbsp;&nbsp;&nbsp; {text}", "equation") for name, text in EQUATIONS]
@@ -86,17 +100,67 @@ def equations() -> list[Any]:
 
 
 def blocks(assessment: Assessment) -> list[Any]:
-    """The numbers, observer by observer."""
+    """The numbers, observer by observer; the number of a block counts every row of the record."""
+    scene = assessment.scene
+    total = sum(len(observer.hand_checks) + len(observer.stop_checks) for observer in assessment.observers)
     story: list[Any] = []
-    count = 0
+    if total > MOST_BLOCKS:
+        story.append(
+            paragraph(
+                f"The record holds {total} hand and stop checks. Printed are those that give more than 1 % of the "
+                "scattered and stop light of their observer; their numbers count all."
+            )
+        )
+    scattered = stops = 0
     for number, observer in enumerate(assessment.observers, start=1):
         story.append(observer_head(number, observer))
         if not observer.hand_checks:
             story.append(paragraph("No leg sends scattered light here.", "note"))
+        least = _least(observer) if total > MOST_BLOCKS else -1.0
+        hidden = []
         for check in observer.hand_checks:
-            count += 1
-            story.append(HandCheckBlock(count, number, check))
+            scattered += 1
+            if check.program > least:
+                title = f"Hand check {scattered}: observer {number}, {leg_title(scene, check)}"
+                story.append(CheckBlock(title, _hand_lines(check, leg_distance(scene, observer.position, check))))
+            else:
+                hidden.append(check.program)
+        for stop in observer.stop_checks:
+            stops += 1
+            if stop.stated > least:
+                title = f"Stop check {stops}: observer {number}, stop of {line_sign(scene, stop.beam, stop.line)}"
+                story.append(CheckBlock(f"{title} – {line_label(stop.beam, stop.line)}", _item_lines(stop_items(stop))))
+            else:
+                hidden.append(stop.stated)
+        if hidden:
+            left = f"Not printed: {len(hidden)} of {len(observer.hand_checks) + len(observer.stop_checks)}, together "
+            story.append(paragraph(f"{left}{digits(sum(hidden))} W/m².", "note"))
     return story
+
+
+def _least(observer: ObserverOutcome) -> float:
+    return SHARE_PRINTED * (observer.total("scattered") + observer.total("diffuse"))
+
+
+def leg_title(scene: Scene, check: HandCheck) -> str:
+    """Leg, wavelength and component first; the beam's name, which may be cut, last."""
+    component = shortened(printable(check.component), _COMPONENT_NAME)
+    sign = line_sign(scene, check.beam, check.line).partition(", ")[2]
+    parts = (f"leg {leg_sign(scene, check.beam, check.leg).removeprefix('leg ')}", sign, f"component {component}")
+    return f"{', '.join(part for part in parts if part)} – {line_label(check.beam, check.line)}"
+
+
+def leg_distance(scene: Scene, position: Vector, check: HandCheck) -> float | None:
+    """Distance of a point from the line of the leg; None where the site has no such leg. [m]"""
+    beam = next((beam for beam in scene.beams if beam.name == check.beam), None)
+    if beam is None or not 0 < check.leg < len(beam.points):
+        return None
+    start, end = beam.points[check.leg - 1], beam.points[check.leg]
+    along = [b - a for a, b in zip(start, end, strict=True)]
+    towards = [b - a for a, b in zip(start, position, strict=True)]
+    size = math.hypot(*along)
+    share = sum(a * b for a, b in zip(along, towards, strict=True)) / size**2
+    return math.dist(towards, [share * part for part in along])
 
 
 def items(check: HandCheck) -> list[tuple[str, str, str]]:
@@ -131,26 +195,51 @@ def items(check: HandCheck) -> list[tuple[str, str, str]]:
     ]
 
 
-def _item_lines(check: HandCheck) -> list[str]:
-    told = [f"{label} = {value}{' ' + unit if unit else ''}" for label, value, unit in items(check)]
+def stop_items(check: StopCheck) -> list[tuple[str, str, str]]:
+    """The same of a stop."""
+
+    def number(value: float) -> str:
+        return digits(value, DIGITS)
+
+    return [
+        ("P", number(check.power), "W"),
+        ("rho", number(check.reflectance), ""),
+        ("r", number(check.r), "m"),
+        ("cos", number(check.cosine), ""),
+        ("tau", number(check.tau), ""),
+        ("T", number(math.exp(-check.tau)), ""),
+        ("E_stated", number(check.stated), "W/m²"),
+        ("E_compared", number(check.compared), "W/m²"),
+    ]
+
+
+def _item_lines(found: list[tuple[str, str, str]]) -> list[str]:
+    told = [f"{label} = {value}{' ' + unit if unit else ''}" for label, value, unit in found]
     rows = [told[i : i + _COLUMNS] for i in range(0, len(told), _COLUMNS)]
     return ["".join(f"{item:<{_CELL}}" for item in row).rstrip() for row in rows]
 
 
-class HandCheckBlock(Flowable):
+def _hand_lines(check: HandCheck, distance: float | None) -> list[str]:
+    lines = []
+    if distance is not None and check.b > distance * (1 + 1e-6):
+        lines.append(
+            f"b used: never less than the beam's radius; the observer is {digits(distance)} m from the leg's line"
+        )
+    lines += _item_lines(items(check))
+    if check.remark:
+        lines += textwrap.wrap(printable(f"remark: {check.remark}"), _COLUMNS * _CELL - 4)
+    return lines
+
+
+class CheckBlock(Flowable):
     """One block; never split over pages."""
 
-    def __init__(self, count: int, observer: int, check: HandCheck) -> None:
+    def __init__(self, title: str, lines: list[str]) -> None:
         super().__init__()
         style = paragraph_styles()["mono"]
         self.style = style
-        self.title = printable(
-            f"Hand check {count}: observer {observer}, leg {check.leg} of {line_label(check.beam, check.line)}, "
-            f"component {check.component}"
-        )
-        self.lines = _item_lines(check)
-        if check.remark:
-            self.lines += textwrap.wrap(printable(f"remark: {check.remark}"), _COLUMNS * _CELL - 4)
+        self.title = printable(title)
+        self.lines = lines
         self.height = style.leading * (len(self.lines) + 1) + 7
 
     def wrap(self, available_width: float, available_height: float) -> tuple[float, float]:

@@ -52,6 +52,11 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
         paragraph("Values where the component is. Errors are the program's own estimates, relative to the value."),
         ruled(rows, [26, 19, 18, 18, 15, 18, 15, 15, 15, 15], numeric=tuple(range(1, 10))),
         ruled(quality, [60, 22, 27, 39, 26], numeric=(1, 2, 3, 4)),
+        paragraph(
+            "The curve and the tables after it: F11/(4π) and F12/(4π) in 1/sr at the scattering angle theta, and their "
+            "integrals over the angle from 0 to theta: B11, B12, and |B12| of the absolute value of F12, which serves "
+            "where the axis of polarization is unknown."
+        ),
         *([FigurePlace("phase", figure_size[0] * MM, figure_size[1] * MM)] if figure_size else []),
     ]
 
@@ -74,13 +79,7 @@ def printed_rows(entry: ComponentSummary) -> list[int]:
 
 def running_tables(assessment: Assessment) -> list[Any]:
     """F/(4π) and B(theta) of every component, for the hand check."""
-    story: list[Any] = [
-        paragraph(
-            "F11/(4π) and F12/(4π) in 1/sr at the scattering angle theta, and their integrals over the angle "
-            "from 0 to theta: B11, B12, and |B12| of the absolute value of F12, which serves where the axis of "
-            "polarisation is unknown."
-        )
-    ]
+    story: list[Any] = []
     for entry in assessment.components:
         rows: list[list[Any]] = [heads("theta [deg]", "F11/(4π)", "F12/(4π)", "B11", "B12", "|B12|", numeric_from=0)]
         rows += [

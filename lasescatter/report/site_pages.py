@@ -5,11 +5,11 @@ from __future__ import annotations
 from typing import Any
 
 from lasescatter.assessment.outcome import Assessment
-from lasescatter.report.front import NAME
+from lasescatter.report.naming import named_line
 from lasescatter.report.page_frame import FigurePlace
-from lasescatter.report.quantities import duration, length, light, line_label, point, small_length, trimmed, wavelength
-from lasescatter.report.styles import MM, heads, number_cell, paragraph, ruled, words
-from lasescatter.report.typography import abridged
+from lasescatter.report.quantities import duration, light, long_time, point, small_length, trimmed
+from lasescatter.report.styles import MM, heads, paragraph, ruled, words
+from lasescatter.report.typography import markup
 
 
 def site_section(assessment: Assessment, sizes: dict[str, tuple[float, float]]) -> list[Any]:
@@ -22,11 +22,9 @@ def site_section(assessment: Assessment, sizes: dict[str, tuple[float, float]]) 
 
 
 def _beams(assessment: Assessment) -> list[Any]:
-    from lasescatter.report.drawings import beam_letter
-
     unit = assessment.scene.length_unit
-    rows: list[list[Any]] = [heads("", "Beam line", "Light", "Start", "Path and end")]
-    for place, beam in enumerate(assessment.scene.beams):
+    rows: list[list[Any]] = [heads("Beam line", "Light", "Start", "Path and end")]
+    for beam in assessment.scene.beams:
         path = " to ".join(point(p, unit) for p in beam.points[:12])
         if len(beam.points) > 12:
             path += f" … {len(beam.points)} points, in the inputs"
@@ -38,14 +36,13 @@ def _beams(assessment: Assessment) -> list[Any]:
             spread = f"{trimmed(line.divergence * 1e3)} mrad"
             rows.append(
                 [
-                    beam_letter(place),
-                    words(f"{abridged(line_label(beam.name, line.name), NAME)}, {wavelength(line.wavelength)}"),
+                    paragraph(markup(named_line(assessment.scene, beam.name, line.name)), "cell"),
                     words(f"{light(line)}, {line.polarization}"),
                     words(f"{beam.profile}, {small_length(line.diameter, None)}, {spread}"),
                     words(f"{path}; {end}", limit=900),
                 ]
             )  # fmt: skip
-    return [paragraph("Beams", "subsection"), ruled(rows, [8, 42, 38, 30, 56])]
+    return [paragraph("Beams", "subsection"), ruled(rows, [48, 38, 31, 57])]
 
 
 def _observers(assessment: Assessment) -> list[Any]:
@@ -59,9 +56,9 @@ def _observers(assessment: Assessment) -> list[Any]:
                 str(number),
                 words(outcome.name),
                 words(point(outcome.position, unit)),
-                number_cell(length(observer.reach, unit)) if observer else "",
+                f"{trimmed(observer.reach / unit.metres)} {unit.name}" if observer else "",
                 words(", ".join(duration(value) for value in observer.durations)) if observer else "",
-                words(duration(observer.daily) if observer.daily is not None else "not stated") if observer else "",
+                words(long_time(observer.daily) if observer.daily is not None else "not stated") if observer else "",
                 observer.viewing if observer else "",
             ]
         )

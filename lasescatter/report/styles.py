@@ -185,3 +185,13 @@ def verdict_words(verdict: Verdict) -> str:
     if verdict == BELOW:
         return verdict
     return f'<font name="{BOLD}"><u>{verdict}</u></font>'
+
+
+def answer_words(verdict: Verdict) -> str:
+    """Whether one row's ratio is at most 1: yes, no or open, as our markup."""
+    from lasescatter.report.standing import ANSWERS
+
+    word = ANSWERS[verdict]
+    if verdict == ABOVE:
+        return f'<font name="{BOLD}" backColor="{INK}" color="white">&nbsp;{word}&nbsp;</font>'
+    return word if verdict == BELOW else f'<font name="{BOLD}"><u>{word}</u></font>'

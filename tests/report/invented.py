@@ -195,8 +195,8 @@ def _one(
 ) -> HandCheck:
     optics = next(c for c in COMPONENTS if c.name == name and c.wavelength == line.wavelength)
     worst_axis = line.polarization == "unknown"
-    kind = {"linear": "known axis", "unknown": "worst axis"}.get(line.polarization, "unpolarised")
-    q = {"known axis": 99 / 101, "worst axis": 1.0, "unpolarised": 0.0}[kind]
+    kind = {"linear": "known axis", "unknown": "worst axis"}.get(line.polarization, "unpolarized")
+    q = {"known axis": 99 / 101, "worst axis": 1.0, "unpolarized": 0.0}[kind]
     phi = 1.1 if kind == "known axis" else None
 
     def between(values: tuple[float, ...]) -> float:

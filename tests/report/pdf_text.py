@@ -8,25 +8,37 @@ from collections.abc import Iterator
 from pypdf import PdfReader
 
 HEAD = re.compile(r"^\s*Hand check (\d+): (.*)$")
+STOP_HEAD = re.compile(r"^\s*Stop check (\d+): (.*)$")
 ITEM = re.compile(r"(\w+) = (\S+)(?: (W/m²|W|m|deg|1/m)(?=\s|$))?")
 
 
 def hand_check_blocks(pages: list[str]) -> dict[int, dict[str, str]]:
     """The items of every hand-check block, as printed, by its number; its heading under "head"."""
+    return _blocks(pages, HEAD, STOP_HEAD, "E_program")
+
+
+def stop_check_blocks(pages: list[str]) -> dict[int, dict[str, str]]:
+    """The same of the stop checks."""
+    return _blocks(pages, STOP_HEAD, HEAD, "E_compared")
+
+
+def _blocks(pages: list[str], wanted: re.Pattern[str], other: re.Pattern[str], last: str) -> dict[int, dict[str, str]]:
     found: dict[int, dict[str, str]] = {}
     current: dict[str, str] | None = None
     for line in "\n".join(pages).splitlines():
-        head = HEAD.match(line)
-        if head:
+        head = wanted.match(line)
+        if other.match(line):
+            current = None
+        elif head:
             current = found.setdefault(int(head[1]), {"head": head[2]})
         elif current is not None and line.strip().startswith("remark:"):
             current["remark"] = line.strip()
         elif current is not None and " = " in line:
             for label, value, _unit in ITEM.findall(line):
                 current.setdefault(label, value)
-            if "E_program" in current and "E_program" in line:
+            if last in current and last in line:
                 continue
-        elif current is not None and "E_program" in current and "remark" not in current:
+        elif current is not None and last in current and "remark" not in current:
             current = None
     return found
 

@@ -84,6 +84,34 @@ def test_every_number_of_the_comparisons_is_printed(result: Assessment, text: st
             assert joined(f"{digits(entry.limit_value)} {entry.unit}") in flat
 
 
+def test_what_a_comparison_is_made_of_is_printed(result: Assessment, text: str) -> None:
+    """Origins and allowances under each comparison, so that exposure and upper bound can be followed."""
+    first = result.observers[0]
+    entry = replace(
+        first.comparisons[0], counted=14400.0, duration=0.25,
+        by_origin=(("scattered", 1.25e-3), ("allowance for higher orders", 3.75e-4), ("stop", 5.0e-3), ("direct", 0.0)),
+        allowances=(("numerical error", 1.0e-6), ("reach, scattered", 2.5e-2), ("walls of a room of 81 m²", 0.3)),
+        window=(("leg 1 from", math.radians(80)), ("to", math.radians(95.5))),
+    )  # fmt: skip
+    made = replace(result, observers=(replace(first, comparisons=(entry,)),), components=())
+    flat = joined(" ".join(page.extract_text() for page in PdfReader(BytesIO(pdf_bytes(made, "A4", MADE_AT))).pages))
+    for wanted in (
+        "Exposure: scattered 0.00125 + allowance for higher orders 3.75e-4 + stop 0.00500.",
+        "Upper bound adds numerical error: 1.00e-6, reach, scattered: 0.0250, walls of a room of 81 m²: 0.300.",
+        "allowance for higher orders: 30.0 % of the compared scattered light",
+        "250 ms; 4 h counted a day; worst at 10 s",
+        "leg 1 scattering angle from 80.00 to 95.50 deg",
+    ):
+        assert joined(wanted) in flat, wanted
+    assert "N = 200 pulses" in text and "times 1 + 1.5 tau" in text
+
+
+def test_rows_answer_and_only_headings_judge(result: Assessment, text: str) -> None:
+    assert text.count("Ratio at most 1?") >= 2
+    for number, observer in enumerate(result.observers, start=1):
+        assert joined(f"Observer {number}: {printable(observer.name)[:20]}") in joined(text)
+
+
 def test_every_exposure_is_printed(result: Assessment, text: str) -> None:
     for observer in result.observers:
         for line in observer.lines:
@@ -210,7 +238,7 @@ def test_hand_check_can_be_redone_from_the_page(result: Assessment, pages: list[
     for number, check in enumerate(checks, start=1):
         block = blocks[number]
         value = {label: float(block[label]) for label in ("P", "b", "beta_sca", "q", "dB11", "dB12", "I")}
-        if block["light"] == "unpolarised":
+        if block["light"] == "unpolarized":
             integral = value["dB11"]
         elif block["light"] == "worst":
             integral = value["dB11"] + value["dB12"]
@@ -226,7 +254,8 @@ def test_hand_check_can_be_redone_from_the_page(result: Assessment, pages: list[
         assert apart <= 0.05 or "extinction along the beam" in block["remark"]
 
 
-def test_hand_check_geometry_obeys_e1(pages: list[str]) -> None:
+def test_hand_check_geometry_obeys_e1(pages: list[str], text: str) -> None:
+    assert "b used" not in text
     for block in hand_check_blocks(pages).values():
         b, s0 = float(block["b"]), float(block["s0"])
         assert math.degrees(math.atan2(b, s0)) == pytest.approx(float(block["theta1"]), rel=2e-4, abs=0)
@@ -238,6 +267,16 @@ def test_hand_check_geometry_obeys_e1(pages: list[str]) -> None:
         angle = math.radians(float(block["theta_mid"]))
         assert s0 - b / math.tan(angle) == pytest.approx(float(block["s_mid"]), rel=1e-3, abs=1e-3)
         assert b / math.sin(angle) == pytest.approx(float(block["r_mid"]), rel=1e-3, abs=0)
+
+
+def test_an_observer_inside_the_beam_is_told_which_b_was_used(result: Assessment) -> None:
+    inside = replace(result.observers[0], position=(4.0, 0.0002, 1.2))
+    near = replace(inside.hand_checks[0], b=1.5e-3)
+    made = replace(result, observers=(replace(inside, hand_checks=(near,)),), components=())
+    pages = [page.extract_text() for page in PdfReader(BytesIO(pdf_bytes(made, "A4", MADE_AT))).pages]
+    told = "b used: never less than the beam's radius; the observer is 2.00e-4 m from the leg's line"
+    assert told in "\n".join(pages)
+    assert float(hand_check_blocks(pages)[1]["b"]) == 1.5e-3
 
 
 def test_printed_b_table_gives_the_printed_difference(pages: list[str]) -> None:
@@ -265,7 +304,7 @@ def test_printed_b_table_gives_the_printed_difference(pages: list[str]) -> None:
     block = next(
         block
         for block in hand_check_blocks(pages).values()
-        if block["head"].startswith("observer 1, leg 1 of alignment beam, component test haze")
+        if block["head"].startswith("observer 1, leg A1, 532 nm, component test haze – alignment beam")
     )
     difference = b11(float(block["theta2"])) - b11(float(block["theta1"]))
     assert difference == pytest.approx(float(block["dB11"]), rel=0.02, abs=0)
@@ -398,7 +437,18 @@ def test_a_hundred_observers() -> None:
     for wanted in ("worst of 100 observers", counts, "Not covered"):
         assert wanted in " ".join(pages[0].split())
     assert "Read the cautions" in pages[0]
-    assert len(hand_check_blocks(pages)) == sum(len(observer.hand_checks) for observer in made.observers)
+    # Of so many blocks those above 1 % of their observer's light are printed, under their number in the record.
+    checks = [(check, observer) for observer in made.observers for check in observer.hand_checks]
+    due = {
+        number: check.program
+        for number, (check, observer) in enumerate(checks, start=1)
+        if check.program > 0.01 * (observer.total("scattered") + observer.total("diffuse"))
+    }
+    printed = {number: float(block["E_program"]) for number, block in hand_check_blocks(pages).items()}
+    assert printed == pytest.approx(due, rel=5e-5, abs=0)
+    assert 100 < len(due) < len(checks)
+    stops = sum(len(observer.stop_checks) for observer in made.observers)
+    assert f"The record holds {len(checks) + stops} hand and stop checks" in " ".join(" ".join(pages).split())
     # The full list goes on over the page with its head repeated.
     assert "Verdict of every observer" in pages[1]
     assert "Greatest summed" in pages[1] and "Greatest summed" in pages[2]

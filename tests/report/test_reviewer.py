@@ -14,7 +14,7 @@ from pypdf import PdfReader
 from lasescatter.assessment.assess import assess
 from lasescatter.report.document import write_pdf
 from lasescatter.site.reading import read_site
-from report.pdf_text import hand_check_blocks
+from report.pdf_text import hand_check_blocks, stop_check_blocks
 
 SAMPLE = Path(__file__).parents[2] / "sample_sites" / "hazed_test_bay.toml"
 NUMBER = re.compile(r"-?[\d.]+(e-?\d+)?")
@@ -43,13 +43,17 @@ def tables_of_b(pages):
     return {name: np.array(values).reshape(-1, 6) for name, values in tables.items()}
 
 
+def component_of(block):
+    return re.search(r"component (.+) – ", block["head"])[1]
+
+
 def test_every_block_comes_out_within_five_per_cent_from_the_tables_of_b(pages):
     blocks = hand_check_blocks(pages)
     tables = tables_of_b(pages)
     assert set(tables) >= {"air", "test haze"}
     assert len(blocks) == 9
     for block in blocks.values():
-        component = block["head"].split("component ")[1]
+        component = component_of(block)
         angle, _, _, b11, b12, _ = tables[component].T
         value = {name: float(text) for name, text in block.items() if NUMBER.fullmatch(text)}
         between = [
@@ -65,8 +69,29 @@ def test_every_block_comes_out_within_five_per_cent_from_the_tables_of_b(pages):
 def test_angles_follow_from_the_printed_geometry(pages):
     """E1: cot theta1 = s0/b where the component begins with the leg, as air does."""
     for block in hand_check_blocks(pages).values():
-        if not block["head"].endswith("component air"):
+        if component_of(block) != "air":
             continue
         b, s0, length = (float(block[name]) for name in ("b", "s0", "length"))
         assert float(block["theta1"]) == pytest.approx(math.degrees(math.atan2(b, s0)), rel=2e-4)
         assert float(block["theta2"]) == pytest.approx(math.degrees(math.atan2(b, s0 - length)), rel=2e-4)
+
+
+def test_stop_light_by_lamberts_law_and_the_sums_of_the_blocks(pages):
+    """E = rho P cos/(pi r²), and E_program and E_stated add up to the exposure table's scattered and stop light."""
+    stops = stop_check_blocks(pages)
+    assert len(stops) == 3
+    exposures = re.findall(r"alignment\s+beam\s+([\d.e-]+) ± \S+\s+(?:[\d.e-]+\s+){3}([\d.e-]+)", "\n".join(pages))
+    assert len(exposures) == 3
+    for number, block in stops.items():
+        value = {name: float(text) for name, text in block.items() if NUMBER.fullmatch(text)}
+        by_hand = value["rho"] * value["P"] * value["cos"] / (math.pi * value["r"] ** 2)
+        # Five printed digits in each factor.
+        assert by_hand == pytest.approx(value["E_compared"], rel=3e-4, abs=0)
+        assert by_hand * math.exp(-value["tau"]) == pytest.approx(value["E_stated"], rel=3e-4, abs=0)
+        assert math.exp(-value["tau"]) == pytest.approx(value["T"], rel=1e-4, abs=0)
+        assert block["head"].startswith(f"observer {number}, stop of A, 532 nm")
+        scattered, stop = exposures[number - 1]
+        # The table prints three digits.
+        assert float(stop) == pytest.approx(value["E_stated"], rel=6e-3, abs=0)
+        own = [b for b in hand_check_blocks(pages).values() if b["head"].startswith(f"observer {number},")]
+        assert sum(float(b["E_program"]) for b in own) == pytest.approx(float(scattered), rel=6e-3, abs=0)

@@ -47,8 +47,11 @@ def test_every_comparison_comes_back(result: Assessment, tmp_path: Path) -> None
         for head, value in (
             ("exposure_in_unit", entry.exposure), ("limit_in_unit", entry.limit_value), ("ratio", entry.ratio),
             ("ratio_low", entry.ratio_low), ("ratio_high", entry.ratio_high), ("duration_s", entry.duration),
+            ("counted_s", entry.counted),
         ):  # fmt: skip
             assert float(row[head]) == value
+        told = "; ".join(f"{cause}: {amount!r}" for cause, amount in entry.allowances)
+        assert row["allowances_in_unit"] == told
         origins = dict(entry.by_origin)
         assert float(row["scattered_in_unit"]) == origins["scattered"]
         assert float(row["stop_in_unit"]) == origins["stop"]
@@ -67,6 +70,12 @@ def test_a_formula_is_not_run(tmp_path: Path) -> None:
     made = assessment(tuple((name, (4.0 + place, 1.5, 1.6)) for place, name in enumerate(typed)))
     names = [row["observer"] for row in table(made, tmp_path)]
     assert '\'=HYPERLINK("x")' in names and "'-2+3" in names and 'a "quoted", text' in names
+
+
+def test_control_characters_are_left_out() -> None:
+    assert text_cell("a\x00b\x1b[31m\x7f\x85c\nd\te") == "ab[31mc d e"
+    assert text_cell("\x00=1+1") == "'=1+1"
+    assert text_cell("\t=1+1") == "' =1+1"
 
 
 def test_lone_surrogates_and_nul_are_written(tmp_path: Path) -> None:
