@@ -85,7 +85,8 @@ def _comparison_cells(entry: Comparison, line: LineExposure | None) -> list[str]
     by_origin = [_number(origins.get(word)) for word in ORIGINS]
     return [
         text_cell(entry.limit), text_cell(entry.beam), text_cell(entry.line), _number(wavelength), entry.hazard,
-        entry.tissue, entry.mechanism, entry.quantity, entry.unit, _number(entry.duration), _number(entry.counted), _number(entry.time),
+        entry.tissue, entry.mechanism, entry.quantity, entry.unit, _number(entry.duration),
+        _number(entry.counted), _number(entry.time),
         _number(entry.exposure), *by_origin,
         _number(entry.limit_value), _number(entry.ratio), _number(entry.ratio_low), _number(entry.ratio_high),
         "; ".join(f"{cause}: {_number(amount)}" for cause, amount in entry.allowances),

@@ -13,7 +13,7 @@ from lasescatter.report.ink import DARK, FAINT, GREY, cut, write
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
-Sign = Literal["beam", "load", "start", "mirror", "stop", "endless", "towards", "away", "observer"]
+Sign = Literal["beam", "load", "start", "mirror", "stop", "endless", "towards", "away", "observer", "reach"]
 
 ROW = 4.1
 """[mm]"""
@@ -91,5 +91,7 @@ def _sign(axes: Axes, entry: Entry, x: float, y: float) -> None:
         symbols.endless(axes, (x + 8, y), (1.0, 0.0), DARK)
     elif entry.sign in ("towards", "away"):
         symbols.through_paper(axes, middle, entry.sign == "towards", DARK)
+    elif entry.sign == "reach":
+        symbols.reach_ring(axes, middle, 1.5)
     else:
         symbols.observer(axes, middle, 0.0, entry.verdict)

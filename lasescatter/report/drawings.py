@@ -201,6 +201,7 @@ def _beam(axes: Axes, view: View, beam: Beam, place: int, room: Room) -> None:
         text = f"{beam_letter(place)}{number + 1}"
         spot = room.place(text, 7.2, middle, 1.2, forced=True)
         if spot is not None:
+            symbols.leader(axes, middle, room.taken[-1], 1.2)
             write(
                 axes,
                 *spot,
@@ -276,6 +277,7 @@ def _observers(axes: Axes, view: View, assessment: Assessment, room: Room) -> No
         for text, forced in _candidates(assessment, group):
             found = room.place(text, size, spot, 0.75 * symbols.MARKER, forced)
             if found is not None:
+                symbols.leader(axes, spot, room.taken[-1], 0.75 * symbols.MARKER)
                 write(axes, *found, text, fontsize=size, ha="center", va="center", zorder=9, bbox=CLEAR)
                 break
 
@@ -336,4 +338,6 @@ def _sign_entries(assessment: Assessment, view: View) -> list[Entry]:
         for verdict in (BELOW, ABOVE, NOT_ESTABLISHED)
         if verdict in found
     ]
+    if any(1000.0 * observer.reach / view.scale > symbols.LEAST_RING for observer in assessment.scene.observers):
+        entries.append(Entry("reach", "reach of an observer's head"))
     return entries

@@ -64,7 +64,7 @@ class Room:
         """
         width, height = text_size(text, size)
         best: tuple[float, Rect] | None = None
-        for reach in (gap, gap + 2.0, gap + 4.5):
+        for reach in (gap, gap + 2.0, gap + 4.5, gap + 8.0, gap + 12.0):
             for turn in range(12):
                 angle = math.radians(30 + 30 * turn)
                 x = anchor[0] + math.cos(angle) * (reach + width / 2)

@@ -100,7 +100,8 @@ def _shifted(position: Vector, step: float) -> Vector:
 
 
 def extent(scene: Scene) -> tuple[Vector, Vector]:
-    """Low and high corner of what the drawings show; a face of a load's box counts where it is near the rest."""
+    """Low and high corner of what the drawings show; height 0 always, a face of a load's box
+    where it is near the rest."""
     core = _core(scene)
     low = [min(p[axis] for p in core) for axis in range(3)]
     high = [max(p[axis] for p in core) for axis in range(3)]
@@ -114,6 +115,8 @@ def extent(scene: Scene) -> tuple[Vector, Vector]:
                     bounds_low[axis] = min(bounds_low[axis], load.region.low[axis])
                 if load.region.high[axis] <= high[axis] + near:
                     bounds_high[axis] = max(bounds_high[axis], load.region.high[axis])
+    # Heights are read from the floor.
+    bounds_low[2], bounds_high[2] = min(bounds_low[2], 0.0), max(bounds_high[2], 0.0)
     return (bounds_low[0], bounds_low[1], bounds_low[2]), (bounds_high[0], bounds_high[1], bounds_high[2])
 
 

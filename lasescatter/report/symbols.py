@@ -7,13 +7,27 @@ from typing import TYPE_CHECKING, Any
 
 from lasescatter.limits.verdict import ABOVE, BELOW, Verdict
 from lasescatter.report.ink import DARK, GREY
+from lasescatter.report.labels import Rect
 from lasescatter.report.site_view import Point
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
+STOP_HATCH = "/" * 9
 MARKER = 2.3
 """Size of an observer's marker. [mm]"""
+
+
+LEAST_RING = 0.6 * MARKER
+"""A reach that is smaller on the sheet is hidden by the observer's mark. [mm]"""
+_LEAST_LEADER = 1.6
+
+
+def leader(axes: Axes, at: Point, rect: Rect, gap: float) -> None:
+    """A thin line from a mark to a label that lies away from it."""
+    near = (min(max(at[0], rect.left), rect.right), min(max(at[1], rect.bottom), rect.top))
+    if math.dist(at, near) > gap + _LEAST_LEADER:
+        axes.plot([at[0], near[0]], [at[1], near[1]], color=GREY, linewidth=0.45, zorder=3.5)
 
 
 def _unit(vector: Point) -> Point:
@@ -54,15 +68,20 @@ def endless(axes: Axes, at: Point, along: Point, ink: str) -> None:
 
 
 def plate(axes: Axes, at: Point, normal: Point, filled: bool) -> None:
-    """A mirror (open) or stop (filled): a plate whose lit face lies at the point, seen from its edge.
+    """A mirror (open) or stop (hatched, unlike an observer's mark): a plate seen from its edge.
+
+    Its lit face lies at the point.
 
     `normal` is the part in the paper of the lit side's unit normal; where it is short the plate is
     seen face on and drawn as a square.
     """
     tilt = math.hypot(*normal)
+    hatch = STOP_HATCH if filled else ""
     if tilt < 0.35:
-        axes.plot([at[0]], [at[1]], marker="s", markersize=6.5, markerfacecolor=DARK if filled else "white",
-                  markeredgecolor=DARK, markeredgewidth=0.9, zorder=5)  # fmt: skip
+        from matplotlib.patches import Rectangle
+
+        axes.add_patch(Rectangle((at[0] - 1.3, at[1] - 1.3), 2.6, 2.6, facecolor="white", edgecolor=DARK,
+                                 hatch=hatch, linewidth=0.9, zorder=5))  # fmt: skip
         return
     n = _unit(normal)
     half, thick = (3.0, 1.5) if filled else (2.8, 0.8)
@@ -74,7 +93,7 @@ def plate(axes: Axes, at: Point, normal: Point, filled: bool) -> None:
         (at[0] - side[0] + back[0], at[1] - side[1] + back[1]),
         (at[0] + side[0] + back[0], at[1] + side[1] + back[1]),
     ]
-    axes.fill([p[0] for p in corners], [p[1] for p in corners], facecolor=DARK if filled else "white",
+    axes.fill([p[0] for p in corners], [p[1] for p in corners], facecolor="white", hatch=hatch,
               edgecolor=DARK, linewidth=0.8, zorder=5)  # fmt: skip
 
 
@@ -90,7 +109,12 @@ def observer(axes: Axes, at: Point, reach: float, verdict: Verdict) -> None:
     size = MARKER * 72 / 25.4 * (0.85 if verdict != BELOW else 1.0)
     axes.plot([at[0]], [at[1]], linestyle="none", markersize=size, markeredgecolor=DARK, markeredgewidth=0.9, zorder=8,
               **MARKS[verdict])  # fmt: skip
-    if reach > 0.6 * MARKER:
-        from matplotlib.patches import Circle
+    if reach > LEAST_RING:
+        reach_ring(axes, at, reach)
 
-        axes.add_patch(Circle(at, reach, fill=False, edgecolor=GREY, linewidth=0.6, linestyle=(0, (1, 1.6)), zorder=7))
+
+def reach_ring(axes: Axes, at: Point, reach: float) -> None:
+    """Where the head can get."""
+    from matplotlib.patches import Circle
+
+    axes.add_patch(Circle(at, reach, fill=False, edgecolor=GREY, linewidth=0.6, linestyle=(0, (1, 1.6)), zorder=7))

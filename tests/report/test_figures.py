@@ -189,6 +189,47 @@ def test_observers_over_one_another_share_a_label() -> None:
     assert {"1 seated", "2 standing", "3 apart"} <= side
 
 
+def test_elevation_shows_height_zero() -> None:
+    for beams in ((UP,), BEAMS, (LONG_WAY,)):
+        view = views(site_with(*beams))["elevation"]
+        assert MARGIN - 1e-6 <= view.paper((0.0, 0.0, 0.0))[1] <= view.height - MARGIN + 1e-6
+
+
+def test_the_ring_of_a_reach_is_in_the_key_where_it_is_drawn(result: Assessment) -> None:
+    def key(reach: float) -> list[str]:
+        observers = tuple(replace(observer, reach=reach) for observer in result.scene.observers)
+        made = replace(result, scene=replace(result.scene, observers=observers))
+        with rc_context(RC):
+            return [text.get_text() for text in draw_site(made, "plan").axes[1].texts]
+
+    assert "reach of an observer's head" in key(0.5)
+    assert "reach of an observer's head" not in key(0.0)
+
+
+def test_a_stop_is_hatched_and_no_mark_of_an_observer() -> None:
+    from matplotlib.figure import Figure
+
+    from lasescatter.report import symbols
+
+    for normal in ((0.0, 1.0), (0.0, 0.0)):
+        axes = Figure().add_subplot()
+        symbols.plate(axes, (1.0, 1.0), normal, filled=True)
+        (patch,) = axes.patches
+        assert patch.get_hatch() and patch.get_facecolor()[:3] == (1.0, 1.0, 1.0)
+
+
+def test_a_label_away_from_its_mark_has_a_leader() -> None:
+    from matplotlib.figure import Figure
+
+    from lasescatter.report import symbols
+
+    axes = Figure().add_subplot()
+    symbols.leader(axes, (0.0, 0.0), Rect(1.0, -1.0, 5.0, 1.0), 1.7)
+    assert not axes.lines
+    symbols.leader(axes, (0.0, 0.0), Rect(6.0, -1.0, 9.0, 1.0), 1.7)
+    assert axes.lines[0].get_xdata()[1] == 6.0
+
+
 def test_text_is_not_read_as_mathematics() -> None:
     made = assessment((("$x_1$", (4.0, 1.5, 1.6)),))
     with rc_context(RC):
