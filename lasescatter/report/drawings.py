@@ -43,10 +43,10 @@ _SQUARE_ON = 0.08
 """Share in the paper below which a leg counts as square to it."""
 
 
-def draw_site(assessment: Assessment, kind: Kind) -> Figure:
-    """One view of the site; its printed width is `SHEET`."""
+def draw_site(assessment: Assessment, kind: Kind, enlarged: View | None = None) -> Figure:
+    """One view of the site, or an enlarged part of it; its printed width is `SHEET`."""
     scene = assessment.scene
-    view = views(scene)[kind]
+    view = enlarged or views(scene)[kind]
     room = Room(Rect(0.5, 0.5, view.width - 0.5, view.height - 0.5))
     entries = _beam_entries(assessment) + _load_entries(scene.loads) + _sign_entries(assessment, view)
     unnamed = _unnamed(assessment)
@@ -55,7 +55,7 @@ def draw_site(assessment: Assessment, kind: Kind) -> Figure:
     axes = panel(figure, _LEFT, total - _TOP - view.height, view.width, view.height)
     axes.set_xlim(0, view.width)
     axes.set_ylim(0, view.height)
-    _frame(axes, view, scene.length_unit)
+    _frame(axes, view, scene.length_unit, enlarged is not None)
     for place, load in enumerate(scene.loads):
         _load(axes, view, load, place, room)
     for beam in scene.beams:
@@ -73,7 +73,7 @@ def draw_site(assessment: Assessment, kind: Kind) -> Figure:
     return figure
 
 
-def _frame(axes: Axes, view: View, unit: LengthUnit) -> None:
+def _frame(axes: Axes, view: View, unit: LengthUnit, enlarged: bool) -> None:
     """Ticks in the site's unit, and the title."""
     for setter, labels, start, size, wanted in (
         (axes.set_xticks, axes.set_xticklabels, view.origin[0], view.width, 9),
@@ -89,7 +89,7 @@ def _frame(axes: Axes, view: View, unit: LengthUnit) -> None:
     axes.set_ylabel(f"{up} [{unit.name}]", fontsize=7, labelpad=1.5, color=DARK)
     axes.grid(True, color=FAINT, linewidth=0.25, zorder=0)
     axes.set_axisbelow(True)
-    name = view.kind.capitalize()
+    name = view.kind.capitalize() + (", enlarged part" if enlarged else "")
     write(axes, 0, view.height + 1.6, f"{name}, {view.seen}", fontsize=7.6, fontweight="bold")
     told = f"{scale_words(view.scale)} at a printed width of the whole figure of {SHEET:.0f} mm"
     write(axes, view.width, view.height + 1.6, told, fontsize=7, ha="right")  # fmt: skip
@@ -187,6 +187,8 @@ def _beam(axes: Axes, view: View, beam: Beam, place: int, room: Room) -> None:
         endless = beam.leaves_site and number == len(beam.points) - 2
         # Off the middle by turns, so that legs folded over one another keep their labels apart.
         share = _LABEL_SHARES[number % len(_LABEL_SHARES)]
+        if not _square_on(view, beam, number):
+            first, last = view.shown_part(first, last)
         middle = (first[0] + share * (last[0] - first[0]), first[1] + share * (last[1] - first[1]))
         if _square_on(view, beam, number):
             symbols.through_paper(axes, first, view.towards_reader(_along(start, end)) > 0, ink)
@@ -272,7 +274,7 @@ def _observers(axes: Axes, view: View, assessment: Assessment, room: Room) -> No
         symbols.observer(axes, spot, 1000.0 * reach.get(outcome.key, 0.0) / view.scale, outcome.verdict)
         room.mark(spot, 0.55 * symbols.MARKER)
     size = 6.6 if len(spots) <= 30 else 5.2
-    for group in _groups(spots):
+    for group in (group for group in _groups(spots) if view.holds(spots[group[0]])):
         spot = spots[group[0]]
         for text, forced in _candidates(assessment, group):
             found = room.place(text, size, spot, 0.75 * symbols.MARKER, forced)

@@ -19,9 +19,12 @@ def figure_makers(assessment: Assessment) -> dict[str, Callable[[], Figure]]:
     """What draws each figure of this assessment, in the order in which the report shows them."""
     from lasescatter.report.curves import draw_phase
     from lasescatter.report.drawings import draw_site
+    from lasescatter.report.site_view import near_plan
 
+    near = near_plan(assessment.scene)
     makers: dict[str, Callable[[], Figure]] = {
         "plan": lambda: draw_site(assessment, "plan"),
+        **({} if near is None else {"plan_near": lambda: draw_site(assessment, "plan", near)}),
         "elevation": lambda: draw_site(assessment, "elevation"),
     }
     if assessment.components:

@@ -11,11 +11,17 @@ from lasescatter.report.quantities import duration, light, long_time, point, sma
 from lasescatter.report.styles import MM, heads, paragraph, ruled, words
 from lasescatter.report.typography import markup
 
+DRAWINGS = ("plan", "plan_near", "elevation")
+
 
 def site_section(assessment: Assessment, sizes: dict[str, tuple[float, float]]) -> list[Any]:
     """Drawings to scale, then what they show as lists."""
     return [
-        *(FigurePlace(name, sizes[name][0] * MM, sizes[name][1] * MM) for name in ("plan", "elevation")),
+        *(
+            FigurePlace(name, sizes[name][0] * MM, sizes[name][1] * MM)
+            for name in ("plan", "plan_near", "elevation")
+            if name in sizes
+        ),
         *_beams(assessment),
         *_observers(assessment),
     ]

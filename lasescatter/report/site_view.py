@@ -47,6 +47,24 @@ class View:
         )
         return x, y
 
+    def holds(self, at: Point) -> bool:
+        """Whether a point of the sheet lies on the drawing."""
+        return 0 <= at[0] <= self.width and 0 <= at[1] <= self.height
+
+    def shown_part(self, start: Point, end: Point) -> tuple[Point, Point]:
+        """The part of a stroke that lies on the drawing; all of it where none does."""
+        low, high = 0.0, 1.0
+        for first, last, size in zip(start, end, (self.width, self.height), strict=True):
+            if last == first:
+                continue
+            at = sorted(((0.0 - first) / (last - first), (size - first) / (last - first)))
+            low, high = max(low, at[0]), min(high, at[1])
+        if low >= high:
+            return start, end
+        first_x, first_y = (a + low * (b - a) for a, b in zip(start, end, strict=True))
+        last_x, last_y = (a + high * (b - a) for a, b in zip(start, end, strict=True))
+        return (first_x, first_y), (last_x, last_y)
+
     def direction(self, vector: Vector) -> Point:
         """A direction on the sheet, not normalised: its length is the share that lies in the paper."""
         return vector[self.axes[0]], vector[self.axes[1]]
@@ -124,6 +142,45 @@ def _needed(low: Vector, high: Vector, axes: tuple[int, int], kind: Kind) -> flo
     """Scale at which an extent fits."""
     across, up = ((high[axis] - low[axis]) * 1000.0 for axis in axes)
     return max(across / (WIDTH - 2 * MARGIN), up / (MOST_HEIGHT[kind] - 2 * MARGIN), 1e-3)
+
+
+FAR = 4.0
+"""Times farther off than all the rest: then the rest gets a drawing of its own."""
+
+
+def near_extent(scene: Scene) -> tuple[Vector, Vector] | None:
+    """Corners of the cluster of places, where one that lies far off shrinks it under a quarter of the plan; else None.
+
+    Places are ends of legs and observers, seen from above and ordered by their distance from the median place.
+    """
+    places = [point for beam in scene.beams for point in beam.points] + [o.position for o in scene.observers]
+    if len(places) < 3:
+        return None
+    centre = [sorted(place[axis] for place in places)[len(places) // 2] for axis in (0, 1)]
+    ordered = sorted(places, key=lambda place: math.dist(place[:2], centre))
+    far = [math.dist(place[:2], centre) for place in ordered]
+    cut = next((i for i in range(2, len(far)) if far[i - 1] > 0 and far[i] > FAR * far[i - 1]), None)
+    if cut is None or not _one_thing(scene, ordered[cut:]):
+        return None
+    low, high = ([side(place[axis] for place in ordered[:cut]) for axis in range(3)] for side in (min, max))
+    whole_low, whole_high = extent(scene)
+    if math.dist(low[:2], high[:2]) >= 0.25 * math.dist(whole_low[:2], whole_high[:2]):
+        return None
+    return (low[0], low[1], low[2]), (high[0], high[1], high[2])
+
+
+def _one_thing(scene: Scene, places: list[Vector]) -> bool:
+    """Whether places are those of a single observer or of the ends of a single leg."""
+    ends = [set(leg) for beam in scene.beams for leg in zip(beam.points, beam.points[1:], strict=False)]
+    return len(places) == 1 or any(set(places) <= leg for leg in ends)
+
+
+def near_plan(scene: Scene) -> View | None:
+    """The plan of that cluster, enlarged."""
+    corners = near_extent(scene)
+    if corners is None:
+        return None
+    return _view("plan", (0, 1), nice_at_least(_needed(*corners, (0, 1), "plan"), SCALES), *corners)
 
 
 def views(scene: Scene) -> dict[Kind, View]:

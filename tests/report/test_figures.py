@@ -16,14 +16,15 @@ from PIL import Image
 from pypdf import PdfReader
 
 from lasescatter.assessment.outcome import Assessment
+from lasescatter.report.document import pdf_bytes
 from lasescatter.report.drawings import SHEET, beam_letter, draw_site
 from lasescatter.report.figures import pdf_figures, write_figures
 from lasescatter.report.ink import RC, cut, text_size
 from lasescatter.report.labels import Rect, Room
-from lasescatter.report.site_view import MARGIN, WIDTH, extent, nice_at_least, scale_words, ticks, views
+from lasescatter.report.site_view import MARGIN, WIDTH, extent, near_plan, nice_at_least, scale_words, ticks, views
 from lasescatter.scene import Beam, Box, LengthUnit, Scene, Stop
 
-from .invented import BEAMS, GREEN, LOADS, assessment, many, scene
+from .invented import BEAMS, GREEN, LOADS, PLACES, assessment, many, scene
 from .pdf_text import entries
 
 POINTS_PER_MM = 72 / 25.4
@@ -151,7 +152,8 @@ LONG_WAY = Beam("far", (GREEN,), "gaussian", ((0.0, 0.0, 2.0), (5e4, 3e4, 2e4)),
 def test_odd_sites_can_be_drawn(beams: tuple[Beam, ...], tmp_path: Path) -> None:
     made = replace(assessment(), scene=site_with(*beams))
     data, sizes = pdf_figures(made)
-    assert len(PdfReader(BytesIO(data)).pages) == len(sizes) == 3
+    # A leg that ends 60 km away leaves the rest too small to see: that gets a drawing of its own.
+    assert len(PdfReader(BytesIO(data)).pages) == len(sizes) == (4 if beams == (LONG_WAY,) else 3)
     for _, height in sizes.values():
         assert height < 240
 
@@ -163,6 +165,24 @@ def test_legs_through_the_paper_are_told_in_the_key() -> None:
         side = [text.get_text() for text in draw_site(made, "elevation").axes[1].texts]
     assert "leg towards the reader" in told and "leg away from the reader" in told
     assert "leg towards the reader" not in side
+
+
+def test_a_far_observer_gets_the_rest_a_drawing_of_its_own() -> None:
+    near = assessment()
+    assert near_plan(near.scene) is None
+    made = assessment((*((name, place) for name, place in PLACES), ("far away", (400.0, 30.0, 1.6))))
+    view = near_plan(made.scene)
+    assert view is not None and view.scale < 0.25 * views(made.scene)["plan"].scale
+    with rc_context(RC):
+        figure = draw_site(made, "plan", view)
+    told = [text.get_text() for text in figure.axes[0].texts]
+    assert "1 console operator" in told and not any("far away" in text for text in told)
+    assert {"A1", "A2", "B1"} <= set(told)
+    for text in figure.axes[0].texts:
+        assert -1 <= text.get_position()[0] <= view.width + 1
+    pages = PdfReader(BytesIO(pdf_bytes(replace(made, components=()), "A4"))).pages
+    names = {name for page in pages for name in entries(page["/Resources"].get_object(), "/XObject")}
+    assert names == {"/Figure-plan", "/Figure-plan_near", "/Figure-elevation"}
 
 
 def test_a_vast_box_does_not_shrink_the_rest() -> None:
