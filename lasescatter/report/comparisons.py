@@ -77,7 +77,8 @@ def _judged(number: int, observer: ObserverOutcome, scene: Scene) -> list[Any]:
             "note",
         ),
     ]
-    story += [words(reason, "item", 900) for reason in grouped(observer.reasons) if reason not in in_rows]
+    elsewhere = [reason for reason in observer.reasons if reason not in in_rows]
+    story += [words(reason, "item", 900) for reason in grouped(elsewhere)]
     if observer.hazards:
         rows: list[list[Any]] = [[*heads("Hazard", "Ratio", "Bounds", numeric_from=1), *heads(ASKED, "Reasons")]]
         rows += [_hazard_row(hazard) for hazard in observer.hazards]

@@ -13,7 +13,14 @@ from lasescatter.report.page_frame import COLUMN
 from lasescatter.report.quantities import counted as count_of
 from lasescatter.report.quantities import digits, duration, length
 from lasescatter.report.ranking import counted, greatest, worst_first
-from lasescatter.report.standing import beam_headline, beside_headline, grouped, left_out_words, standing
+from lasescatter.report.standing import (
+    beam_headline,
+    beside_headline,
+    grouped,
+    left_out_reason,
+    left_out_words,
+    standing,
+)
 from lasescatter.report.styles import INK, MM, heads, number_cell, paragraph, ruled, verdict_words, words
 from lasescatter.report.typography import SANS, fitted, markup, printable
 
@@ -158,7 +165,7 @@ def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
     lines = [paragraph(markup(beam_headline(assessment)), "verdict")]
     beside = f"{beside_headline(assessment)}: {verdict_words(assessment.verdict)}"
     lines.append(paragraph(beside, "verdict"))
-    if assessment.scene.not_judged:
+    if left_out_words(assessment):
         lines.append(paragraph(markup(left_out_words(assessment)), "cell bold"))
     box = Table(
         [[lines]],
@@ -229,7 +236,7 @@ def _left_out(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
     story: list[Any] = [paragraph("Not judged, by the user's decision", "subsection")]
     if assessment.scene.not_judged:
         story += [
-            paragraph(f"<b>{hazard}</b>: {markup(reason, 2000)}", "small item", bullet="•")
+            paragraph(f"<b>{hazard}</b>: {markup(left_out_reason(reason), 2000)}", "small item", bullet="•")
             for hazard, reason in assessment.scene.not_judged
         ]
     else:

@@ -6,7 +6,7 @@ import re
 from collections.abc import Iterable
 
 from lasescatter.assessment.outcome import Assessment, InTheBeam, ObserverOutcome
-from lasescatter.limits.judge import HAZARDS
+from lasescatter.limits.judge import HAZARDS, is_placeholder
 from lasescatter.limits.verdict import ABOVE, BELOW, NOT_ESTABLISHED, Verdict, few_digits, margin
 from lasescatter.report.naming import line_sign
 from lasescatter.report.quantities import counted, digits
@@ -65,11 +65,17 @@ def beside_headline(assessment: Assessment) -> str:
     return "Beside the beam, no observer" if not count else f"Beside the beam, worst of {counted(count, 'observer')}"
 
 
+def left_out_reason(reason: str) -> str:
+    """The user's reason for leaving a hazard out, marked where it is still the starter file's."""
+    return f"{reason} (still an example, so it is judged all the same)" if is_placeholder(reason) else reason
+
+
 def left_out_words(assessment: Assessment) -> str:
     """Where the user left hazards out, what the verdict speaks of: "(skin only; not judged: retina thermal)"."""
-    out = [str(hazard) for hazard, _ in assessment.scene.not_judged]
+    rows = [row for observer in assessment.observers for row in observer.hazards]
+    out = [hazard for hazard in HAZARDS if any(row.hazard == hazard and row.not_judged for row in rows)]
     if not out:
         return ""
-    judged = {row.hazard for observer in assessment.observers for row in observer.hazards if not row.not_judged}
+    judged = {row.hazard for row in rows if not row.not_judged}
     kept = ", ".join(hazard for hazard in HAZARDS if hazard in judged) or "nothing"
     return f"({kept} only; not judged: {', '.join(out)})"

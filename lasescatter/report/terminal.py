@@ -10,7 +10,14 @@ from lasescatter.limits.verdict import BELOW
 from lasescatter.report.naming import named_line
 from lasescatter.report.quantities import digits, duration, length
 from lasescatter.report.ranking import counted, greatest, worst_first
-from lasescatter.report.standing import beam_headline, beside_headline, grouped, left_out_words, standing
+from lasescatter.report.standing import (
+    beam_headline,
+    beside_headline,
+    grouped,
+    left_out_reason,
+    left_out_words,
+    standing,
+)
 from lasescatter.report.typography import abridged, plain
 
 if TYPE_CHECKING:
@@ -38,7 +45,7 @@ def print_summary(assessment: Assessment, console: Console) -> None:
     page.say(f"{beside} {plain(left_out_words(assessment))}".rstrip(), style="bold")
     _observers(assessment, page)
     for hazard, reason in scene.not_judged:
-        page.item(abridged(f"{hazard}: not judged, {plain(reason)}", 300))
+        page.item(abridged(f"{hazard}: not judged, {plain(left_out_reason(reason))}", 300))
     page.gap()
     page.say("Before relying on it:", style="bold")
     for text in foremost():

@@ -10,7 +10,14 @@ from lasescatter.assessment.outcome import Assessment
 from lasescatter.limits.verdict import margin
 from lasescatter.report import quantities
 from lasescatter.report.naming import leg_sign, named_beam, named_line
-from lasescatter.report.standing import beam_headline, beside_headline, grouped, left_out_words, standing
+from lasescatter.report.standing import (
+    beam_headline,
+    beside_headline,
+    grouped,
+    left_out_reason,
+    left_out_words,
+    standing,
+)
 
 
 def test_an_open_verdict_has_no_margin(result: Assessment) -> None:
@@ -52,7 +59,10 @@ def test_headlines(result: Assessment) -> None:
     assert beam_headline(replace(result, in_the_beam=(weak,))) == "In the beam: up to 0.500 of the limit"
     assert beside_headline(result) == "Beside the beam, worst of 3 observers"
     assert left_out_words(result) == "(retina thermal only; not judged: skin)"
-    assert left_out_words(replace(result, scene=replace(result.scene, not_judged=()))) == ""
+    judged = tuple(replace(o, hazards=tuple(h for h in o.hazards if not h.not_judged)) for o in result.observers)
+    assert left_out_words(replace(result, observers=judged)) == ""
+    assert "so it is judged all the same" in left_out_reason("EXAMPLE: the rule of this room")
+    assert left_out_reason("the rule of this room") == "the rule of this room"
 
 
 def test_signs_are_never_cut(result: Assessment) -> None:
