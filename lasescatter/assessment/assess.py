@@ -185,7 +185,7 @@ def _judged(
 
 
 def _direct_within_reach(scene: Scene, fields: dict[str, LineField], index: int) -> list[tuple[str, str]]:
-    """Beams whose direct light comes nearer than the reach, or than three radii and half an aperture."""
+    """Beams whose direct light a head can get into: the reach, three beam radii and half an aperture added."""
     observer = scene.observers[index]
     aperture = max([limit.aperture for limit in scene.limits], default=PUPIL)
     passes: dict[str, dict[int, float]] = {}
@@ -194,7 +194,7 @@ def _direct_within_reach(scene: Scene, fields: dict[str, LineField], index: int)
             point = field.points[index : index + 1]
             distance = float(distance_to(leg, point)[0])
             cone = float(clearance(leg, field.line, point, REACHED_WITHIN_RADII, aperture)[0])
-            if distance < observer.reach or cone < 0:
+            if cone < observer.reach:
                 passes.setdefault(field.beam.name, {})[leg.number] = distance
     return [(beam, _reached(beam, legs)) for beam, legs in passes.items()]
 
@@ -208,7 +208,7 @@ def _gates(fields: dict[str, LineField], index: int) -> tuple[str, ...]:
     """Reasons outside the limits for which nothing may be called below."""
     gates = []
     for field in fields.values():
-        tau = float(field.thickness[index])
+        tau = float(field.thickness_within_reach[index])
         if tau > NOTHING_BELOW_ABOVE:
             gates.append(
                 f"the load is too thick for single scattering at {field.line.wavelength * 1e9:g} nm: optical "

@@ -55,6 +55,7 @@ def received(field: LineField, observer: int, limit: Limit, wall_points: Floats)
     if isinstance(taken, str):
         return taken
     raised = float(allowance(field.thickness[observer]))
+    raised_within_reach = float(allowance(field.thickness_within_reach[observer]))
     # Near a polarization null the light without polarization is the measure of relative errors.
     error = taken.error + field.mixture.error * max(taken.light, _plain(field, observer, taken.light))
     orders = taken.light * (raised - 1)
@@ -63,8 +64,8 @@ def received(field: LineField, observer: int, limit: Limit, wall_points: Floats)
         by_origin.append((HIGHER_ORDERS, orders))
     by_origin += [("stop", taken.stop), ("direct", taken.direct)]
     allowed = [
-        ("numerical error", error * raised),
-        ("reach, scattered", (taken.light_reach - taken.light) * raised),
+        ("numerical error", error * raised_within_reach),
+        ("reach, scattered", taken.light_reach * raised_within_reach - taken.light * raised),
         ("reach, stop", taken.stop_reach - taken.stop),
     ]
     if full_field(hazard_of(limit)) and not radiance:
@@ -125,11 +126,11 @@ def _peak(field: LineField, observer: int, aperture: float) -> _Taken | str:
             f'a leg of "{field.beam.name}" is seen, from within reach, so nearly end-on that its radiance is not '
             "defined by E4"
         )
-    light = float(sum(peak[observer] for peak, _, _ in peaks))
+    light = field.hot_spot * float(sum(peak[observer] for peak, _, _ in peaks))
     return _Taken(
         light=light,
         error=TABULATION_ERROR * light,
-        light_reach=max(light, float(sum(bound[observer] for _, bound, _ in peaks))),
+        light_reach=max(light, field.hot_spot * float(sum(bound[observer] for _, bound, _ in peaks))),
         stop=field.stop_radiance if field.stop_compared[observer] > 0 else 0.0,
         stop_reach=field.stop_radiance if field.sees_stop(observer) else 0.0,
         direct=0.0,

@@ -119,6 +119,15 @@ class LineField:
         )
 
     @property
+    def thickness_within_reach(self) -> Floats:
+        """Optical thickness that no place within reach exceeds by more than a sight line's new chord.
+
+        A sight line grows by the reach at most, twice the farthest distance by twice the reach.
+        """
+        extinction = sum(component.extinction for component in self.mixture.components)
+        return self.thickness + 2 * extinction * self.reaches
+
+    @property
     def within_reach(self) -> Floats:
         """Scattered irradiance that no place within reach exceeds, at any load fraction. [m⁻²]"""
         return np.sum([light.within_reach for light in self.lights], axis=0)

@@ -30,6 +30,8 @@ LEGS_ADDED = Assumption(
 # Places in each panel where the brightness is taken, from −1 to 1: the nodes of the integral, and both ends a little
 # inside, so that each panel has its own value on its side of a region's face.
 _PLACES = np.concatenate([[-1 + 1e-6], NODES, [1 - 1e-6]])
+# Into so many parts each panel is cut.
+PARTS = 4
 # Relative error of windows and peaks from the table.
 TABULATION_ERROR = 5e-3
 # Nodes tabulated together: bounds the memory.
@@ -85,7 +87,11 @@ def bright_line(light: LegLight, mixture: Mixture, points: Floats) -> BrightLine
     """Tabulate a leg's brightness on the panels of its converged integral."""
     edges = light.edges
     order = np.lexsort((edges.low, edges.owner))
-    owner, low, high = edges.owner[order], edges.low[order], edges.high[order]
+    # A panel can hold several ripples of a single size: straight lines between places need shorter ones.
+    owner = np.repeat(edges.owner[order], PARTS)
+    width = np.repeat((edges.high - edges.low)[order] / PARTS, PARTS)
+    low = np.repeat(edges.low[order], PARTS) + width * np.tile(np.arange(PARTS), len(order))
+    high = low + width
     parts = []
     for start in range(0, len(owner), MOST_PANELS_AT_ONCE):
         chosen = slice(start, start + MOST_PANELS_AT_ONCE)
@@ -188,16 +194,19 @@ def peak_radiance(
         np.maximum.at(radiance, owner, line.brightness(fraction) * scale / sine)
     reach = np.broadcast_to(np.asarray(reaches, dtype=float), count)[owner]
     turned = np.arcsin(np.clip(reach * sine / sight.b[owner], 0.0, 1.0))
-    least_sine = np.minimum(
-        np.sin(np.maximum(line.theta - turned, 0.0)), np.sin(np.minimum(line.theta + turned, np.pi))
-    )
-    end_on = width > leg.length * least_sine
+    # An element within reach can be seen under any angle.
+    turned = np.where(reach * sine >= sight.b[owner], np.pi, turned)
+    first, last = np.maximum(line.theta - turned, 0.0), np.minimum(line.theta + turned, np.pi)
+    least_sine = np.maximum(np.minimum(np.sin(first), np.sin(last)), 0.0)
+    least_sine = np.where((first <= 0) | (last >= np.pi), 0.0, least_sine)
+    # Seen from within reach under every angle, or under one so small that d/sin(theta) exceeds the leg.
+    end_on = (least_sine <= 0) | (width / leg.length > least_sine)
     density = mixture.densities(leg.origin + s[..., None] * leg.direction) * leg.reflected / (4 * np.pi)
     bright = np.zeros_like(s)
     for component, amount in zip(mixture.components, density, strict=True):
         bright += amount * component.matrix.greatest_near(line.theta, turned)
     bound = np.zeros(count)
-    with np.errstate(divide="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore"):
         np.maximum.at(bound, owner, np.where(end_on, 0.0, bright / (width * least_sine) * PEAK_OVER_MEAN[profile]))
     void = np.zeros(count, dtype=bool)
     np.logical_or.at(void, owner, end_on)

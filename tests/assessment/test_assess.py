@@ -507,3 +507,27 @@ def test_a_role_that_vouches_is_somebody():
 
     assert fraction("duty laser safety officer") == 1.0
     assert fraction("EXAMPLE: role") == fraction(None) < 1.0
+
+
+@pytest.mark.parametrize("distance", [0.2505, 0.252, 0.26, 0.27, 0.3])
+def test_no_place_within_reach_of_a_below_is_in_direct_light(distance):
+    """Reach and beam add: a head at 0.252 m that moves 0.25 m is in the beam."""
+    home = only(bay(loads=(), observers=(observer(position=(4.0, distance, 1.2), reach=0.25),)))
+    moved = only(bay(loads=(), observers=(observer(position=(4.0, distance - 0.25, 1.2), reach=0.0),)))
+    if moved.verdict != "below limit":
+        assert home.verdict != "below limit"
+    if home.verdict == "below limit":
+        assert moved.verdict == "below limit"
+
+
+def test_thickness_allows_for_the_reach():
+    """Just under the step at optical thickness 0.1 the upper bound already takes the place behind it."""
+    everywhere = haze(reading=LoadReading("extinction", 0.00125, 532e-9), region=Everywhere())
+    plain = replace(bay().beams[0].lines[0], polarization="unpolarized", electric_field=None)
+    path = replace(bay().beams[0], lines=(plain,), points=((0.0, 0.0, 1.2), (1.0, 0.0, 1.2)),
+                   stop=Stop(0.0, (-1.0, 0.0, 0.0)))  # fmt: skip
+    scene = bay(beams=(path,), loads=(everywhere,), limits=(limit(), skin()))
+    home = only(replace(scene, observers=(observer(position=(0.5, 39.58, 1.2), reach=0.1),)))
+    there = only(replace(scene, observers=(observer(position=(0.5, 39.68, 1.2), reach=0.0),)))
+    assert home.optical_thickness < 0.1 < there.optical_thickness
+    assert home.comparisons[0].ratio_high >= there.comparisons[0].ratio

@@ -112,3 +112,35 @@ def test_end_on_is_void_also_from_within_reach(place, reach):
     _, bright = lit(medium, np.array([place]))
     _, _, void = peak_radiance(bright, line(), "gaussian", np.ones(1), reach, medium)
     assert void[0]
+
+
+def test_ripples_of_large_single_spheres_are_resolved():
+    """20 µm drops of one size ripple every 13 mrad: windows and peak against elements of the beam."""
+    from lasescatter.optics.sizes import particle_optics
+    from lasescatter.scene import SingleSize, SizeMode
+
+    matrix = particle_optics((SizeMode(SingleSize(20e-6)),), 1.33 + 0j, 532e-9).matrix
+    medium = mixture(component(matrix, 0.01, 0.0, box(1.0, 3.0)))
+    _, bright = lit(medium)
+    for acceptance in (0.0015, 0.011, 0.1):
+        found = brightest_window(bright, acceptance, np.ones(len(POINTS)))
+        for i, point in enumerate(POINTS):
+            best, _ = brute_windows(1.0, 3.0, matrix, 0.01, 0.0, point, acceptance)
+            assert_allclose(found.irradiance[i], best, rtol=TABULATION_ERROR)
+    source = line(diameter=3e-3 * math.sqrt(2), divergence=0.0)
+    radiance, _, _ = peak_radiance(bright, source, "gaussian", np.ones(len(POINTS)), 0.0, medium)
+    for i, point in enumerate(POINTS):
+        s = np.linspace(1.0, 3.0, 400_001)
+        angle = np.arctan2(math.hypot(point[1], point[2]), point[0] - s)
+        seen = 0.01 / (4 * math.pi) * matrix.at(angle)[0] / (3e-3 * np.sin(angle)) * 2 / math.sqrt(math.pi)
+        assert_allclose(radiance[i], seen.max(), rtol=TABULATION_ERROR)
+
+
+def test_endless_leg_within_reach_is_void_not_a_crash():
+    endless = leg([0, 0, 0], direction=[1, 0, 0])
+    medium = mixture(component(isotropic(), 0.01))
+    points = np.array([[3.0, 0.1, 0.0], [3.0, 2.0, 0.0]])
+    light = scattered((endless,), (PLAIN,), medium, points, np.zeros((1, 2)), 0.25)[0].light
+    _, bound, void = peak_radiance(bright_line(light, medium, points), line(), "gaussian", np.ones(2), 0.25, medium)
+    assert void[0]
+    assert np.isfinite(bound).all()
