@@ -201,16 +201,6 @@ def test_extinction_of_the_load_comes_out_as_stated():
         assert by_number.mass is None
 
 
-def test_glycol_haze_mass_extinction_is_the_tabulated_one():
-    """Droplets of mass-median diameter 0.7 µm, GSD 1.5, 1.06 g/cm³, n = 1.42: 6.28 m²/g and g = 0.760 at 532 nm
-    (computed reference table for non-absorbing droplets, mark K)."""
-    median = 0.35e-6 * math.exp(-3 * math.log(1.5) ** 2)
-    load = haze(sizes=(SizeMode(Lognormal(median, 1.5)),), index=1.42 + 0j, reading=LoadReading("mass", 1e-6))
-    component = next(c for c in assess(bay(loads=(load,))).components if c.name == "test haze")
-    assert component.mass_extinction == pytest.approx(6280, rel=0, abs=5)
-    assert component.asymmetry == pytest.approx(0.760, rel=0, abs=5e-4)
-
-
 def test_sizes_outside_the_range_name_their_key():
     with pytest.raises(SiteError, match=r'particles\["test haze"\]\.sizes'):
         assess(bay(loads=(haze(sizes=(SizeMode(SingleSize(5e-3)),)),)))

@@ -47,10 +47,12 @@ def test_diffuse_distance(case):
     assert there == pytest.approx(given["limit_w_m2"], rel=2 * rounding, abs=0)
 
 
-def test_tros_example_over_seven_millimetres():
-    """100 mW, 1064 nm, d63 = 2 mm: 2598 W/m² over 7 mm (inputs: TROS Laserstrahlung Teil 2 section 5.1; result D)."""
-    radius = 2e-3 / math.sqrt(2)
-    assert 0.1 * float(aperture_mean("gaussian", radius, 0.0, 7e-3)) == pytest.approx(2598, rel=0, abs=0.5)
+@pytest.mark.parametrize("case", [c for c in CASES if c["quantity"] == "mean over aperture"], ids=lambda c: c["name"])
+def test_mean_over_aperture(case):
+    given = case["inputs"]
+    radius = given["diameter_1e_m"] / math.sqrt(2)
+    mean = given["power_w"] * float(aperture_mean("gaussian", radius, 0.0, given["aperture_m"]))
+    assert mean == printed(case["printed"])
 
 
 def test_gaussian_peak_formula():
