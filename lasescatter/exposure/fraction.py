@@ -76,8 +76,7 @@ def greatest_over_fraction(lights: tuple[IntegratedLeg, ...], mixture: Mixture, 
             rises = total(second) > total(first)
             low, high = np.where(rises, first, low), np.where(rises, high, second)
         middle = (low + high) / 2
-        candidates = np.stack([best, middle])
-        best = np.where(total(middle) > tried.max(axis=0), candidates[1], candidates[0])
+        best = np.where(total(middle) > tried.max(axis=0), middle, best)
     irradiance = total(best)
     error = np.zeros(count)
     at_best, offset = values(best), 0
