@@ -10,6 +10,8 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Literal
 
+from lasescatter.matter import ENTERED, HenyeyGreenstein, Material, MeasuredMatrix, SizeMode, SizeSpan, Trust
+
 Vector = tuple[float, float, float]
 
 Polarization = Literal["linear", "circular", "unpolarized", "unknown"]
@@ -30,14 +32,17 @@ QUANTITY_UNITS: dict[Quantity, str] = {
 
 @dataclass(frozen=True)
 class Air:
-    """Uniform air. Humidity is carried for the record; molecules are taken as dry air."""
+    """The air: uniform, or the standard atmosphere over the site."""
 
     temperature: float = 293.15
-    """[K]"""
+    """At z = 0. [K]"""
     pressure: float = 101_325.0
-    """[Pa]"""
+    """At z = 0. [Pa]"""
     relative_humidity: float = 0.0
     """0 to 1"""
+    model: Literal["uniform", "standard atmosphere"] = "uniform"
+    ground_altitude: float = 0.0
+    """Altitude of z = 0 above sea level, for the standard atmosphere. [m]"""
 
 
 @dataclass(frozen=True)
@@ -107,53 +112,33 @@ class Beam:
     key: str
 
 
-@dataclass(frozen=True)
-class Lognormal:
-    """Lognormal number distribution."""
-
-    median_radius: float
-    """Number (count) median. [m]"""
-    geometric_sd: float
-
-
-@dataclass(frozen=True)
-class ModifiedGamma:
-    """n(r) ∝ r^alpha exp(−(alpha/gamma) (r/mode_radius)^gamma)."""
-
-    mode_radius: float
-    """[m]"""
-    alpha: float
-    gamma: float
-
-
-@dataclass(frozen=True)
-class SingleSize:
-    """All particles of one radius."""
-
-    radius: float
-    """[m]"""
-
-
-SizeShape = Lognormal | ModifiedGamma | SingleSize
-
-
-@dataclass(frozen=True)
-class SizeMode:
-    """One mode of a size distribution; weights are fractions by number and sum to 1."""
-
-    shape: SizeShape
-    weight: float = 1.0
+ReadingKind = Literal[
+    "extinction",
+    "mass",
+    "number",
+    "meteorological_optical_range",
+    "visual_range",
+    "obscuration",
+    "optical_density",
+    "attenuation",
+    "transmittance",
+]
 
 
 @dataclass(frozen=True)
 class LoadReading:
     """What was measured of a load."""
 
-    kind: Literal["extinction", "mass", "number"]
+    kind: ReadingKind
     value: float
-    """Extinction coefficient [m⁻¹], mass concentration [kg m⁻³] or number concentration [m⁻³]."""
+    """Extinction coefficient [m⁻¹], mass concentration [kg m⁻³], number concentration [m⁻³], range [m], share of
+    light lost over `over`, optical density per length [m⁻¹], decibels per length [dB m⁻¹], share left over `over`."""
     at: float | None = None
-    """Wavelength of an extinction reading. [m]"""
+    """Wavelength of an optical reading; 550 nm for the two ranges; None for mass and number. [m]"""
+    over: float | None = None
+    """Length of a reading of obscuration or transmittance. [m]"""
+    basis: Literal["dry", "ambient"] | None = None
+    """Mass without or with the water taken up; None for other readings."""
 
 
 @dataclass(frozen=True)
@@ -174,19 +159,29 @@ Region = Everywhere | Box
 
 @dataclass(frozen=True)
 class Load:
-    """One `[[particles]]` entry."""
+    """One `[[particles]]` entry.
+
+    Either spheres (`modes` and `material`), or a stand-in (`stand_in` and `albedo`) that has neither size nor mass.
+    """
 
     name: str
-    sizes: tuple[SizeMode, ...]
-    index: complex
-    """n + ik with k ≥ 0 (time factor exp(−iωt))."""
-    density: float | None
-    """[kg m⁻³]; needed for a load given by mass."""
+    modes: tuple[SizeMode, ...]
+    """Dry sizes; empty for a stand-in."""
+    material: Material | None
+    """Of the modes that carry none of their own; None for a stand-in."""
     reading: LoadReading
     region: Region
     steady_by: str | None
     """Role that vouches that the load neither thins nor clears."""
     key: str
+    kind: str = ""
+    """Name of the kind in the catalogue, or ""."""
+    trust: Trust = ENTERED
+    size_span: SizeSpan | None = None
+    """Set where a kind's size is uncertain and the user has not stated it."""
+    stand_in: MeasuredMatrix | HenyeyGreenstein | None = None
+    albedo: float | None = None
+    """Scattered share of the extinction, with a stand-in."""
 
 
 @dataclass(frozen=True)
@@ -271,3 +266,7 @@ class Scene:
     inputs: tuple[InputLine, ...] = field(repr=False, default=())
     source: dict = field(repr=False, default_factory=dict)
     """The site file as read (plain JSON types), for the record."""
+    files: dict = field(repr=False, default_factory=dict)
+    """Text of every file that the site file names, by its name."""
+    rules: dict = field(repr=False, default_factory=dict)
+    """Kinds and indices of the catalogue in use, as read: {"particles": {name: …}, "indices": {name: …}}."""

@@ -10,9 +10,10 @@ import lasescatter
 PACKAGE = Path(lasescatter.__file__).parent
 
 # What each room may import of the package, besides itself.
-SHARED = {"scene", "problems", "assumptions", "rules", "cautions"}
+SHARED = {"matter", "scene", "problems", "assumptions", "rules", "cautions"}
 MAY_IMPORT = {
-    "scene": set(),
+    "matter": set(),
+    "scene": {"matter"},
     "problems": set(),
     "assumptions": set(),
     "rules": set(),

@@ -12,7 +12,8 @@ from dataclasses import dataclass, field
 from lasescatter.assumptions import Assumption
 from lasescatter.limits.compare import Comparison, HazardJudgement
 from lasescatter.limits.verdict import Verdict
-from lasescatter.scene import Scene, Vector
+from lasescatter.matter import ENTERED, Trust
+from lasescatter.scene import LoadReading, Scene, Vector
 
 
 @dataclass(frozen=True)
@@ -29,13 +30,13 @@ class ComponentSummary:
     albedo: float
     asymmetry: float
     number: float | None
-    """Number concentration. [m⁻³]"""
+    """Number concentration. [m⁻³]; None for air and for a stand-in."""
     mass: float | None
-    """Mass concentration. [kg m⁻³]; None where no density is stated."""
+    """Mass concentration, water included. [kg m⁻³]; None where no density is stated."""
     mass_extinction: float | None
-    """[m² kg⁻¹]"""
+    """Per mass, water included. [m² kg⁻¹]"""
     effective_radius: float | None
-    """[m]"""
+    """As they float, water included. [m]"""
     size_nodes: int | None
     """Radii that the average over sizes took."""
     error_f11: float | None
@@ -52,6 +53,35 @@ class ComponentSummary:
     running_12: tuple[float, ...] = field(repr=False)
     """Integral of F12/(4π) likewise (of |F12| where the axis is unknown, `running_12_abs`)."""
     running_12_abs: tuple[float, ...] = field(repr=False)
+    kind: str = ""
+    """Name of the kind in the catalogue, or ""."""
+    index: complex | None = None
+    """As they float, of the first mode; None for air and for a stand-in."""
+    growth_factor: float = 1.0
+    """Largest radius over dry radius of its modes; 1 where no water is taken up."""
+    dry_mass: float | None = None
+    """Mass concentration without the water taken up. [kg m⁻³]"""
+    trust: Trust = ENTERED
+    """As it counts at this wavelength."""
+    equivalents: tuple[LoadReading, ...] = ()
+    """What instruments would read of this load."""
+
+
+@dataclass(frozen=True)
+class SizeMovement:
+    """How scattered light moves over the sizes that a load's kind may have."""
+
+    load: str
+    kind: str
+    what: str
+    """The size that moves: "mass median diameter"."""
+    usual: float
+    """[m]"""
+    sizes: tuple[float, ...]
+    """Ascending, the usual one among them. [m]"""
+    scattered: tuple[tuple[float, ...], ...]
+    """Per observer, per size: scattered light as compared, all lines together. [W m⁻²]"""
+    source: str
 
 
 @dataclass(frozen=True)
@@ -259,6 +289,8 @@ class Assessment:
     components: tuple[ComponentSummary, ...]
     in_the_beam: tuple[InTheBeam, ...]
     observers: tuple[ObserverOutcome, ...]
+    size_movements: tuple[SizeMovement, ...]
+    """One for each load whose kind has an uncertain size that the user has not stated."""
     assumptions: tuple[Assumption, ...]
     cautions: tuple[str, ...]
     """All of rules/cautions.toml, those that matter most first."""

@@ -28,6 +28,8 @@ class Component:
     """True for air and for loads that somebody vouches for: the load fraction does not act on it."""
     error: float = 0.0
     """Estimated relative error of the matrix at its worst angle."""
+    trust: float = 1.0
+    """Factor by which its scattered light may be off beyond that."""
 
 
 @dataclass(frozen=True)

@@ -11,8 +11,8 @@ from math import exp, lgamma, log, pi, sqrt
 import numpy as np
 from numpy.typing import NDArray
 
+from lasescatter.matter import Lognormal, ModifiedGamma, SizeShape
 from lasescatter.optics.partial_waves import SizeRangeError
-from lasescatter.scene import Lognormal, ModifiedGamma, SizeShape
 
 # Points of the grid on which tails are weighed.
 _FINE = 4001

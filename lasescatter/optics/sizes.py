@@ -14,12 +14,12 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
+from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode
 from lasescatter.optics import cosines, distributions
 from lasescatter.optics.angular import AngularTables
 from lasescatter.optics.matrix import SPLINE_ERROR, ScatteringMatrix, from_series
 from lasescatter.optics.mie import SphereSum, averaged, block_edges, block_sum, work
 from lasescatter.optics.partial_waves import SizeRangeError, check_index, check_size_parameter
-from lasescatter.scene import Lognormal, ModifiedGamma, SingleSize, SizeMode
 
 # Error estimate = margin × the last change, or a third of the change before where this is more. The margin is
 # larger where steps in size parameter are so wide that all resonances of a panel may have been missed twice.
@@ -65,10 +65,10 @@ class ParticleOptics:
     """[m²]"""
     albedo: float
     asymmetry: float
-    volume: float
-    """Mean volume of a particle, over all radii. [m³]"""
-    effective_radius: float
-    """Mean of r³ over mean of r². [m]"""
+    volume: float | None
+    """Mean volume of a particle. [m³]; None for a stand-in"""
+    effective_radius: float | None
+    """Mean of r³ over mean of r². [m]; None for a stand-in"""
     matrix: ScatteringMatrix = field(repr=False)
     nodes: int
     """Radii that the average took."""

@@ -7,18 +7,8 @@ from typing import Annotated, Any, Literal, cast
 
 from pydantic import field_validator
 
-from lasescatter.scene import (
-    Box,
-    Everywhere,
-    Load,
-    LoadReading,
-    Lognormal,
-    ModifiedGamma,
-    Region,
-    SingleSize,
-    SizeMode,
-    SizeShape,
-)
+from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode, SizeShape
+from lasescatter.scene import Box, Everywhere, Load, LoadReading, Region
 from lasescatter.site.contract import NOT_BUILT_REGIONS, NOT_BUILT_SIZES
 from lasescatter.site.faults import Fault, Place, quoted, refusal
 from lasescatter.site.fields import (

@@ -7,18 +7,8 @@ from dataclasses import replace
 from exposure.beams import beam, line
 from limits.entries import blue, limit, observer, skin
 
-from lasescatter.scene import (
-    Air,
-    Box,
-    Everywhere,
-    LengthUnit,
-    Load,
-    LoadReading,
-    Lognormal,
-    Scene,
-    SizeMode,
-    Stop,
-)
+from lasescatter.matter import Lognormal, SizeMode
+from lasescatter.scene import Air, Box, Everywhere, LengthUnit, Load, LoadReading, Scene, Stop
 
 
 def haze(**changes) -> Load:

@@ -10,8 +10,9 @@ from assessment.sites import Everywhere, LoadReading, bay, beam, haze, limit, li
 from numpy.testing import assert_allclose
 
 from lasescatter.assessment.assess import assess
+from lasescatter.matter import Lognormal, SingleSize, SizeMode
 from lasescatter.problems import SiteError
-from lasescatter.scene import Lognormal, Pulses, SingleSize, SizeMode, Stop
+from lasescatter.scene import Pulses, Stop
 
 
 def only(scene):

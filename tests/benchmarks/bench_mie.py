@@ -17,12 +17,12 @@ from collections.abc import Callable
 import miepython
 import numpy as np
 
+from lasescatter.matter import Lognormal, ModifiedGamma, SizeMode, SizeShape
 from lasescatter.optics.angular import AngularTables
 from lasescatter.optics.distributions import density, log_radius_limits
 from lasescatter.optics.mie import averaged, sphere
 from lasescatter.optics.partial_waves import series_length
 from lasescatter.optics.sizes import particle_optics
-from lasescatter.scene import Lognormal, ModifiedGamma, SizeMode, SizeShape
 
 WAVELENGTH = 532e-9
 DISTRIBUTIONS: list[tuple[str, Lognormal | ModifiedGamma, complex, int]] = [

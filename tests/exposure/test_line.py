@@ -116,8 +116,8 @@ def test_end_on_is_void_also_from_within_reach(place, reach):
 
 def test_ripples_of_large_single_spheres_are_resolved():
     """20 µm drops of one size ripple every 13 mrad: windows and peak against elements of the beam."""
+    from lasescatter.matter import SingleSize, SizeMode
     from lasescatter.optics.sizes import particle_optics
-    from lasescatter.scene import SingleSize, SizeMode
 
     matrix = particle_optics((SizeMode(SingleSize(20e-6)),), 1.33 + 0j, 532e-9).matrix
     medium = mixture(component(matrix, 0.01, 0.0, box(1.0, 3.0)))

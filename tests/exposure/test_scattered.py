@@ -97,8 +97,8 @@ def test_flux_through_a_closed_surface_equals_the_power_scattered(kind):
 
 def test_flux_through_a_closed_surface_for_mie_spheres():
     """The same for water-like drops of 1 µm median, whose light goes mostly forward."""
+    from lasescatter.matter import Lognormal, SizeMode
     from lasescatter.optics.sizes import particle_optics
-    from lasescatter.scene import Lognormal, SizeMode
 
     optics = particle_optics((SizeMode(Lognormal(0.4e-6, 1.5)),), 1.43 + 1e-6j, 532e-9)
     _closed_surface(optics.matrix, linear([0, 0.6, 0.8]))

@@ -7,10 +7,10 @@ import pytest
 from published.printed import printed
 from scipy import stats
 
+from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize
 from lasescatter.optics import cosines
 from lasescatter.optics.distributions import check_shape, density, log_radius_limits, mean_power
 from lasescatter.optics.mie import SizeRangeError, averaged
-from lasescatter.scene import Lognormal, ModifiedGamma, SingleSize
 
 SHAPES = [
     Lognormal(0.3e-6, 1.05),

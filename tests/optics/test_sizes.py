@@ -8,11 +8,11 @@ import miepython
 import numpy as np
 import pytest
 
+from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode
 from lasescatter.optics.distributions import density, log_radius_limits, mean_power
 from lasescatter.optics.matrix import from_series
 from lasescatter.optics.mie import SizeRangeError, averaged, sphere
 from lasescatter.optics.sizes import Accuracy, particle_optics
-from lasescatter.scene import Lognormal, ModifiedGamma, SingleSize, SizeMode
 
 WAVELENGTH = 532e-9
 ANGLES = np.linspace(0, np.pi, 9001)

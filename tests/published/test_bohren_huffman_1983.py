@@ -7,9 +7,9 @@ import pytest
 from published.printed import cases, of
 from scipy.interpolate import CubicSpline
 
+from lasescatter.matter import SingleSize, SizeMode
 from lasescatter.optics.mie import sphere
 from lasescatter.optics.sizes import particle_optics
-from lasescatter.scene import SingleSize, SizeMode
 
 CASES = cases("bohren_huffman_1983.toml")
 EFFICIENCIES = {"extinction efficiency": "q_ext", "scattering efficiency": "q_sca", "backscatter efficiency": "q_back"}

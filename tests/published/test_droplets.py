@@ -9,7 +9,7 @@ from assessment.sites import LoadReading, bay, haze
 from published.printed import cases, of
 
 from lasescatter.assessment.assess import assess
-from lasescatter.scene import Lognormal, SizeMode
+from lasescatter.matter import Lognormal, SizeMode
 
 
 @pytest.mark.parametrize("case", cases("droplets.toml"), ids=lambda c: c["quantity"])

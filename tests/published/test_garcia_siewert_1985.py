@@ -9,8 +9,8 @@ import pytest
 from published.legendre import moments
 from published.printed import cases, of
 
+from lasescatter.matter import ModifiedGamma, SizeMode
 from lasescatter.optics.sizes import Accuracy, particle_optics
-from lasescatter.scene import ModifiedGamma, SizeMode
 
 CASES = cases("garcia_siewert_1985.toml")
 

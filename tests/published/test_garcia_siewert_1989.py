@@ -7,8 +7,8 @@ import pytest
 from published.legendre import moments
 from published.printed import cases, of
 
+from lasescatter.matter import ModifiedGamma, SizeMode
 from lasescatter.optics.sizes import Accuracy, ParticleOptics, particle_optics
-from lasescatter.scene import ModifiedGamma, SizeMode
 
 CASES = cases("garcia_siewert_1989.toml")
 

@@ -26,6 +26,7 @@ from lasescatter.assumptions import Assumption
 from lasescatter.cautions import cautions
 from lasescatter.limits.compare import Comparison, HazardJudgement
 from lasescatter.limits.verdict import ABOVE, BELOW, NOT_ESTABLISHED, Verdict, worst
+from lasescatter.matter import Lognormal, SizeMode
 from lasescatter.scene import (
     Air,
     Beam,
@@ -37,11 +38,9 @@ from lasescatter.scene import (
     Line,
     Load,
     LoadReading,
-    Lognormal,
     Observer,
     Pulses,
     Scene,
-    SizeMode,
     Stop,
     Vector,
 )

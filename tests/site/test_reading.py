@@ -14,20 +14,9 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 from site_cases import GOOD, changed
 
+from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode
 from lasescatter.problems import SiteError
-from lasescatter.scene import (
-    Air,
-    Box,
-    Everywhere,
-    LoadReading,
-    Lognormal,
-    ModifiedGamma,
-    Pulses,
-    Scene,
-    SingleSize,
-    SizeMode,
-    Stop,
-)
+from lasescatter.scene import Air, Box, Everywhere, LoadReading, Pulses, Scene, Stop
 from lasescatter.site.reading import MOST_ENTRIES, MOST_LINES, MOST_PROBLEMS, read_site, read_site_text
 from lasescatter.site.syntax import LARGEST_FILE
 
