@@ -82,6 +82,7 @@ def concentration(load: Load, optics_at: Callable[[float], ParticleOptics], any_
     A reading of extinction is carried to other wavelengths through the particles' own spectrum.
     """
     reading = load.reading
+    density = None if load.material is None else load.material.density
     if reading.kind == "extinction":
         at = any_wavelength if reading.at is None else reading.at
         optics = optics_at(at)
@@ -91,10 +92,10 @@ def concentration(load: Load, optics_at: Callable[[float], ParticleOptics], any_
         if reading.kind == "number":
             number = reading.value
         else:
-            if load.density is None:
+            if density is None:
                 raise ValueError(f"{load.key}: a load by mass needs the particles' density")
-            number = reading.value / (load.density * optics.volume)
-    mass = None if load.density is None else number * load.density * optics.volume
+            number = reading.value / (density * optics.volume)
+    mass = None if density is None else number * density * optics.volume
     return Concentration(number, mass)
 
 

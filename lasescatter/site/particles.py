@@ -7,7 +7,7 @@ from typing import Annotated, Any, Literal, cast
 
 from pydantic import field_validator
 
-from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode, SizeShape
+from lasescatter.matter import Lognormal, Material, ModifiedGamma, SingleSize, SizeMode, SizeShape
 from lasescatter.scene import Box, Everywhere, Load, LoadReading, Region
 from lasescatter.site.contract import NOT_BUILT_REGIONS, NOT_BUILT_SIZES
 from lasescatter.site.faults import Fault, Place, quoted, refusal
@@ -218,8 +218,8 @@ class ParticlesTable(Table):
             ledger.took((*place, "steady_by"), "nobody: the load may thin and clear")
         total = sum(mode.weight or 1.0 for mode in self.sizes)
         return Load(
-            name=self.name, sizes=tuple(SizeMode(mode.to_scene(), (mode.weight or 1.0) / total) for mode in self.sizes),
-            index=self.index, density=None if self.density is None else float(self.density),
-            reading=LoadReading(kind, value, at), region=self.region.to_scene(), steady_by=self.steady_by,
+            name=self.name, modes=tuple(SizeMode(mode.to_scene(), (mode.weight or 1.0) / total) for mode in self.sizes),
+            material=Material(self.index, None if self.density is None else float(self.density)),
+            reading=LoadReading(kind, value, at, basis="dry" if kind == "mass" else None), region=self.region.to_scene(), steady_by=self.steady_by,
             key=ledger.spell(place),
         )  # fmt: skip

@@ -14,7 +14,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 from site_cases import GOOD, changed
 
-from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode
+from lasescatter.matter import Lognormal, Material, ModifiedGamma, SingleSize, SizeMode
 from lasescatter.problems import SiteError
 from lasescatter.scene import Air, Box, Everywhere, LoadReading, Pulses, Scene, Stop
 from lasescatter.site.reading import MOST_ENTRIES, MOST_LINES, MOST_PROBLEMS, read_site, read_site_text
@@ -121,20 +121,21 @@ def test_the_diffraction_limit_named_in_the_message_is_itself_accepted():
 
 def test_particles():
     (haze,) = CONTINUOUS.loads
-    assert haze.sizes == (SizeMode(Lognormal(0.5e-6, 1.6), 1.0),) and haze.index == 1.43 + 1e-6j
-    assert haze.density == 1060.0 and haze.steady_by == "haze operator"
+    assert haze.modes == (SizeMode(Lognormal(0.5e-6, 1.6), 1.0),)
+    assert haze.material == Material(1.43 + 1e-6j, 1060.0) and haze.steady_by == "haze operator"
     assert haze.reading == LoadReading("extinction", 0.01, 532e-9)
     assert haze.region == Box((1.0, -2.0, 0.0), (8.0, 2.0, 3.0))
     (fog,) = PULSED.loads
-    assert fog.sizes == (SizeMode(ModifiedGamma(4e-6, 6.0, 1.0), 0.4), SizeMode(SingleSize(0.25e-6), 0.6))
-    assert fog.reading == LoadReading("mass", 12e-6, None) and fog.region == Everywhere() and fog.index == 1.33
+    assert fog.modes == (SizeMode(ModifiedGamma(4e-6, 6.0, 1.0), 0.4), SizeMode(SingleSize(0.25e-6), 0.6))
+    assert fog.reading == LoadReading("mass", 12e-6, basis="dry")
+    assert fog.region == Everywhere() and fog.material == Material(1.33, 1000.0)
     (mist,) = COUNTED.loads
-    assert mist.index == 1.34 and mist.reading == LoadReading("number", 100e6, None)
+    assert mist.material == Material(1.34, None) and mist.reading == LoadReading("number", 100e6, None)
 
 
 def test_weights_a_little_off_one_are_made_to_add_up():
     scene = scene_with(("weight = 0.6", "weight = 0.5995"), base="good_pulsed")
-    assert math.fsum(mode.weight for mode in scene.loads[0].sizes) == pytest.approx(1, rel=1e-15)
+    assert math.fsum(mode.weight for mode in scene.loads[0].modes) == pytest.approx(1, rel=1e-15)
 
 
 def test_the_wavelength_of_an_extinction_may_be_left_out_for_one_wavelength():
@@ -154,7 +155,7 @@ def test_the_wavelength_of_an_extinction_may_be_left_out_for_one_wavelength():
     ],
 )
 def test_refractive_indices(text, index):
-    assert scene_with(('"1.43 + 1e-6i"', text)).loads[0].index == index
+    assert scene_with(('"1.43 + 1e-6i"', text)).loads[0].material.index == index
 
 
 def test_observers():
