@@ -35,6 +35,7 @@ _NAMES: Mapping[str, str] = {
     "pressure": "Pa=pascal hPa=hectopascal kPa=kilopascal mbar=millibar bar=bar",
     "temperature": "K=kelvin degC=degree_Celsius degF=degree_Fahrenheit",
     "fraction": "%=percent",
+    "decibel": "dB=dimensionless",
 }
 
 UNITS: Mapping[str, tuple[str, str]] = {
@@ -52,6 +53,7 @@ _OTHER_NAMES: Mapping[str, str] = {
     "ster": "sr", "steradian": "sr", "hertz": "Hz", "c": "degC", "f": "degF", "celsius": "degC", "fahrenheit": "degF",
     "kelvin": "K", "percent": "%", "pct": "%", "gram": "g", "grams": "g", "cc": "cm^3", "liter": "L", "litre": "L",
     "gr": "g", "atm": "hPa", "torr": "hPa", "mmHg": "hPa", "mb": "mbar",
+    "db": "dB", "decibel": "dB", "decibels": "dB",
 }  # fmt: skip
 
 _LENGTHS = ("m", "cm", "mm", "um", "nm", "km", "ft", "in")
@@ -115,6 +117,19 @@ KINDS: Mapping[str, Kind] = {
     "extinction": Kind(
         "an extinction coefficient", "/m", "1/meter", ("m", "cm", "mm", "km", "ft"), ({"length": -1},),
         ("/m", "/km", "/cm", "/ft"),
+    ),
+    "optical density": Kind(
+        "an optical density per length", "/m", "1/meter", ("m", "cm", "mm", "km", "ft"), ({"length": -1},),
+        ("/m", "/ft", "/km"),
+    ),
+    "attenuation": Kind(
+        "an attenuation in decibels per length", "dB/m", "1/meter", ("dB", "m", "cm", "mm", "km", "ft"),
+        ({"decibel": 1, "length": -1},), ("dB/m", "dB/km", "dB/ft"),
+    ),
+    # Shares lost do not add up along a path: only `parse_obscuration` gives what can be computed with.
+    "obscuration": Kind(
+        "an obscuration in per cent per length", "%/m", "percent/meter", ("%", *_LENGTHS),
+        ({"fraction": 1, "length": -1},), ("%/m", "%/ft"),
     ),
     "mass concentration": Kind(
         "a mass concentration", "kg/m³", "kilogram/meter**3", (*_MASSES, "m", "cm", "L"),
@@ -180,14 +195,58 @@ def parse_quantity(text: str, kind: str) -> float:
     QuantityError
         For anything else: no unit or one that does not fit, nan, inf, an absurd exponent, junk.
     """
-    due = KINDS[kind]
+    number, exponents = _taken_apart(text, kind)
+    if set(_sorts(exponents)) == {"temperature"}:
+        return float(_kelvin(number, next(iter(exponents))))
+    return float(number * _factor(tuple(sorted(exponents.items())), KINDS[kind].target))
+
+
+def parse_obscuration(text: str) -> tuple[float, float]:
+    """Light lost over a length: "5 %/ft" is (0.05, 0.3048).
+
+    Returns
+    -------
+    share, length : float
+        The share of the light lost over one of the unit's lengths, and that length [m].
+
+    Raises
+    ------
+    QuantityError
+        As `parse_quantity`.
+    """
+    number, exponents = _taken_apart(text, "obscuration")
+    ((name, _),) = ((name, exponent) for name, exponent in exponents.items() if UNITS[name][0] == "length")
+    return float(number * _factor((("%", 1),), "dimensionless")), float(_factor(((name, 1),), "meter"))
+
+
+def unit_factor(unit: str, kind: str) -> Decimal:
+    """SI value of one of a unit, as in the header of a table: "um" of a length is 1e-6.
+
+    Raises
+    ------
+    QuantityError
+        For a unit that does not fit the kind. Temperatures have no factor.
+    """
+    if len(unit) > _LONGEST_TEXT:
+        raise QuantityError(unit[:_LONGEST_TEXT], "is far too long for a unit", _say_due(kind))
+    exponents = _fitting_exponents(unit, unit, kind)
+    return _factor(tuple(sorted(exponents.items())), KINDS[kind].target)
+
+
+def _taken_apart(text: str, kind: str) -> tuple[Decimal, dict[str, int]]:
+    """The number in front, and the exponent of each unit name behind it."""
     if len(text) > _LONGEST_TEXT:
         raise QuantityError(text[:_LONGEST_TEXT], "is far too long for a value", _say_due(kind))
-    plain = text.strip()
-    number, rest = _split_number(text, plain, kind)
+    number, rest = _split_number(text, text.strip(), kind)
     if not rest.strip():
         raise QuantityError(text, "has no unit", _say_due(kind))
-    exponents = _read_unit(text, rest, kind)
+    return number, _fitting_exponents(text, rest, kind)
+
+
+def _fitting_exponents(text: str, expression: str, kind: str) -> dict[str, int]:
+    """Exponent of each unit name of an expression that fits the kind."""
+    due = KINDS[kind]
+    exponents = _read_unit(text, expression, kind)
     sorts = _sorts(exponents)
     if len(sorts) < len(exponents):
         raise QuantityError(text, "has two units of the same sort", _say_due(kind))
@@ -196,9 +255,7 @@ def parse_quantity(text: str, kind: str) -> float:
     foreign = [name for name in exponents if name not in due.allowed]
     if foreign:
         raise QuantityError(text, f"has a unit ({foreign[0]}) that is not read for {due.phrase}", _say_due(kind))
-    if set(sorts) == {"temperature"}:
-        return float(_kelvin(number, next(iter(exponents))))
-    return float(number * _factor(tuple(sorted(exponents.items())), due.target))
+    return exponents
 
 
 def si_text(value: float, kind: str) -> str:

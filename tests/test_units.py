@@ -11,7 +11,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from lasescatter.units import KINDS, UNITS, QuantityError, fitting_units, parse_quantity, si_text
+from lasescatter.units import KINDS, UNITS, QuantityError, fitting_units, parse_obscuration, parse_quantity, si_text, unit_factor
 
 # Text, kind, SI value. Where no source is named the factor is a decimal prefix: SI Brochure, 9th edition (2019),
 # table 7. Every value is exact, so the nearest float is due: rel=0, abs=0.
@@ -56,6 +56,12 @@ DEFINED = (
     ("0.05/m", "extinction", 0.05),
     ("0.05 m^-1", "extinction", 0.05),
     ("0.3048 /ft", "extinction", 1.0),
+    ("0.1 /m", "optical density", 0.1),
+    ("0.3048 /ft", "optical density", 1.0),
+    ("3 dB/m", "attenuation", 3.0),
+    ("3 dB/km", "attenuation", 0.003),
+    ("3.048 dB/ft", "attenuation", 10.0),
+    ("10 %/m", "obscuration", 10.0),
     ("12 mg/m^3", "mass concentration", 12e-6),
     ("12 ug/L", "mass concentration", 12e-6),  # SI Brochure table 8: 1 L = 1 dm^3
     ("1e5 /cm^3", "number concentration", 1e11),
@@ -171,6 +177,51 @@ def test_refused(text, kind, wrong):
         parse_quantity(text, kind)
     assert wrong in caught.value.wrong
     assert caught.value.mend
+
+
+@pytest.mark.parametrize(
+    ("text", "share", "length"),
+    [
+        ("5 %/ft", 0.05, 0.3048),  # international foot (1959)
+        ("10 %/m", 0.1, 1.0),
+        ("10%/m", 0.1, 1.0),
+        ("0.5 %/cm", 0.005, 0.01),
+        ("1 % in^-1", 0.01, 0.0254),
+        ("99.5 %/km", 0.995, 1000.0),
+    ],
+)
+def test_an_obscuration_is_a_share_and_a_length(text, share, length):
+    assert parse_obscuration(text) == (share, length)
+
+
+@pytest.mark.parametrize(
+    ("text", "wrong"),
+    [
+        ("5 %", "is a percentage, and an obscuration in per cent per length is due"),
+        ("5 /ft", "is an extinction coefficient"),
+        ("5", "has no unit"),
+        ("5 %/s", "is not an obscuration"),
+        ("5 %/ft^2", "is not an obscuration"),
+        ("5 dB/m", "is an attenuation in decibels per length"),
+        ("5 %/m ft", "two ways"),
+        ("x" * 300, "far too long"),
+    ],
+)
+def test_what_is_no_obscuration(text, wrong):
+    with pytest.raises(QuantityError) as caught:
+        parse_obscuration(text)
+    assert wrong in caught.value.wrong and caught.value.mend
+
+
+def test_units_of_a_header():
+    assert unit_factor("um", "length") == Decimal("1e-6")
+    assert unit_factor("µm", "length") == Decimal("1e-6")
+    assert unit_factor("nm", "wavelength") == Decimal("1e-9")
+    assert float(180 * unit_factor("deg", "angle")) == math.pi
+    for unit, wrong in (("kg", "is not a length"), ("", "cannot be read"), ("micron", "not known"), ("u" * 300, "too long")):
+        with pytest.raises(QuantityError) as caught:
+            unit_factor(unit, "length")
+        assert wrong in caught.value.wrong
 
 
 def test_the_message_names_the_text_and_what_fits():
