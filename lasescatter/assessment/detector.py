@@ -12,7 +12,7 @@ from lasescatter.assessment.field import LineField
 from lasescatter.exposure.line import TABULATION_ERROR
 from lasescatter.exposure.surfaces import tight_room_area, wall_return
 from lasescatter.exposure.thickness import allowance
-from lasescatter.limits.compare import Received
+from lasescatter.limits.compare import TRUST, Received
 from lasescatter.limits.hazards import full_field, hazard_of
 from lasescatter.scene import Limit
 
@@ -31,6 +31,8 @@ class _Taken:
     """Numerical error of `light`, the average over sizes aside."""
     light_reach: float
     """Bound of the scattered light within reach."""
+    by_component: Floats
+    """The same bound for each component alone, (components,); they sum to `light_reach` or more."""
     stop: float
     stop_reach: float
     direct: float
@@ -68,20 +70,49 @@ def received(field: LineField, observer: int, limit: Limit, wall_points: Floats)
         ("reach, scattered", taken.light_reach * raised_within_reach - taken.light * raised),
         ("reach, stop", taken.stop_reach - taken.stop),
     ]
+    doubts = _doubts(field, observer, taken, error)
+    doubted = field.extinction_factor
+    if doubted > 1:
+        # More extinction than stated: also more of the orders that are not computed.
+        further = float(allowance(doubted * field.thickness_within_reach[observer])) - raised_within_reach
+        bound = taken.light_reach + error + sum(extra for _, extra in doubts)
+        allowed.append((f"{TRUST}the optical thickness (×{doubted:.3g}), higher orders", bound * further))
+    allowed += [(cause, extra * raised_within_reach) for cause, extra in doubts]
     if full_field(hazard_of(limit)) and not radiance:
         area = tight_room_area(wall_points)
-        allowed.append((f"walls of a room of {area:.0f} m²", wall_return(area, field.set_free)))
+        returned, most = field.set_free(), field.set_free(field.extinction_factors)
+        allowed.append((f"walls of a room of {area:.0f} m²", wall_return(area, returned)))
+        allowed.append((f"{TRUST}the optical thickness (×{doubted:.3g}), walls", wall_return(area, most - returned)))
     low = max(0.0, taken.light - error) + taken.stop + taken.direct
     return Received(tuple(by_origin), low, tuple(part for part in allowed if part[1] > 0), taken.window)
+
+
+def _doubts(field: LineField, observer: int, taken: _Taken, error: float) -> list[tuple[str, float]]:
+    """What the factors of trust add to the bound of the first order, by load.
+
+    Each factor multiplies the whole bound of its component: what the reach adds to it, and its share of the error.
+    """
+    whole = float(taken.by_component.sum())
+    found = []
+    for component, factor, bound in zip(
+        field.mixture.components, field.factors[:, observer].tolist(), taken.by_component.tolist(), strict=True
+    ):
+        if factor > 1 and bound > 0:
+            why = component.mark if factor <= component.trust else "sizes it may have"
+            extra = (factor - 1) * bound * (1 + error / whole)
+            found.append((f'{TRUST}"{component.name}" ({why}, ×{factor:.3g})', extra))
+    return found
 
 
 def _full(field: LineField, observer: int, aperture: float) -> _Taken:
     """Irradiance from all round."""
     stop = float(field.stop_compared[observer])
+    by_component = field.within_reach[:, observer]
     return _Taken(
         light=float(field.greatest.irradiance[observer]),
         error=float(field.greatest.error[observer]),
-        light_reach=float(field.within_reach[observer]),
+        light_reach=float(by_component.sum()),
+        by_component=by_component,
         stop=stop,
         stop_reach=_stop_within_reach(field, observer, stop),
         direct=float(field.direct_mean(aperture)[observer]),
@@ -105,10 +136,12 @@ def _in_field(field: LineField, observer: int, aperture: float, acceptance: floa
     if radiance:
         stop = min(stop / solid, field.stop_radiance) if stop > 0 else 0.0
         stop_reach = min(stop_reach / solid, field.stop_radiance)
+    by_component = field.within_reach[:, observer]
     return _Taken(
         light=total / solid,
         error=(float(field.greatest.error[observer]) + TABULATION_ERROR * total) / solid,
-        light_reach=max(total, float(field.within_reach[observer])) / solid,
+        light_reach=max(total, float(by_component.sum())) / solid,
+        by_component=by_component / solid,
         stop=stop,
         stop_reach=stop_reach,
         direct=float(field.direct_mean(aperture)[observer]) / solid,
@@ -121,16 +154,17 @@ def _peak(field: LineField, observer: int, aperture: float) -> _Taken | str:
     if field.direct_mean(aperture)[observer] > 0:
         return "direct light has no radiance without an acceptance field"
     peaks = [field.peak(i) for i in range(len(field.legs))]
-    if any(void[observer] for _, _, void in peaks):
+    if any(peak.void[observer] for peak in peaks):
         return (
             f'a leg of "{field.beam.name}" is seen, from within reach, so nearly end-on that its radiance is not '
             "defined by E4"
         )
-    light = field.hot_spot * float(sum(peak[observer] for peak, _, _ in peaks))
+    light = field.hot_spot * float(sum(peak.radiance[observer] for peak in peaks))
     return _Taken(
         light=light,
         error=TABULATION_ERROR * light,
-        light_reach=max(light, field.hot_spot * float(sum(bound[observer] for _, bound, _ in peaks))),
+        light_reach=max(light, field.hot_spot * float(sum(peak.within_reach[observer] for peak in peaks))),
+        by_component=field.hot_spot * np.sum([peak.by_component[:, observer] for peak in peaks], axis=0),
         stop=field.stop_radiance if field.stop_compared[observer] > 0 else 0.0,
         stop_reach=field.stop_radiance if field.sees_stop(observer) else 0.0,
         direct=0.0,

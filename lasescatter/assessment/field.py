@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from lasescatter.exposure.direct import aperture_mean, beam_radius, irradiance
 from lasescatter.exposure.fraction import Greatest, greatest_over_fraction
 from lasescatter.exposure.legs import Leg, Swing, legs_of, swings_of
-from lasescatter.exposure.line import BrightLine, Window, bright_line, brightest_window, peak_radiance
+from lasescatter.exposure.line import BrightLine, Peak, Window, bright_line, brightest_window, peak_radiance
 from lasescatter.exposure.scattered import LEAST_GAP, LegLight, PanelEdges, scattered
 from lasescatter.exposure.sightline import Sightlines
 from lasescatter.exposure.surfaces import stop_light
@@ -55,6 +55,10 @@ class LineField:
     spot: Floats | None
     """Where the beam meets its stop, (3,)."""
     spot_radius: float
+    factors: Floats
+    """By which the scattered light of each component may be off, (components, observers)."""
+    extinction_factors: Floats
+    """By which the extinction of each component may be off, (components,)."""
     known: dict[tuple[str, float], Any]
     """Values for all observers that limits have asked for: by name and aperture, acceptance or leg."""
 
@@ -108,8 +112,8 @@ class LineField:
             f"window {index}", acceptance, lambda: brightest_window(self.bright(index), acceptance, worst)
         )
 
-    def peak(self, index: int) -> tuple[Floats, Floats, NDArray[np.bool_]]:
-        """Peak radiance of one leg, its bound within reach, and where it is void."""
+    def peak(self, index: int) -> Peak:
+        """Peak radiance of one leg, its bounds within reach, and where it is void."""
         return self._once(
             "peak",
             index,
@@ -122,15 +126,32 @@ class LineField:
     def thickness_within_reach(self) -> Floats:
         """Optical thickness that no place within reach exceeds by more than a sight line's new chord.
 
-        A sight line grows by the reach at most, twice the farthest distance by twice the reach.
+        A sight line grows by the reach at most, twice the farthest distance by twice the reach; where the medium
+        thins with height, no part of a sight line comes to lie lower by more than the reach.
         """
-        extinction = sum(component.extinction for component in self.mixture.components)
-        return self.thickness + 2 * extinction * self.reaches
+        shift = np.exp(self.mixture.steepness * self.reaches)
+        return self.thickness * shift + 2 * self.mixture.greatest_extinction(self.points, self.reaches) * self.reaches
 
     @property
     def within_reach(self) -> Floats:
-        """Scattered irradiance that no place within reach exceeds, at any load fraction. [m⁻²]"""
+        """Scattered irradiance of each component that no place within reach exceeds, at any load fraction,
+        (components, observers). [m⁻²]"""
         return np.sum([light.within_reach for light in self.lights], axis=0)
+
+    @property
+    def extinction_factor(self) -> float:
+        """Largest factor by which the optical thickness may be off."""
+        lit = [c.extinction > 0 for c in self.mixture.components]
+        return float(np.max(self.extinction_factors, where=lit, initial=1.0))
+
+    @property
+    def _thicknesses_along(self) -> list[Floats]:
+        """Optical thickness of each component along each leg, (components,); of an endless leg it is not used."""
+        ends = [leg.length if np.isfinite(leg.length) else 0.0 for leg in self.legs]
+        return [
+            self.mixture.thicknesses(leg.origin, leg.origin + end * leg.direction)
+            for leg, end in zip(self.legs, ends, strict=True)
+        ]
 
     def sees_stop(self, observer: int) -> bool:
         """Whether the lit face of the stop can be seen from some place within the observer's reach."""
@@ -155,14 +176,17 @@ class LineField:
         slope = abs(float(self.legs[-1].direction @ np.asarray(self.beam.stop.facing)))
         return self.beam.stop.reflectance * peak * slope / np.pi
 
-    @property
-    def set_free(self) -> float:
-        """Share of the beam's power that can come back from walls: what is scattered and what the stop returns."""
+    def set_free(self, extinction_factors: Floats | float = 1.0) -> float:
+        """Share of the beam's power that can come back from walls: what is scattered and what the stop returns.
+
+        Parameters
+        ----------
+        extinction_factors : float or ndarray (components,)
+            Times which each component's extinction is taken.
+        """
         tau = sum(
-            float(self.mixture.thicknesses(leg.origin, leg.origin + leg.length * leg.direction).sum())
-            if np.isfinite(leg.length)
-            else np.inf
-            for leg in self.legs
+            float((thickness * extinction_factors).sum()) if np.isfinite(leg.length) else np.inf
+            for leg, thickness in zip(self.legs, self._thicknesses_along, strict=True)
         )
         stop = 0.0 if self.beam.stop is None else self.beam.stop.reflectance
         return min(1.0, -float(np.expm1(-tau)) + stop)
@@ -216,6 +240,8 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
         direct=np.where(direct > NO_DIRECT_LIGHT, direct, 0.0),
         spot=spot,
         spot_radius=spot_radius,
+        factors=np.repeat([[component.trust] for component in mixture.components], len(points), axis=1),
+        extinction_factors=np.array([component.extinction_trust for component in mixture.components]),
         known={},
     )
 
@@ -250,7 +276,7 @@ def _joined(parts: list[LegLight], together: int) -> LegLight:
         by_component=np.concatenate([part.by_component for part in parts], axis=1),
         unpolarised=np.concatenate([part.unpolarised for part in parts]),
         error=np.concatenate([part.error for part in parts]),
-        within_reach=np.concatenate([part.within_reach for part in parts]),
+        within_reach=np.concatenate([part.within_reach for part in parts], axis=1),
         edges=PanelEdges(
             owner=np.concatenate([part.edges.owner + i * together for i, part in enumerate(parts)]),
             low=np.concatenate([part.edges.low for part in parts]),

@@ -169,19 +169,31 @@ def _window(line: BrightLine, acceptance: float, bright: Floats, observers: int)
     return Window(best, low, high)
 
 
+@dataclass(frozen=True)
+class Peak:
+    """Greatest radiance of a leg across and along the beam, for one watt. [m⁻² sr⁻¹]"""
+
+    radiance: Floats
+    """At the stated place, (observers,)."""
+    within_reach: Floats
+    """Bound for every place within the reach, (observers,)."""
+    by_component: Floats
+    """The same bound for the light of each component alone, (components, observers)."""
+    void: NDArray[np.bool_]
+    """True where part of the leg is seen so nearly end-on, from within the reach, that E4 does not hold there."""
+
+
 def peak_radiance(
     line: BrightLine, beam_line: Line, profile: Profile, worst: Floats, reaches: Floats | float, mixture: Mixture
-) -> tuple[Floats, Floats, NDArray[np.bool_]]:
-    """Greatest radiance of a leg across and along the beam (E4), for one watt, over load fractions. [m⁻² sr⁻¹]
+) -> Peak:
+    """Greatest radiance of a leg (E4) over load fractions.
 
-    Returns
-    -------
-    radiance : ndarray (observers,)
-        At the stated place.
-    within_reach : ndarray (observers,)
-        Bound for every place within the reach.
-    void : ndarray of bool (observers,)
-        True where part of the leg is seen so nearly end-on, from within the reach, that E4 does not hold there.
+    Parameters
+    ----------
+    worst : ndarray (observers,)
+        Load fraction at which the whole light is greatest.
+    reaches : float or ndarray (observers,)
+        How far each head moves. [m]
     """
     sight, leg, owner = line.light.sight, line.light.leg, line.owner
     count = len(worst)
@@ -202,12 +214,22 @@ def peak_radiance(
     # Seen from within reach under every angle, or under one so small that d/sin(theta) exceeds the leg.
     end_on = (least_sine <= 0) | (width / leg.length > least_sine)
     density = mixture.densities(leg.origin + s[..., None] * leg.direction) * leg.reflected / (4 * np.pi)
-    bright = np.zeros_like(s)
-    for component, amount in zip(mixture.components, density, strict=True):
-        bright += amount * component.matrix.greatest_near(line.theta, turned)
-    bound = np.zeros(count)
     with np.errstate(divide="ignore", invalid="ignore"):
-        np.maximum.at(bound, owner, np.where(end_on, 0.0, bright / (width * least_sine) * PEAK_OVER_MEAN[profile]))
+        factor = np.where(end_on, 0.0, PEAK_OVER_MEAN[profile] / (width * least_sine))
+    bright = factor * density
+    bright *= np.stack([component.matrix.greatest_near(line.theta, turned) for component in mixture.components])
     void = np.zeros(count, dtype=bool)
     np.logical_or.at(void, owner, end_on)
-    return radiance, bound, void
+    return Peak(
+        radiance=radiance,
+        within_reach=_largest_by_owner(owner, bright.sum(axis=0), count),
+        by_component=np.stack([_largest_by_owner(owner, row, count) for row in bright]),
+        void=void,
+    )
+
+
+def _largest_by_owner(owner: Integers, values: Floats, count: int) -> Floats:
+    """Largest of values (n,), none below 0, for each of `count` owners."""
+    largest = np.zeros(count)
+    np.maximum.at(largest, owner, values)
+    return largest

@@ -121,7 +121,8 @@ class LegLight:
     error: Floats
     """Quadrature error, (observers,). [m⁻²]"""
     within_reach: Floats
-    """No place within the observer's reach gets more, at any load fraction, (observers,). [m⁻²]"""
+    """Per component, no place within the observer's reach gets more, at any load fraction, (components, observers).
+    [m⁻²]"""
     edges: PanelEdges
 
 
@@ -187,7 +188,7 @@ def _summed(
         by_component=np.stack([sums_by_owner(nodes.owner, row * passed, count) for row in nodes.emitted]),
         unpolarised=sums_by_owner(nodes.owner, nodes.unpolarised * passed, count),
         error=sums_by_owner(nodes.panels.owner, nodes.panels.errors(), count),
-        within_reach=sums_by_owner(nodes.owner, nodes.weight * near, count),
+        within_reach=np.stack([sums_by_owner(nodes.owner, nodes.weight * row, count) for row in near]),
         edges=PanelEdges(nodes.panels.owner, nodes.panels.low, nodes.panels.high),
     )
 
@@ -195,7 +196,7 @@ def _summed(
 def reach_brightness(
     leg: Leg, mixture: Mixture, sight: Sightlines, owner: Integers, theta: Floats, reach: Floats
 ) -> Floats:
-    """Bound on dE/dtheta's elements from every place within a reach, (nodes,). [m⁻² rad⁻¹]
+    """Bound on dE/dtheta's elements from every place within a reach, (components, nodes). [m⁻² rad⁻¹]
 
     A head that moves by the reach brings no element nearer than r − reach and sees none under an angle that differs
     by more than asin(reach/r). Each element is taken that near, at the worst angle and axis among those, and nothing
@@ -209,10 +210,8 @@ def reach_brightness(
     # An element within reach can be seen under any angle.
     turned = np.where(r <= reach, np.pi, turned)
     nearer = np.square(r / np.maximum(r - reach, np.minimum(LEAST_GAP, r)))
-    bright = np.zeros_like(r)
-    for component, amount in zip(mixture.components, density, strict=True):
-        bright += amount * component.matrix.greatest_near(theta, turned)
-    return bright * nearer
+    near = [component.matrix.greatest_near(theta, turned) for component in mixture.components]
+    return np.stack(near) * density * nearer
 
 
 def breaks_of(leg: Leg, sight: Sightlines, mixture: Mixture) -> Floats:

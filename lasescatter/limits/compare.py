@@ -9,6 +9,9 @@ from lasescatter.limits.hazards import hazard_of, within
 from lasescatter.limits.verdict import ABOVE, BELOW, NOT_ESTABLISHED, Verdict
 from lasescatter.scene import QUANTITY_UNITS, Hazard, Limit, Line, Mechanism, Quantity, Tissue
 
+# Causes of allowances that begin so come from how far the data of a load are trusted.
+TRUST = "trust in "
+
 
 @dataclass(frozen=True)
 class Comparison:
@@ -50,6 +53,13 @@ class Comparison:
     verdict: Verdict
     note: str
     """Rule applied, in words; "" for the plain case."""
+
+    @property
+    def ratio_high_trusted(self) -> float:
+        """Upper bound of the ratio if the data of every load were right as they are."""
+        return self.ratio_high - sum(part for cause, part in self.allowances if cause.startswith(TRUST)) / (
+            self.limit_value
+        )
 
 
 @dataclass(frozen=True)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 
-from lasescatter.limits.compare import Comparison, HazardJudgement, Received, compare, covers_time, verdict_of
+from lasescatter.limits.compare import TRUST, Comparison, HazardJudgement, Received, compare, covers_time, verdict_of
 from lasescatter.limits.hazards import (
     AVERSION_TIME,
     SHORTEST_PULSE,
@@ -206,11 +206,24 @@ def _hazard(hazard: Hazard, made: list[Comparison], missing: tuple[str, ...]) ->
     if verdict == NOT_ESTABLISHED:
         reasons += (
             f"{hazard}: the bounds {low:.3g} and {high:.3g} of the limit lie on both sides of it"
-            f"{_widest(list(governing.values()))}",
+            f"{_held_back([c for c in made if c.hazard == hazard]) or _widest(list(governing.values()))}",
         )
     elif verdict != ABOVE and missing:
         verdict = NOT_ESTABLISHED
     return HazardJudgement(hazard, ratio, low, high, verdict, reasons, parts, "")
+
+
+def _held_back(made: list[Comparison]) -> str:
+    """The factors of trust, in brackets, where without them the upper bound would not exceed the limit."""
+    trusted: dict[tuple[str, str], float] = {}
+    for comparison in made:
+        key = (comparison.beam, comparison.line)
+        trusted[key] = max(trusted.get(key, 0.0), comparison.ratio_high_trusted)
+    total = sum(trusted.values())
+    if total > 1:
+        return ""
+    causes = dict.fromkeys(cause for c in made for cause, _ in c.allowances if cause.startswith(TRUST))
+    return f" (held back by {', '.join(causes)}; without it the upper bound is {total:.3g})"
 
 
 def _widest(governing: list[Comparison]) -> str:

@@ -30,6 +30,10 @@ class Component:
     """Estimated relative error of the matrix at its worst angle."""
     trust: float = 1.0
     """Factor by which its scattered light may be off beyond that."""
+    mark: str = ""
+    """Why, in a word: the mark that the factor belongs to."""
+    extinction_trust: float = 1.0
+    """Factor by which its extinction may be off: 1 where the load's reading fixes it."""
 
 
 @dataclass(frozen=True)
@@ -55,3 +59,13 @@ class Mixture:
     def densities(self, points: Floats) -> Floats:
         """Scattering coefficient of each component at points (..., 3) [m⁻¹], shape (components, ...)."""
         return np.stack([c.scattering * c.profile.value(points) for c in self.components])
+
+    @property
+    def steepness(self) -> float:
+        """Greatest relative change of any component per metre inside its shape [m⁻¹]."""
+        return max(component.profile.steepness() for component in self.components)
+
+    def greatest_extinction(self, points: Floats, within: Floats | float) -> Floats:
+        """Extinction that no place within a distance [m] of points (..., 3) exceeds [m⁻¹], shape (...)."""
+        most = [c.extinction * c.profile.greatest_near(points, within) for c in self.components]
+        return np.sum(most, axis=0)

@@ -80,12 +80,13 @@ def test_peak_radiance_is_e4():
     medium = mixture(component(isotropic(), 0.01))
     _, bright = lit(medium, POINTS[:1])
     source = line(diameter=3e-3 * math.sqrt(2), divergence=0.0)
-    radiance, bound, void = peak_radiance(bright, source, "gaussian", np.ones(1), 0.0, medium)
-    assert not void[0]
+    peak = peak_radiance(bright, source, "gaussian", np.ones(1), 0.0, medium)
+    assert not peak.void[0]
     # Least sine at the start: the observer stands at (2, 1.5).
     expected = 0.01 / (4 * math.pi) / (3e-3 * 1.5 / 2.5) * 2 / math.sqrt(math.pi)
-    assert_allclose(radiance[0], expected, rtol=1e-5)
-    assert_allclose(bound[0], expected, rtol=1e-5)
+    assert_allclose(peak.radiance[0], expected, rtol=1e-5)
+    assert_allclose(peak.within_reach[0], expected, rtol=1e-5)
+    assert_allclose(peak.by_component[0, 0], expected, rtol=1e-5)
 
 
 @pytest.mark.parametrize(("low", "high"), [(1.35, 1.351), (1.36, 1.361)])
@@ -93,7 +94,7 @@ def test_peak_radiance_of_a_thin_box(low, high):
     medium = mixture(component(isotropic(), 2.0, 0.0, box(low, high)))
     _, bright = lit(medium, POINTS[:1])
     source = line(diameter=3e-3 * math.sqrt(2), divergence=0.0)
-    radiance, _, _ = peak_radiance(bright, source, "gaussian", np.ones(1), 0.0, medium)
+    radiance = peak_radiance(bright, source, "gaussian", np.ones(1), 0.0, medium).radiance
     sine = 1.5 / math.hypot(1.5, 2 - low)
     expected = 2.0 / (4 * math.pi) / (3e-3 * sine) * 2 / math.sqrt(math.pi)
     assert_allclose(radiance[0], expected, rtol=1e-3)
@@ -110,8 +111,7 @@ def test_radiance_across_a_gaussian_beam_integrates_to_the_irradiance():
 def test_end_on_is_void_also_from_within_reach(place, reach):
     medium = mixture(component(isotropic(), 0.01))
     _, bright = lit(medium, np.array([place]))
-    _, _, void = peak_radiance(bright, line(), "gaussian", np.ones(1), reach, medium)
-    assert void[0]
+    assert peak_radiance(bright, line(), "gaussian", np.ones(1), reach, medium).void[0]
 
 
 def test_ripples_of_large_single_spheres_are_resolved():
@@ -128,7 +128,7 @@ def test_ripples_of_large_single_spheres_are_resolved():
             best, _ = brute_windows(1.0, 3.0, matrix, 0.01, 0.0, point, acceptance)
             assert_allclose(found.irradiance[i], best, rtol=TABULATION_ERROR)
     source = line(diameter=3e-3 * math.sqrt(2), divergence=0.0)
-    radiance, _, _ = peak_radiance(bright, source, "gaussian", np.ones(len(POINTS)), 0.0, medium)
+    radiance = peak_radiance(bright, source, "gaussian", np.ones(len(POINTS)), 0.0, medium).radiance
     for i, point in enumerate(POINTS):
         s = np.linspace(1.0, 3.0, 400_001)
         angle = np.arctan2(math.hypot(point[1], point[2]), point[0] - s)
@@ -141,6 +141,7 @@ def test_endless_leg_within_reach_is_void_not_a_crash():
     medium = mixture(component(isotropic(), 0.01))
     points = np.array([[3.0, 0.1, 0.0], [3.0, 2.0, 0.0]])
     light = scattered((endless,), (PLAIN,), medium, points, np.zeros((1, 2)), 0.25)[0].light
-    _, bound, void = peak_radiance(bright_line(light, medium, points), line(), "gaussian", np.ones(2), 0.25, medium)
-    assert void[0]
-    assert np.isfinite(bound).all()
+    peak = peak_radiance(bright_line(light, medium, points), line(), "gaussian", np.ones(2), 0.25, medium)
+    assert peak.void[0]
+    assert np.isfinite(peak.within_reach).all()
+    assert np.isfinite(peak.by_component).all()
