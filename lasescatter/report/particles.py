@@ -8,6 +8,7 @@ from typing import Any
 
 from lasescatter.assessment.outcome import Assessment, ComponentSummary
 from lasescatter.report.front import NAME
+from lasescatter.report.loads import air_words, load_sections
 from lasescatter.report.page_frame import FigurePlace
 from lasescatter.report.quantities import digits, small_length, wavelength
 from lasescatter.report.styles import MM, heads, paragraph, ruled, words
@@ -49,9 +50,15 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
         for entry in assessment.components
     ]  # fmt: skip
     return [
-        paragraph("Values where the component is. Errors are the program's own estimates, relative to the value."),
+        paragraph(f"<b>Air</b>: {air_words(assessment.scene.air)}."),
+        paragraph(
+            "Values where the component is; number, mass and radius as the particles float, water included. Errors "
+            "are the program's own estimates, relative to the value."
+        ),
         ruled(rows, [26, 19, 18, 18, 15, 18, 15, 15, 15, 15], numeric=tuple(range(1, 10))),
         ruled(quality, [60, 22, 27, 39, 26], numeric=(1, 2, 3, 4)),
+        *load_sections(assessment),
+        paragraph("Curves and tables", "subsection"),
         paragraph(
             "The curve and the tables after it: F11/(4π) and F12/(4π) in 1/sr at the scattering angle theta, and their "
             "integrals over the angle from 0 to theta: B11, B12, and |B12| of the absolute value of F12, which serves "

@@ -20,13 +20,25 @@ from lasescatter.assessment.outcome import (
     LineExposure,
     ObserverOutcome,
     Provenance,
+    SizeMovement,
     StopCheck,
 )
 from lasescatter.assumptions import Assumption
 from lasescatter.cautions import cautions
 from lasescatter.limits.compare import Comparison, HazardJudgement
 from lasescatter.limits.verdict import ABOVE, BELOW, NOT_ESTABLISHED, Verdict, worst
-from lasescatter.matter import Lognormal, SizeMode
+from lasescatter.matter import (
+    HenyeyGreenstein,
+    IndexTable,
+    Lognormal,
+    Material,
+    MeasuredMatrix,
+    SingleSize,
+    SizeMode,
+    SizeSpan,
+    SizeTable,
+    Trust,
+)
 from lasescatter.scene import (
     Air,
     Beam,
@@ -73,16 +85,47 @@ BEAMS = (
     ),
 )  # fmt: skip
 
+WEAK = Trust("weak", 3.0, "sizes of one hazer in one room, <b>index</b> from a data sheet & invented")
+SPAN = SizeSpan("mass median diameter", 1.0e-6, 0.5e-6, 1.5e-6, "invented for this test, table <3>")
+INDEX = IndexTable(
+    (400e-9, 600e-9, 1100e-9), (1.45, 1.43, 1.42), (1e-6, 1e-6, 2e-6), (True, False, False), "glycol <mix>",
+    "invented for this test",
+)  # fmt: skip
+
 LOADS = (
     Load(
-        "test haze", (SizeMode(Lognormal(0.5e-6, 1.6)),), 1.43 + 1e-6j, 1060.0, LoadReading("extinction", 0.01, 550e-9),
-        Box((1.0, -3.0, 0.0), (8.0, 2.5, 3.0)), None, 'particles["test haze"]',
+        "test haze", (SizeMode(Lognormal(0.3e-6, 1.6)),), Material(INDEX, 1060.0),
+        LoadReading("extinction", 0.01, 550e-9), Box((1.0, -3.0, 0.0), (8.0, 2.5, 3.0)), None, 'particles["test haze"]',
+        "glycol & <haze>", WEAK, SPAN,
     ),
     Load(
-        "dust & <u>lint</u>", (SizeMode(Lognormal(2e-6, 1.8)),), 1.53 + 5e-3j, 2000.0, LoadReading("mass", 5e-8),
-        Everywhere(), "duty laser safety officer", 'particles["dust & <u>lint</u>"]',
+        "dust & <u>lint</u>", (SizeMode(Lognormal(2e-6, 1.8)),), Material(1.53 + 5e-3j, 2000.0),
+        LoadReading("mass", 5e-8, basis="dry"), Everywhere(), "duty laser safety officer",
+        'particles["dust & <u>lint</u>"]',
     ),
 )  # fmt: skip
+
+MORE_LOADS = (
+    Load(
+        "stand-in", (), None, LoadReading("transmittance", 0.8, 650e-9, 3.0), Everywhere(), None,
+        'particles["stand-in"]', trust=Trust("stand-in", 5.0, "a stand-in"), stand_in=HenyeyGreenstein(0.8), albedo=0.9,
+    ),
+    Load(
+        "measured", (), None, LoadReading("visual_range", 50.0, 550e-9), Everywhere(), None, 'particles["measured"]',
+        trust=Trust("entered", 2.0, "no F12 was measured"), albedo=0.85,
+        stand_in=MeasuredMatrix((0.0, 1.5, math.pi), (3.0, 0.8, 0.7), None, None, None, 1.25, "matrix <a>.csv"),
+    ),
+    Load(
+        "mixture",
+        (
+            SizeMode(Lognormal(0.1e-6, 2.0, largest=5e-6), 0.7, Material(1.53 + 0.008j, 1800.0)),
+            SizeMode(SizeTable((1e-7, 2e-7, 4e-7), (0.0, 1.5, 0.0)), 0.2),
+            SizeMode(SingleSize(2e-6), 0.1),
+        ),
+        Material(INDEX, None), LoadReading("number", 1e9), Everywhere(), None, 'particles["mixture"]',
+    ),
+)  # fmt: skip
+"""Loads of the other sorts, for tests that put them into a scene."""
 
 LIMITS = (
     Limit(
@@ -146,6 +189,25 @@ def running(values: np.ndarray) -> np.ndarray:
     return np.concatenate([[0.0], np.cumsum(steps)])
 
 
+def readings(extinction: float, wavelength: float, mass: float) -> tuple[LoadReading, ...]:
+    """What instruments would read, by the laws of Lambert and Koschmieder."""
+    loss = math.exp(-extinction)
+    return (
+        LoadReading("mass", mass / 1.3, basis="dry"),
+        LoadReading("mass", mass, basis="ambient"),
+        LoadReading("number", 5.4e9),
+        LoadReading("meteorological_optical_range", 2.996 / 0.01, 550e-9),
+        LoadReading("visual_range", 3.912 / 0.01, 550e-9),
+        LoadReading("extinction", extinction, wavelength),
+        LoadReading("obscuration", 1 - loss, wavelength, 1.0),
+        LoadReading("obscuration", 1 - loss**0.3048, wavelength, 0.3048),
+        LoadReading("optical_density", extinction / math.log(10), wavelength),
+        LoadReading("attenuation", 10 * extinction / math.log(10), wavelength),
+        LoadReading("transmittance", loss, wavelength, 1.0),
+        LoadReading("transmittance", loss**10, wavelength, 10.0),
+    )
+
+
 def component(name: str, wavelength: float) -> ComponentSummary:
     f11, f12 = phase(name, wavelength)
     scattering = {"air": 1.3e-5, "test haze": 0.01, LOADS[1].name: 5e-5}[name] * (532e-9 / wavelength)
@@ -157,9 +219,15 @@ def component(name: str, wavelength: float) -> ComponentSummary:
             name, wavelength, scattering, scattering, 1.0, 0.0, None, None, None, None, None, None, None, *curves
         )
     mass = 6.1e-6 if name == "test haze" else None
-    return ComponentSummary(
+    summary = ComponentSummary(
         name, wavelength, scattering * 1.0001, scattering, 0.9999, 0.72, 5.4e9, mass, 1650.0, 8.7e-7, 641, 4.2e-4, 3e-5,
         *curves,
+    )  # fmt: skip
+    if mass is None:
+        return replace(summary, index=1.53 + 5e-3j)
+    return replace(
+        summary, kind=LOADS[0].kind, index=1.41 + 1e-6j, growth_factor=1.093, dry_mass=mass / 1.3, trust=WEAK,
+        equivalents=readings(scattering * 1.0001, wavelength, mass),
     )  # fmt: skip
 
 
@@ -329,6 +397,19 @@ def in_the_beam(names: tuple[str, ...]) -> tuple[InTheBeam, ...]:
     )
 
 
+SIZES = (0.5e-6, 0.7e-6, 1.0e-6, 1.22e-6, 1.5e-6)
+SHIFTS = (0.42, 0.7, 1.0, 1.18, 1.31)
+
+
+def movement(observers: tuple[ObserverOutcome, ...]) -> SizeMovement:
+    """Light over the sizes of the haze, more for the later observers."""
+    scattered = tuple(
+        tuple(o.total("scattered_compared") * shift ** (1 + 0.01 * place) for shift in SHIFTS)
+        for place, o in enumerate(observers)
+    )
+    return SizeMovement(LOADS[0].name, LOADS[0].kind, SPAN.what, SPAN.usual, SIZES, scattered, SPAN.source)
+
+
 def assessment(places: tuple[tuple[str, Vector], ...] = PLACES, unit: LengthUnit = METRE) -> Assessment:
     """The invented result."""
     site = scene(places, unit)
@@ -336,7 +417,7 @@ def assessment(places: tuple[tuple[str, Vector], ...] = PLACES, unit: LengthUnit
     names = tuple(observer.name for observer in observers)
     return Assessment(
         site, worst(o.verdict for o in observers), COMPONENTS,
-        in_the_beam(names), observers,
+        in_the_beam(names), observers, (movement(observers),),
         (
             Assumption("particles puff above the mean load", "low", "up to several times", "physics, section 10"),
             Assumption("spheres for every particle", "low", "to the side, up to 3 times", "invented for this test"),
