@@ -17,20 +17,23 @@ class Problem:
     """What would be right."""
     line: int | None = None
     """Line of the file, where it can be told."""
+    file: str | None = None
+    """The file, where it is another than the one that the error names."""
 
 
 class SiteError(Exception):
     """The input cannot be used. Carries every fault that was found."""
 
     def __init__(self, problems: tuple[Problem, ...] | list[Problem], file: str = "site file") -> None:
-        self.problems = tuple(sorted(problems, key=lambda p: (p.line is None, p.line or 0, p.key)))
+        self.problems = tuple(sorted(problems, key=lambda p: (p.file or "", p.line is None, p.line or 0, p.key)))
         self.file = file
         super().__init__(str(self))
 
     def __str__(self) -> str:
         lines = []
         for problem in self.problems:
-            place = self.file if problem.line is None else f"{self.file}, line {problem.line}"
+            file = problem.file or self.file
+            place = file if problem.line is None else f"{file}, line {problem.line}"
             key = f" {problem.key}:" if problem.key else ""
-            lines.append(f"{place}:{key} {problem.wrong}. {problem.mend}.".replace("..", "."))
+            lines.append(f"{place}:{key} " + f"{problem.wrong}. {problem.mend}.".replace("..", "."))
         return "\n".join(lines)
