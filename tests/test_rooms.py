@@ -10,7 +10,7 @@ import lasescatter
 PACKAGE = Path(lasescatter.__file__).parent
 
 # What each room may import of the package, besides itself.
-SHARED = {"matter", "scene", "problems", "assumptions", "rules", "cautions"}
+SHARED = {"matter", "scene", "problems", "assumptions", "rules", "cautions", "standard_atmosphere"}
 MAY_IMPORT = {
     "matter": set(),
     "scene": {"matter"},
@@ -18,6 +18,7 @@ MAY_IMPORT = {
     "assumptions": set(),
     "rules": set(),
     "cautions": {"rules"},
+    "standard_atmosphere": set(),
     "units": {"problems"},
     "site": {"units"} | SHARED,
     "optics": SHARED,

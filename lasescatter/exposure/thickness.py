@@ -23,7 +23,8 @@ def optical_thickness(lights: tuple[IntegratedLeg, ...], mixture: Mixture, point
     """Largest extinction optical thickness that an observer's scattered light meets, (observers,).
 
     The largest of: along the beam; along any sight line to it; and across the load by its shortest dimension,
-    or by twice the distance from observer to the farthest part of the beam where that is shorter.
+    or by twice the distance from observer to the farthest part of the beam where that is shorter. Across, a load is
+    taken as at z = 0 or as at the end of a leg or the observer, where there is more of it.
 
     Parameters
     ----------
@@ -35,6 +36,7 @@ def optical_thickness(lights: tuple[IntegratedLeg, ...], mixture: Mixture, point
     sight = np.zeros(count)
     farthest = np.zeros(count)
     crossed = np.zeros(len(mixture.components), dtype=bool)
+    densest = np.ones((len(mixture.components), count))
     for light in lights:
         leg = light.light.leg
         end = _counted_end(light, count) if np.isinf(leg.length) else np.full(count, leg.length)
@@ -43,6 +45,9 @@ def optical_thickness(lights: tuple[IntegratedLeg, ...], mixture: Mixture, point
         for place in (np.broadcast_to(leg.origin, points.shape), tip):
             sight = np.maximum(sight, mixture.thicknesses(place, points).sum(axis=0))
             farthest = np.maximum(farthest, np.linalg.norm(place - points, axis=-1))
+            for i, component in enumerate(mixture.components):
+                here = np.maximum(component.profile.value(place), component.profile.value(points))
+                densest[i] = np.maximum(densest[i], here)
         nodes = light.nodes
         counted = nodes.theta <= light.light.sight.angle_at(end)[nodes.owner]
         np.maximum.at(sight, nodes.owner[counted], nodes.tau_sight[counted])
@@ -50,9 +55,9 @@ def optical_thickness(lights: tuple[IntegratedLeg, ...], mixture: Mixture, point
             [c.profile.span(leg.origin, leg.direction, leg.length) is not None for c in mixture.components]
         )
     across = np.zeros(count)
-    for component, meets in zip(mixture.components, crossed, strict=True):
+    for component, meets, most in zip(mixture.components, crossed, densest, strict=True):
         if meets:
-            across += component.extinction * np.minimum(component.profile.shortest_dimension(), 2 * farthest)
+            across += component.extinction * most * np.minimum(component.profile.shortest_dimension(), 2 * farthest)
     return np.maximum.reduce([along, sight, across])
 
 

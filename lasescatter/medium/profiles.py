@@ -1,6 +1,6 @@
 """A load's shape in space: its value at points, its exact column along segments, where it begins and ends.
 
-Every profile is 1 where the load is as stated and 0 where it is not. Points are arrays (..., 3) in metres.
+A profile is 1 where load or air are as stated, and 0 where there is none of them. Points are arrays (..., 3) in metres.
 """
 
 from __future__ import annotations
@@ -40,6 +40,14 @@ class Profile(Protocol):
         """Least extent [m]; infinite for an unbounded shape."""
         ...
 
+    def greatest_near(self, points: Floats, within: Floats | float) -> Floats:
+        """A value that no place within a distance [m] of points (..., 3) exceeds, shape (...)."""
+        ...
+
+    def steepness(self) -> float:
+        """Greatest relative change of the value per metre inside the shape [m⁻¹]; 0 where it is the same all over."""
+        ...
+
 
 @dataclass(frozen=True)
 class Unbounded:
@@ -59,6 +67,12 @@ class Unbounded:
 
     def shortest_dimension(self) -> float:
         return np.inf
+
+    def greatest_near(self, points: Floats, within: Floats | float) -> Floats:
+        return np.ones(points.shape[:-1])
+
+    def steepness(self) -> float:
+        return 0.0
 
 
 @dataclass(frozen=True)
@@ -105,6 +119,12 @@ class UprightBox:
 
     def shortest_dimension(self) -> float:
         return float(np.min(self.high - self.low))
+
+    def greatest_near(self, points: Floats, within: Floats | float) -> Floats:
+        return np.ones(points.shape[:-1])
+
+    def steepness(self) -> float:
+        return 0.0
 
 
 def profile_of(region: scene.Region) -> Profile:
