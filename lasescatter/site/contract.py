@@ -51,7 +51,6 @@ class NotBuilt:
 
 _POINT = "[0, 0, 2]"
 _TOP: TableName = ()
-_AIR: TableName = ("air",)
 _BEAM: TableName = ("beam",)
 _LINE: TableName = ("beam", "line")
 _STOP: TableName = ("beam", "beam_stop")
@@ -83,10 +82,6 @@ NOT_BUILT: tuple[NotBuilt, ...] = (
              "Leave it out: the report prints the optical density that brings an exposure to its limit"),
     NotBuilt(_TOP, "scan", '{ rate = "50 Hz" }', "moving beams", "Assess a moving beam by another method",
              "moving beams are not computed; do not put a fixed path in their place"),
-    NotBuilt(_AIR, "model", '"standard atmosphere"', "air that changes with height",
-             "State temperature and pressure at the site; air is taken as uniform"),
-    NotBuilt(_AIR, "ground_altitude", '"120 m"', "air that changes with height",
-             "State the pressure at the site's own altitude instead"),
     NotBuilt(_BEAM, "from", _POINT, "a path by azimuth and elevation", _GEOMETRY,
              instead_of=("path",)),
     NotBuilt(_BEAM, "azimuth", '"35 deg"', "a path by azimuth and elevation", _GEOMETRY,

@@ -40,6 +40,12 @@ def test_air_and_head():
     assert (CONTINUOUS.title, CONTINUOUS.reference) == ("Invented bay", "IB-1 rev A")
     assert CONTINUOUS.air == Air(293.15, 101325.0, 0.45)
     assert PULSED.air == Air(293.15, 101325.0, 0.0)
+    standard = COUNTED.air
+    assert (standard.model, standard.ground_altitude) == ("standard atmosphere", 2000.0)
+    assert standard.relative_humidity == 0
+    # U.S. Standard Atmosphere 1976 at 2 km, as in rules/published/standard_atmosphere_1976.toml.
+    assert standard.temperature == pytest.approx(275.154, rel=0, abs=5e-4)
+    assert standard.pressure == pytest.approx(7.95014e4, rel=0, abs=5e-2)
     assert CONTINUOUS.not_judged == (("skin", "covered by the clothing rule for this bay"),)
     assert [hazard for hazard, _ in COUNTED.not_judged] == ["retina thermal", "retina photochemical", "cornea and lens"]
     assert PULSED.length_unit.name == "ft" and PULSED.length_unit.metres == 0.3048
@@ -251,6 +257,8 @@ def test_defaults_taken_are_listed():
     assert "30000 s" in taken['observer["gate"].daily']
     assert taken['limit["eye, pulse"].mechanism'] == "thermal"
     counted = {line.key: line.read for line in COUNTED.inputs if not line.stated}
+    assert counted["air.temperature"] == "275.154089 K at z = 0, from the model"
+    assert counted["air.pressure"] == "79501.425 Pa at z = 0, from the model"
     assert counted["lengths_in"] == "m" and counted['beam["shot"].polarization'] == "unknown (worst axis)"
     assert (
         counted['beam["shot"].pulses.hot_spot'] == "1"
