@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 import lasescatter
-from lasescatter.assessment.components import DRY_AIR, SIZE_AVERAGE, SiteOptics, is_vouched
+from lasescatter.assessment.components import SIZE_AVERAGE, TRUSTED, SiteOptics, is_vouched
 from lasescatter.assessment.detector import received
 from lasescatter.assessment.field import LineField, distance_to, line_field
 from lasescatter.assessment.handcheck import hand_checks, stop_checks
@@ -24,6 +24,8 @@ from lasescatter.assessment.outcome import (
     Provenance,
     StopCheck,
 )
+from lasescatter.assessment.size_movement import size_movements
+from lasescatter.assessment.summaries import summaries
 from lasescatter.assumptions import Assumption, merged
 from lasescatter.cautions import cautions
 from lasescatter.exposure import direct as direct_light
@@ -85,18 +87,20 @@ def assess(
     reaches = np.array([observer.reach for observer in scene.observers], dtype=float)
     optics = SiteOptics(scene)
     fields: dict[str, LineField] = {}
-    summaries: dict[float, tuple[ComponentSummary, ...]] = {}
+    components: dict[float, tuple[ComponentSummary, ...]] = {}
     for beam in scene.beams:
         for line in beam.lines:
             progress(f"particles at {line.wavelength * 1e9:g} nm")
             mixture = optics.mixture(line.wavelength)
-            summaries.setdefault(line.wavelength, optics.summaries(line.wavelength, mixture))
+            if line.wavelength not in components:
+                components[line.wavelength] = summaries(optics, line.wavelength, mixture)
             progress(f'light of "{line.name}"')
             fields[line.key] = line_field(beam, line, mixture, points, reaches)
-    progress("judgement")
     powers = {key: _powers(scene.observers, field.line) for key, field in fields.items()}
+    movements, fields = size_movements(scene, optics, fields, powers, progress)
+    progress("judgement")
     checks = {key: hand_checks(field, powers[key]) for key, field in fields.items()}
-    gaps = tuple(gap for gap in dict.fromkeys(optics.gap(wavelength) for wavelength in summaries) if gap)
+    gaps = tuple(dict.fromkeys(gap for wavelength in components for gap in optics.gaps(wavelength)))
     stops = {key: stop_checks(field, powers[key]) for key, field in fields.items()}
     walls = np.concatenate([points, *[np.array(beam.points) for beam in scene.beams]])
     observers = tuple(
@@ -105,12 +109,14 @@ def assess(
     return Assessment(
         scene=scene,
         verdict=worst([observer.verdict for observer in observers]),
-        components=tuple(summary for group in summaries.values() for summary in group),
+        components=tuple(summary for group in components.values() for summary in group),
         in_the_beam=in_the_beam(scene),
         observers=observers,
-        assumptions=_assumptions(scene, set(summaries)),
+        size_movements=movements,
+        assumptions=_assumptions(scene, optics, set(components)),
         cautions=cautions(),
         provenance=_provenance(made_at),
+        gaps=gaps,
     )
 
 
@@ -260,8 +266,8 @@ def _line_exposure(field: LineField, index: int, power: float) -> LineExposure:
     )
 
 
-def _assumptions(scene: Scene, wavelengths: set[float]) -> tuple[Assumption, ...]:
-    found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, direct_light.NAKED_EYE, DRY_AIR]
+def _assumptions(scene: Scene, optics: SiteOptics, wavelengths: set[float]) -> tuple[Assumption, ...]:
+    found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, direct_light.NAKED_EYE]
     if not all(is_vouched(load) for load in scene.loads):
         found.append(WORST_FRACTION)
     if any(is_vouched(load) for load in scene.loads):
@@ -270,6 +276,8 @@ def _assumptions(scene: Scene, wavelengths: set[float]) -> tuple[Assumption, ...
         found.append(first_order.SHORT_REACH)
     if scene.loads:
         found += [SIZE_AVERAGE, direct_light.NO_EXTINCTION]
+    if any(optics.trust(load, at).factor > 1 or load.size_span for load in scene.loads for at in wavelengths):
+        found.append(TRUSTED)
     if any(beam.stop for beam in scene.beams):
         found += [surfaces.MATT_STOP, surfaces.SMALL_SPOT]
     if any(line.pulses for beam in scene.beams for line in beam.lines):

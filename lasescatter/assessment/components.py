@@ -1,45 +1,47 @@
-"""Optics of the site's air and loads at each wavelength: the mixtures that scatter, and their summaries."""
+"""Optics of the site's air and loads at each wavelength: the mixtures that scatter, and what is not known of them."""
 
 from __future__ import annotations
 
-import math
-
-import numpy as np
-
-from lasescatter.assessment.outcome import ComponentSummary
 from lasescatter.assumptions import Assumption
 from lasescatter.limits.judge import is_placeholder
+from lasescatter.matter import Trust
+from lasescatter.medium.atmosphere import air_profile
 from lasescatter.medium.load import Concentration, concentration
 from lasescatter.medium.mixture import Component, Mixture
-from lasescatter.medium.profiles import Unbounded, profile_of
+from lasescatter.medium.profiles import profile_of
 from lasescatter.optics.air import LONGEST_WAVELENGTH, SHORTEST_WAVELENGTH, AirRangeError, air_optics
-from lasescatter.optics.matrix import ScatteringMatrix
+from lasescatter.optics.growth import Floating, HumidityError, as_they_float
+from lasescatter.optics.indices import IndexRangeError
+from lasescatter.optics.measured import stand_in_optics
 from lasescatter.optics.mie import SizeRangeError
-from lasescatter.optics.sizes import ParticleOptics, particle_optics
+from lasescatter.optics.sizes import Accuracy, ParticleOptics, particle_optics
 from lasescatter.problems import Problem, SiteError
 from lasescatter.scene import Load, Scene
 
 AIR = "air"
 
-DRY_AIR = Assumption(
-    name="Air is taken as dry, with 360 ppm of carbon dioxide, uniform over the site",
-    direction="high",
-    size="water vapour scatters less than the air it replaces: below 1 % at 20 °C; thinner air aloft is not credited",
-    source="Bodhaine et al. 1999 for dry air; the effect of vapour: common practice, no source",
-)
 SIZE_AVERAGE = Assumption(
     name="The average over particle sizes is a finite sum",
     direction="either",
     size="by the error printed with each component, which the bounds of every ratio carry; 1e-3 is aimed at",
     source="comparison of N with 2N radii",
 )
-
-# Angles of the printed curves and running integrals: close together where the forward peak is. [rad]
-CURVE_ANGLES = np.radians(
-    np.concatenate([np.arange(0, 2, 0.25), np.arange(2, 10, 0.5), np.arange(10, 180, 1.0), [180.0]])
+TRUSTED = Assumption(
+    name="A load's particles are as its data say",
+    direction="either",
+    size="by the factor printed with each load: the upper bound takes its scattered light times that factor. Where the "
+    "reading does not fix the extinction (mass, number, a reading at another wavelength) the allowance for higher "
+    "orders and the light that walls return take the optical thickness times it too; the step at 0.5, above which "
+    "nothing is below its limit, is that of the stated load",
+    source="confidence marks of the catalogue; common practice, no source",
 )
 
-ROUNDING = 1e-12
+# At wavelengths where an index is unconfirmed a load is trusted no better than so.
+UNCONFIRMED_FACTOR = 3.0
+# An optical reading holds within so much of its own wavelength. [m]
+SAME_WAVELENGTH = 1e-9
+# No sphere that absorbs little has a spectrum steeper than small ones: extinction falls with this power at most.
+STEEPEST_SPECTRUM = 4
 
 
 def is_vouched(load: Load) -> bool:
@@ -48,120 +50,215 @@ def is_vouched(load: Load) -> bool:
 
 
 class SiteOptics:
-    """Particle optics of a scene, each load and wavelength computed once."""
+    """Optics of a scene: each load as it floats in the air of the site, each wavelength computed once.
 
-    def __init__(self, scene: Scene) -> None:
+    Parameters
+    ----------
+    accuracy : Accuracy, optional
+        Of the averages over sizes.
+    """
+
+    def __init__(self, scene: Scene, accuracy: Accuracy | None = None) -> None:
         self.scene = scene
-        self._known: dict[tuple[str, float], ParticleOptics] = {}
-        self._concentrations: dict[str, Concentration] = {}
+        self._accuracy = accuracy
+        self._floating: dict[Load, Floating] = {}
+        self._optics: dict[tuple[object, ...], ParticleOptics] = {}
+        self._amounts: dict[Load, Concentration] = {}
+        self._faults: dict[tuple[Load, float], str] = {}
+
+    @property
+    def wavelengths(self) -> tuple[float, ...]:
+        """Of all lines, each once. [m]"""
+        return tuple(dict.fromkeys(line.wavelength for beam in self.scene.beams for line in beam.lines))
+
+    def floating(self, load: Load) -> Floating | None:
+        """A load's particles with the water they have taken up; None for a stand-in.
+
+        Raises
+        ------
+        SiteError
+            If the air is more humid than growth is computed for.
+        """
+        if load.stand_in is not None:
+            return None
+        if load not in self._floating:
+            air = self.scene.air
+            try:
+                self._floating[load] = as_they_float(
+                    load.modes, load.material, air.relative_humidity, air.temperature
+                )
+            except HumidityError as fault:
+                raise SiteError(
+                    [
+                        Problem(
+                            "air.relative_humidity",
+                            f"{fault}; {load.key} takes up water",
+                            "Give at most 99 %, or enter the load by its wet sizes and index",
+                        )
+                    ]
+                ) from fault
+        return self._floating[load]
 
     def of(self, load: Load, wavelength: float) -> ParticleOptics:
         """Optics of a load's particles.
 
         Raises
         ------
+        IndexRangeError
+            If the wavelength is outside the data of an index.
         SiteError
-            If the sizes are outside what Mie sums are made for.
+            If the sizes are outside what Mie sums are made for, or the air is too humid.
         """
-        key = (load.key, wavelength)
-        if key not in self._known:
+        floating = self.floating(load)
+        if floating is None:
+            key: tuple[object, ...] = (load.stand_in, load.albedo, wavelength)
+            if key not in self._optics:
+                assert load.stand_in is not None and load.albedo is not None  # no floating particles: a stand-in
+                self._optics[key] = stand_in_optics(load.stand_in, load.albedo, wavelength)
+            return self._optics[key]
+        indices = floating.indices(wavelength)
+        key = (floating.modes, indices, wavelength)
+        if key not in self._optics:
+            index = indices[0] if len(set(indices)) == 1 else indices
             try:
-                self._known[key] = particle_optics(load.sizes, load.index, wavelength)
+                self._optics[key] = particle_optics(floating.modes, index, wavelength, accuracy=self._accuracy)
             except SizeRangeError as fault:
                 raise SiteError([Problem(f"{load.key}.sizes", str(fault), "Give sizes within that range")]) from fault
-        return self._known[key]
+        return self._optics[key]
 
     def concentration(self, load: Load) -> Concentration:
-        """Number and mass of a load."""
-        if load.key not in self._concentrations:
-            wavelength = self.scene.beams[0].lines[0].wavelength
-            self._concentrations[load.key] = concentration(load, lambda at: self.of(load, at), wavelength)
-        return self._concentrations[load.key]
+        """How much of a load there is.
+
+        Raises
+        ------
+        IndexRangeError
+            If its reading needs an index that is not known.
+        """
+        if load not in self._amounts:
+            known = [at for at in self.wavelengths if not self._unknown(load, at)] or self.wavelengths
+            self._amounts[load] = concentration(load, self.floating(load), lambda at: self.of(load, at), known[0])
+        return self._amounts[load]
+
+    def _unknown(self, load: Load, wavelength: float) -> str:
+        """Why the index at a wavelength is not known; "" where it is."""
+        floating = self.floating(load)
+        if floating is not None:
+            try:
+                floating.indices(wavelength)
+            except IndexRangeError as fault:
+                return str(fault)
+        return ""
+
+    def fault(self, load: Load, wavelength: float) -> str:
+        """Why a load is left out at a wavelength; "" where it is not."""
+        key = (load, wavelength)
+        if key not in self._faults:
+            self._faults[key] = self._fault(load, wavelength)
+        return self._faults[key]
+
+    def _fault(self, load: Load, wavelength: float) -> str:
+        unknown = self._unknown(load, wavelength)
+        if unknown:
+            return f"{_called(load)} is left out at {_nm(wavelength)}: {unknown}"
+        try:
+            self.concentration(load)
+        except IndexRangeError as fault:
+            return f"{_called(load)} is left out: its reading cannot be carried to the beam's wavelength: {fault}"
+        return ""
+
+    def trust(self, load: Load, wavelength: float) -> Trust:
+        """How far a load is trusted at a wavelength."""
+        floating = self.floating(load)
+        if floating is None or load.trust.factor >= UNCONFIRMED_FACTOR:
+            return load.trust
+        asked = [wavelength] + ([] if load.reading.at is None else [load.reading.at])
+        seen = [at for at in asked if floating.unconfirmed(at)]
+        if not seen:
+            return load.trust
+        at = " and ".join(dict.fromkeys(_nm(w) for w in seen))
+        reason = f"the refractive index at {at} has not been confirmed; apart from that: {load.trust.reason}"
+        return Trust("weak", UNCONFIRMED_FACTOR, reason)
+
+    def component(self, load: Load, wavelength: float) -> Component:
+        """One load at one wavelength."""
+        optics, amount, trust = self.of(load, wavelength), self.concentration(load), self.trust(load, wavelength)
+        return Component(
+            name=load.name,
+            extinction=amount.extinction(optics),
+            scattering=amount.scattering(optics),
+            matrix=optics.matrix,
+            profile=profile_of(load.region),
+            steady=is_vouched(load),
+            error=optics.error_f11,
+            trust=trust.factor,
+            mark=trust.mark,
+            extinction_trust=extinction_trust(load, wavelength, trust.factor),
+        )
+
+    def present(self, wavelength: float) -> tuple[Load, ...]:
+        """The loads that are not left out at a wavelength."""
+        return tuple(load for load in self.scene.loads if not self.fault(load, wavelength))
 
     def mixture(self, wavelength: float) -> Mixture:
-        """Air and all loads at a wavelength.
+        """Air and the loads at a wavelength, in the order of the scene.
 
-        Outside the data for air its scattering is left out, and `gap` says so: the value is not extrapolated.
+        What the data do not reach is left out, and `gaps` says so: no value is extrapolated.
         """
-        components = [self._air(wavelength)]
-        for load in self.scene.loads:
-            optics = self.of(load, wavelength)
-            amount = self.concentration(load)
-            components.append(
-                Component(
-                    load.name,
-                    amount.extinction(optics),
-                    amount.scattering(optics),
-                    optics.matrix,
-                    profile_of(load.region),
-                    is_vouched(load),
-                    optics.error_f11,
-                )
-            )
-        return Mixture(tuple(components))
+        loads = (self.component(load, wavelength) for load in self.present(wavelength))
+        return Mixture((self._air(wavelength), *loads))
 
     def _air(self, wavelength: float) -> Component:
         air = self.scene.air
+        nearest = min(max(wavelength, SHORTEST_WAVELENGTH), LONGEST_WAVELENGTH)
         try:
-            molecules = air_optics(wavelength, air.temperature, air.pressure)
-            scattering = molecules.scattering
-        except AirRangeError:
-            nearest = min(max(wavelength, SHORTEST_WAVELENGTH), LONGEST_WAVELENGTH)
-            molecules, scattering = air_optics(nearest, air.temperature, air.pressure), 0.0
-        return Component(AIR, scattering, scattering, molecules.matrix, Unbounded(), True)
+            molecules = air_optics(nearest, air.temperature, air.pressure, air.relative_humidity)
+        except AirRangeError as fault:
+            raise SiteError([Problem("air", str(fault), "Give a value within that range")]) from fault
+        scattering = molecules.scattering if nearest == wavelength else 0.0
+        return Component(AIR, scattering, scattering, molecules.matrix, air_profile(air), True)
 
-    def gap(self, wavelength: float) -> str:
-        """Why scattering at a wavelength is not complete; "" where it is."""
-        if SHORTEST_WAVELENGTH <= wavelength <= LONGEST_WAVELENGTH:
-            return ""
-        return (
-            f"scattering by air at {wavelength * 1e9:g} nm is outside the data "
-            f"({SHORTEST_WAVELENGTH * 1e9:g}–{LONGEST_WAVELENGTH * 1e9:g} nm) and left out"
-        )
-
-    def summaries(self, wavelength: float, mixture: Mixture) -> tuple[ComponentSummary, ...]:
-        """What a report prints of each component."""
+    def gaps(self, wavelength: float) -> tuple[str, ...]:
+        """Why scattering at a wavelength is not complete; empty where it is."""
         found = []
-        for component, load in zip(mixture.components, (None, *self.scene.loads), strict=True):
-            if component.extinction == 0:
-                continue
-            optics = None if load is None else self.of(load, wavelength)
-            amount = None if load is None else self.concentration(load)
-            found.append(_summary(component, wavelength, optics, amount))
+        if not SHORTEST_WAVELENGTH <= wavelength <= LONGEST_WAVELENGTH:
+            found.append(
+                f"scattering by air at {_nm(wavelength)} is outside the data "
+                f"({SHORTEST_WAVELENGTH * 1e9:g}–{LONGEST_WAVELENGTH * 1e9:g} nm) and left out"
+            )
+        for load in self.scene.loads:
+            fault = self.fault(load, wavelength)
+            if fault:
+                found.append(fault)
+            elif load.stand_in is not None and not _is_at(load, wavelength):
+                found.append(
+                    f'extinction of "{load.name}" at {_nm(wavelength)} is not known: it was read at '
+                    f"{_nm(load.reading.at or 0.0)} and no sizes are given; the reading is used unchanged"
+                )
         return tuple(found)
 
 
-def _summary(
-    component: Component, wavelength: float, optics: ParticleOptics | None, amount: Concentration | None
-) -> ComponentSummary:
-    mass = None if amount is None else amount.mass
-    f11, f12 = component.matrix.at(CURVE_ANGLES)
-    # F12 is 0 straight on and straight back by symmetry: rounding is not printed as a number.
-    f12 = np.where(np.abs(f12) < ROUNDING * f11.max(), 0.0, f12)
-    running, running_12, running_12_abs = component.matrix.running(CURVE_ANGLES)
-    return ComponentSummary(
-        name=component.name,
-        wavelength=wavelength,
-        extinction=component.extinction,
-        scattering=component.scattering,
-        albedo=component.scattering / component.extinction,
-        asymmetry=_asymmetry(component.matrix) if optics is None else optics.asymmetry,
-        number=None if amount is None else amount.number,
-        mass=mass,
-        mass_extinction=None if mass is None else component.extinction / mass,
-        effective_radius=None if optics is None else optics.effective_radius,
-        size_nodes=None if optics is None else optics.nodes,
-        error_f11=None if optics is None else optics.error_f11,
-        error_extinction=None if optics is None else optics.error_extinction,
-        angles=tuple(CURVE_ANGLES.tolist()),
-        phase=tuple((f11 / (4 * math.pi)).tolist()),
-        phase_12=tuple((f12 / (4 * math.pi)).tolist()),
-        running=tuple(running.tolist()),
-        running_12=tuple(running_12.tolist()),
-        running_12_abs=tuple(running_12_abs.tolist()),
-    )
+def extinction_trust(load: Load, wavelength: float, factor: float) -> float:
+    """Factor by which a load's extinction at a wavelength may be off, where its light may be off by `factor`.
+
+    Mass and number do not fix the extinction. An optical reading does, at its own wavelength; beside it the spectrum
+    may be wrong by the steepest one of spheres that absorb little, and by no more than the light.
+    """
+    if load.reading.kind in ("mass", "number"):
+        return factor
+    if _is_at(load, wavelength):
+        return 1.0
+    at = load.reading.at or wavelength
+    return min(factor, (max(at, wavelength) / min(at, wavelength)) ** STEEPEST_SPECTRUM)
 
 
-def _asymmetry(matrix: ScatteringMatrix) -> float:
-    asymmetry = float(matrix.asymmetry)
-    return 0.0 if abs(asymmetry) < ROUNDING else asymmetry
+def _is_at(load: Load, wavelength: float) -> bool:
+    at = load.reading.at
+    return at is None or abs(at - wavelength) <= SAME_WAVELENGTH * (1 + 1e-6)
+
+
+def _called(load: Load) -> str:
+    return f'"{load.name}"' + (f' (kind "{load.kind}")' if load.kind else "")
+
+
+def _nm(wavelength: float) -> str:
+    return f"{wavelength * 1e9:g} nm"

@@ -13,7 +13,7 @@ from lasescatter.exposure.direct import aperture_mean, beam_radius, irradiance
 from lasescatter.exposure.fraction import Greatest, greatest_over_fraction
 from lasescatter.exposure.legs import Leg, Swing, legs_of, swings_of
 from lasescatter.exposure.line import BrightLine, Peak, Window, bright_line, brightest_window, peak_radiance
-from lasescatter.exposure.scattered import LEAST_GAP, LegLight, PanelEdges, scattered
+from lasescatter.exposure.scattered import LEAST_GAP, TOLERANCE, LegLight, PanelEdges, scattered
 from lasescatter.exposure.sightline import Sightlines
 from lasescatter.exposure.surfaces import stop_light
 from lasescatter.exposure.thickness import optical_thickness
@@ -204,14 +204,7 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
     """
     legs = legs_of(beam)
     swings = swings_of(beam, line, legs)
-    together = max(1, MOST_LEGS_TIMES_OBSERVERS // len(legs))
-    parts = [
-        _scattered_part(
-            line, legs, swings, mixture, points[start : start + together], reaches[start : start + together]
-        )
-        for start in range(0, len(points), together)
-    ]
-    lights = tuple(_joined([part[0][i] for part in parts], together) for i in range(len(legs)))
+    lights, greatest, thickness = first_order_light(line, legs, swings, mixture, points, reaches)
     spot, spot_radius, stop_tau, compared = _stop(beam, line, legs, mixture, points, lights[-1].tau_before)
     hot = 1.0 if line.pulses is None else line.pulses.hot_spot
     direct = np.zeros(len(points))
@@ -228,12 +221,8 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
         points=points,
         reaches=reaches,
         lights=lights,
-        greatest=Greatest(
-            irradiance=np.concatenate([part[1].irradiance for part in parts]),
-            fraction=np.concatenate([part[1].fraction for part in parts]),
-            error=np.concatenate([part[1].error for part in parts]),
-        ),
-        thickness=np.concatenate([part[2] for part in parts]),
+        greatest=greatest,
+        thickness=thickness,
         stop_stated=compared * np.exp(-stop_tau),
         stop_compared=compared,
         stop_tau=stop_tau,
@@ -246,12 +235,52 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
     )
 
 
+def first_order_light(
+    line: Line,
+    legs: tuple[Leg, ...],
+    swings: tuple[Swing, ...],
+    mixture: Mixture,
+    points: Floats,
+    reaches: Floats,
+    tolerance: float = TOLERANCE,
+) -> tuple[tuple[LegLight, ...], Greatest, Floats]:
+    """Scattered light of each leg at every observer, the greatest over the load fraction, the optical thickness.
+
+    Parameters
+    ----------
+    tolerance : float
+        Relative to the unpolarised value of each leg.
+    """
+    together = max(1, MOST_LEGS_TIMES_OBSERVERS // len(legs))
+    parts = [
+        _scattered_part(
+            line, legs, swings, mixture, points[start : start + together], reaches[start : start + together], tolerance
+        )
+        for start in range(0, len(points), together)
+    ]
+    return (
+        tuple(_joined([part[0][i] for part in parts], together) for i in range(len(legs))),
+        Greatest(
+            irradiance=np.concatenate([part[1].irradiance for part in parts]),
+            fraction=np.concatenate([part[1].fraction for part in parts]),
+            error=np.concatenate([part[1].error for part in parts]),
+        ),
+        np.concatenate([part[2] for part in parts]),
+    )
+
+
 def _scattered_part(
-    line: Line, legs: tuple[Leg, ...], swings: tuple[Swing, ...], mixture: Mixture, points: Floats, reaches: Floats
+    line: Line,
+    legs: tuple[Leg, ...],
+    swings: tuple[Swing, ...],
+    mixture: Mixture,
+    points: Floats,
+    reaches: Floats,
+    tolerance: float,
 ) -> tuple[list[LegLight], Greatest, Floats]:
     """Scattered light of some observers; the nodes are let go with it."""
     least = [beam_radius(line, leg.path_before + np.clip(_foot(leg, points)[0], 0, None)) for leg in legs]
-    integrated = scattered(legs, swings, mixture, points, np.stack(least), reaches)
+    integrated = scattered(legs, swings, mixture, points, np.stack(least), reaches, tolerance)
     return (
         [leg.light for leg in integrated],
         greatest_over_fraction(integrated, mixture, len(points)),

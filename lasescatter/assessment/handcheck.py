@@ -89,7 +89,10 @@ def _rows(
     tau_beam = light.tau_before.sum() + field.mixture.thicknesses(leg.origin, places).sum(axis=0)
     tau_sight = field.mixture.thicknesses(places, field.points).sum(axis=0)
     power = powers * leg.reflected
-    bare = power * component.scattering / sight.b * (end - start)
+    value = component.profile.value(places)
+    # A place on a face of a region may be just outside it by rounding.
+    density = component.scattering * np.where(value > 0, value, 1.0)
+    bare = power * density / sight.b * (end - start)
     hand = bare * np.exp(-tau_beam - tau_sight)
     program = powers * light.by_component[index]
     rows = []
@@ -106,7 +109,7 @@ def _rows(
                 length=leg.length,
                 theta1=float(theta1[i]),
                 theta2=float(theta2[i]),
-                scattering=component.scattering,
+                scattering=float(density[i]),
                 polarization=swing.words,
                 q=swing.q,
                 phi=None if phi is None else float(phi[i]),

@@ -82,6 +82,9 @@ class SizeMovement:
     scattered: tuple[tuple[float, ...], ...]
     """Per observer, per size: scattered light as compared, all lines together. [W m⁻²]"""
     source: str
+    factor: tuple[float, ...] = ()
+    """Per observer: times which the upper bounds take the scattered light of the load, the largest over the lines.
+    At least the factor of trust."""
 
 
 @dataclass(frozen=True)
@@ -104,7 +107,7 @@ class HandCheck:
     theta2: float
     """Angles that bound the part of the leg inside the component's region. [rad]"""
     scattering: float
-    """beta_sca of the component. [m⁻¹]"""
+    """beta_sca of the component at the element at theta_mid. [m⁻¹]"""
     polarization: str
     """"unpolarized", "known axis" or "worst axis"."""
     q: float
@@ -295,3 +298,5 @@ class Assessment:
     cautions: tuple[str, ...]
     """All of rules/cautions.toml, those that matter most first."""
     provenance: Provenance
+    gaps: tuple[str, ...] = ()
+    """What is left out of the sums because no data reach it; with any, nothing is below its limit."""

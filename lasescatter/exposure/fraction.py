@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from lasescatter.assumptions import Assumption
-from lasescatter.exposure.quadrature import sums_by_owner
+from lasescatter.exposure.quadrature import Integers, sums_by_owner
 from lasescatter.exposure.scattered import FRACTIONS, IntegratedLeg
 from lasescatter.medium.mixture import Mixture
 
@@ -62,22 +62,15 @@ def greatest_over_fraction(lights: tuple[IntegratedLeg, ...], mixture: Mixture, 
         f = fraction[owner]
         return (own + f * load) * np.exp(-tau_own - f * tau_load)
 
-    def total(fraction: Floats) -> Floats:
-        return sums_by_owner(owner, weight * values(fraction), count)
-
     best = np.ones(count)
     if not steady.all():
-        tried = np.stack([total(np.full(count, f)) for f in FRACTIONS])
-        at = tried.argmax(axis=0)
-        best = FRACTIONS[at]
-        low, high = FRACTIONS[np.maximum(at - 1, 0)], FRACTIONS[np.minimum(at + 1, len(FRACTIONS) - 1)]
-        for _ in range(_REFINEMENTS):
-            first, second = high - _GOLDEN * (high - low), low + _GOLDEN * (high - low)
-            rises = total(second) > total(first)
-            low, high = np.where(rises, first, low), np.where(rises, high, second)
-        middle = (low + high) / 2
-        best = np.where(total(middle) > tried.max(axis=0), middle, best)
-    irradiance = total(best)
+        passed = weight * np.exp(-tau_own)
+        rising = sums_by_owner(owner, passed * (load * _least_slope(tau_load) - own * tau_load), count) >= 0
+        some = ~rising[owner]
+        if some.any():
+            found = _sought(owner[some], (passed * own)[some], (passed * load)[some], tau_load[some], count)
+            best = np.where(rising, best, found)
+    irradiance = sums_by_owner(owner, weight * values(best), count)
     error = np.zeros(count)
     at_best, offset = values(best), 0
     for light in lights:
@@ -87,3 +80,31 @@ def greatest_over_fraction(lights: tuple[IntegratedLeg, ...], mixture: Mixture, 
         error += sums_by_owner(panels.owner, panels.errors(some), count)
         offset += size
     return Greatest(irradiance, best, error)
+
+
+def _least_slope(tau: Floats) -> Floats:
+    """Least slope of f·exp(−f tau) for f from 0 to 1.
+
+    Light that nothing else shields rises with f so steeply at least. What air sends through the load, exp(−f tau),
+    falls by tau at most. Where the two together rise, the whole load is worst and nothing need be sought.
+    """
+    return np.where(tau < 2, (1 - tau) * np.exp(-tau), -np.exp(-2.0))
+
+
+def _sought(owner: Integers, own: Floats, load: Floats, tau: Floats, count: int) -> Floats:
+    """Load fraction at which each owner's sum of (own + f·load)·exp(−f·tau) is greatest, (count,)."""
+
+    def total(fraction: Floats) -> Floats:
+        f = fraction[owner]
+        return sums_by_owner(owner, (own + f * load) * np.exp(-f * tau), count)
+
+    tried = np.stack([total(np.full(count, f)) for f in FRACTIONS])
+    at = tried.argmax(axis=0)
+    best = FRACTIONS[at]
+    low, high = FRACTIONS[np.maximum(at - 1, 0)], FRACTIONS[np.minimum(at + 1, len(FRACTIONS) - 1)]
+    for _ in range(_REFINEMENTS):
+        first, second = high - _GOLDEN * (high - low), low + _GOLDEN * (high - low)
+        rises = total(second) > total(first)
+        low, high = np.where(rises, first, low), np.where(rises, high, second)
+    middle = (low + high) / 2
+    return np.where(total(middle) > tried.max(axis=0), middle, best)
