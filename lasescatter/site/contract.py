@@ -13,7 +13,6 @@ from typing import Any
 TableName = tuple[str, ...]
 
 _LEAVE = "Leave {it} out of the file"
-_BY_EXTINCTION = "Give the load as extinction, with at"
 
 
 @dataclass(frozen=True)
@@ -54,15 +53,12 @@ _TOP: TableName = ()
 _BEAM: TableName = ("beam",)
 _LINE: TableName = ("beam", "line")
 _STOP: TableName = ("beam", "beam_stop")
-_PARTICLES: TableName = ("particles",)
-_SIZES: TableName = ("particles", "sizes")
 _LOAD: TableName = ("particles", "load")
 _REGION: TableName = ("particles", "region")
 _OBSERVER: TableName = ("observer",)
 _LIMIT: TableName = ("limit",)
 
 _GEOMETRY = "Give the beam's points as path"
-_SPHERES = "Describe the particles as spheres, by sizes, index and density"
 _BOXES = 'Use shape = "everywhere", or a box that holds the whole load'
 
 NOT_BUILT: tuple[NotBuilt, ...] = (
@@ -96,45 +92,13 @@ NOT_BUILT: tuple[NotBuilt, ...] = (
              "Give diameter at the start of the path and a divergence; a converging beam is not computed"),
     NotBuilt(_BEAM, "scan", '{ rate = "50 Hz" }', "moving beams", "Assess a moving beam by another method",
              "moving beams are not computed; do not put a fixed path in their place"),
-    NotBuilt(_PARTICLES, "kind", '"glycol haze"', "kinds of particles from a catalogue", _SPHERES,
-             instead_of=("sizes", "index")),
-    NotBuilt(_PARTICLES, "index_file", '"index.csv"', "an index read from a file",
-             "Give the refractive index at the laser's wavelength as index", instead_of=("index",)),
-    NotBuilt(_PARTICLES, "matrix_file", '"matrix.csv"', "a measured scattering matrix", _SPHERES,
-             instead_of=("sizes", "index")),
-    NotBuilt(_PARTICLES, "henyey_greenstein", "0.8", "a stand-in for the scattering matrix", _SPHERES,
-             instead_of=("sizes", "index")),
-    NotBuilt(_PARTICLES, "albedo", "0.95", "an albedo beside a measured matrix",
-             "Leave it out: albedo follows from sizes and index"),
-    NotBuilt(_SIZES, "file", '"sizes.csv"', "a size table from a file",
-             'Use shape = "lognormal", "modified gamma" or "single"'),
-    NotBuilt(_LOAD, "meteorological_optical_range", '"120 m"', "a load by meteorological optical range",
-             'Give extinction = 2.996 divided by the range (5 % contrast), with at = "550 nm"',
-             instead_of=("extinction",)),
-    NotBuilt(_LOAD, "visual_range", '"150 m"', "a load by visual range",
-             'Give extinction = 3.912 divided by the range (2 % contrast), with at = "550 nm"',
-             instead_of=("extinction",)),
     NotBuilt(_LOAD, "visibility", '"100 m"', "a load by visibility",
-             'Find out which is meant, and give extinction with at = "550 nm": 2.996 divided by the range for '
-             "5 % contrast, 3.912 divided by the range for 2 %; where nobody knows, the larger value",
-             "a bare visibility can mean two things: the meteorological_optical_range, at which contrast falls to "
-             "5 %, or the visual_range, at which it falls to 2 %; neither is built yet",
-             ("extinction",)),
-    NotBuilt(_LOAD, "obscuration", '"5 %/ft"', "a load by obscuration per length",
-             f"{_BY_EXTINCTION}: -ln(1 - obscuration) divided by the length",
-             instead_of=("extinction",)),
-    NotBuilt(_LOAD, "optical_density", '"0.1 /m"', "a load by optical density per length",
-             f"{_BY_EXTINCTION}: 2.303 times the optical density per length",
-             instead_of=("extinction",)),
-    NotBuilt(_LOAD, "attenuation", '"3 dB/m"', "a load by decibels per length",
-             f"{_BY_EXTINCTION}: 0.2303 times the decibels per length",
-             instead_of=("extinction",)),
-    NotBuilt(_LOAD, "transmittance", "0.8", "a load by transmittance over a length",
-             f"{_BY_EXTINCTION}: -ln(transmittance) divided by the length", instead_of=("extinction",)),
-    NotBuilt(_LOAD, "over", '"3 m"', "a load by transmittance over a length",
-             f"{_BY_EXTINCTION}: -ln(transmittance) divided by the length"),
-    NotBuilt(_LOAD, "as", '"dry"', "dry mass with growth in moist air",
-             "Give the mass of the particles as they float in the air, water included"),
+             'Find out which is meant, and write meteorological_optical_range or visual_range; where nobody knows, '
+             "visual_range, which gives the larger load",
+             "a bare visibility can mean two things: the meteorological_optical_range, over which 5 % of the light is "
+             "left (extinction 2.996 divided by it), or the visual_range, at which contrast falls to 2 % (3.912 "
+             "divided by it)",
+             ("meteorological_optical_range",)),
     *(NotBuilt(_REGION, key, example, "regions other than everywhere and box", _BOXES) for key, example in (
         ("base", _POINT), ("radius", '"1 m"'), ("height", '"2 m"'), ("centre", _POINT), ("bottom", '"0 m"'),
         ("top", '"3 m"'), ("scale_height", '"8 km"'), ("file", '"profile.csv"'))),
@@ -154,7 +118,6 @@ NOT_BUILT_STOPS = tuple(
     (word, 'Only finish = "matt" is computed; a mirror-like reflection must be assessed by another method')
     for word in ("glossy", "unknown")
 )
-NOT_BUILT_SIZES = (("table", 'Use shape = "lognormal", "modified gamma" or "single"'),)
 NOT_BUILT_REGIONS = tuple(
     (word, _BOXES) for word in ("cylinder", "sphere", "layer", "exponential", "standard atmosphere", "table")
 )

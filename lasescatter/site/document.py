@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import Annotated, cast
+from typing import Annotated, Any, cast
 
 from lasescatter.scene import Air, Hazard, LengthUnit, Scene
 from lasescatter.site.air import AirTable
@@ -95,10 +95,19 @@ class SiteTable(Table):
             not_judged=self.not_judged.to_scene() if self.not_judged else (),
             air=self._air(ledger),
             beams=tuple(entry.to_scene(("beam", n), ledger) for n, entry in enumerate(self.beam)),
+            rules=self._rules(),
             loads=tuple(entry.to_scene(("particles", n), ledger, wavelength) for n, entry in enumerate(self.particles)),
             observers=tuple(entry.to_scene(("observer", n), ledger) for n, entry in enumerate(self.observer)),
             limits=tuple(entry.to_scene(("limit", n), ledger) for n, entry in enumerate(self.limit)),
         )  # fmt: skip
+
+    def _rules(self) -> dict[str, dict[str, Any]]:
+        """What is used of the catalogue, as it was read."""
+        kinds = [entry.kind.kind for entry in self.particles if entry.kind is not None]
+        if not kinds:
+            return {}
+        indices = {name: data for kind in kinds for name, data in kind.indices.items()}
+        return {"particles": {kind.name: kind.data for kind in kinds}, "indices": indices}
 
     def _air(self, ledger: Ledger) -> Air:
         return (self.air or AirTable()).to_scene(("air",), ledger)

@@ -11,7 +11,8 @@ import re
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from functools import lru_cache
-from typing import Annotated, Any
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated, Any
 
 from pydantic import GetCoreSchemaHandler, GetJsonSchemaHandler, ValidationInfo
 from pydantic_core import CoreSchema, core_schema
@@ -19,6 +20,9 @@ from pydantic_core import CoreSchema, core_schema
 from lasescatter import units
 from lasescatter.scene import LengthUnit, Vector
 from lasescatter.site.faults import quoted, refusal
+
+if TYPE_CHECKING:
+    from lasescatter.site.catalogue import Catalogue
 
 LONGEST_TEXT = 20_000
 FARTHEST = 1e6
@@ -35,8 +39,16 @@ class Reading:
 
     length_unit: LengthUnit | None
     """None where the file does not say `lengths_in`."""
+    folder: Path | None = None
+    """Where files that the site file names are looked for; None: the current folder."""
+    catalogue: Catalogue | None = None
+    """Kinds of particles; there where some entry names one."""
     bare_lengths: bool = field(default=False, init=False)
     """Whether a point or size without a unit was met."""
+    files: dict[str, str] = field(default_factory=dict, init=False)
+    """Text of each file that was read, by its name in the site file."""
+    made: dict[tuple[str, str], Any] = field(default_factory=dict, init=False)
+    """What became of each file, or the fault in it, by name and by what it was read as."""
 
 
 class Measure(float):

@@ -44,7 +44,9 @@ class Ledger:
         for place, text in self._taken:
             where = place_in_file(place, self.document)
             line = InputLine(self.spell(where), "", text, stated=False)
-            entries.append((ends.get(where[:-1], len(self.index.text)), 1, line))
+            # Of a table that the file leaves out, behind the nearest one that it has.
+            homes = (where[:length] for length in range(len(where) - 1, 0, -1))
+            entries.append((next((ends[home] for home in homes if home in ends), len(self.index.text)), 1, line))
         entries.sort(key=lambda entry: entry[:2])
         return tuple(line for _, _, line in entries)
 

@@ -7,7 +7,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from itertools import islice
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from pydantic import ValidationError
 
@@ -21,6 +21,9 @@ from lasescatter.site.spelling import with_placeholders
 from lasescatter.site.syntax import LARGEST_FILE, decoded, parsed
 from lasescatter.site.wording import known_fields, problem_of, problems_of
 
+if TYPE_CHECKING:
+    from lasescatter.site.catalogue import Catalogue
+
 MOST_PROBLEMS = 300
 """Problems that are told."""
 MOST_WORDED = 1000
@@ -29,8 +32,13 @@ MOST_ENTRIES: Mapping[str, int] = {"beam": 100, "particles": 50, "observer": 100
 MOST_LINES = 50
 
 
-def read_site(path: Path) -> Scene:
+def read_site(path: Path, catalogue: Catalogue | None = None) -> Scene:
     """Read a site file.
+
+    Parameters
+    ----------
+    catalogue : Catalogue, optional
+        Kinds of particles. Left out, it is the one that comes with the program, read only where a kind is named.
 
     Raises
     ------
@@ -52,17 +60,38 @@ def read_site(path: Path) -> Scene:
         raise SiteError(
             [Problem("", f"the file cannot be read ({reason})", "Check path and permissions")], file
         ) from None
-    return read_site_text(decoded(content, file), file)
+    return read_site_text(decoded(content, file), file, catalogue, path.parent)
 
 
-def read_site_text(text: str, file: str = "standard input") -> Scene:
-    """Read a site file's text; `file` names it in errors. Raises SiteError like `read_site`."""
+def read_site_text(
+    text: str, file: str = "standard input", catalogue: Catalogue | None = None, folder: Path | None = None
+) -> Scene:
+    """Read a site file's text.
+
+    Parameters
+    ----------
+    file : str
+        Its name in errors.
+    catalogue : Catalogue, optional
+        As in `read_site`.
+    folder : Path, optional
+        Where the files that it names are; left out, the current folder.
+
+    Raises
+    ------
+    SiteError
+        As `read_site`; also where the catalogue cannot be read.
+    """
     document, index = parsed(text, file)
     crowded = [problem_of(fault, document, index) for fault in _crowded_lists(document)]
     if crowded:
         raise SiteError(crowded, file)
     problems = [problem_of(fault, document, index) for fault in _repeated_names(document)]
-    reading = Reading(length_unit(document.get("lengths_in")))
+    if catalogue is None and _names_a_kind(document):
+        from lasescatter.site.catalogue import read_catalogue
+
+        catalogue = read_catalogue()
+    reading = Reading(length_unit(document.get("lengths_in")), folder, catalogue)
     site = None
     try:
         site = SiteTable.model_validate(with_placeholders(document, known_fields()), context=reading)
@@ -76,7 +105,14 @@ def read_site_text(text: str, file: str = "standard input") -> Scene:
         raise SiteError(_shortened(problems), file)
     ledger = Ledger(document, index)
     scene = site.to_scene(ledger)
-    return replace(scene, inputs=ledger.lines(site), source=document)
+    return replace(scene, inputs=ledger.lines(site), source=document, files=dict(sorted(reading.files.items())))
+
+
+def _names_a_kind(document: Mapping[str, Any]) -> bool:
+    """Whether some particles are of a kind of the catalogue."""
+    entries = document.get("particles")
+    entries = [entries] if isinstance(entries, Mapping) else entries
+    return isinstance(entries, list) and any(isinstance(entry, Mapping) and "kind" in entry for entry in entries)
 
 
 def _shortened(problems: list[Problem]) -> list[Problem]:

@@ -41,6 +41,12 @@ OTHER_NAMES: Mapping[str, str] = {
     "elv": "value", "el": "value", "exposure_limit": "value", "wavelength_range": "wavelengths",
     "duration_range": "durations", "times": "durations", "organ": "tissue", "exponent": "time_exponent",
     "acceptance_angle": "acceptance", "entered": "entered_by", "pupil": "aperture", "excluded": "not_judged",
+    "mor": "meteorological_optical_range", "optical_range": "meteorological_optical_range", "od": "optical_density",
+    "transmission": "transmittance", "opacity": "obscuration", "smoke_density": "optical_density",
+    "attenuation_coefficient": "attenuation", "path_length": "over", "distance": "over", "basis": "as",
+    "asymmetry": "henyey_greenstein", "g": "henyey_greenstein", "phase_function": "matrix_file",
+    "matrix": "matrix_file", "single_scattering_albedo": "albedo", "ssa": "albedo", "species": "kind", "sort": "kind",
+    "csv": "file", "mass_concentration": "mass", "number_concentration": "number",
 }  # fmt: skip
 
 
