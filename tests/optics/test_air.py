@@ -4,8 +4,17 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
-from lasescatter.optics.air import AirRangeError, air_optics, depolarisation, king_factor
+from lasescatter.optics.air import (
+    AirRangeError,
+    air_optics,
+    depolarisation,
+    king_factor,
+    saturation_pressure,
+    vapour_refractivity,
+)
 
 
 def test_scattering_is_cross_section_times_number():
@@ -71,3 +80,64 @@ def test_outside_the_range_is_refused_by_name(wavelength, temperature, pressure,
 @pytest.mark.parametrize("wavelength", [200e-9, 1700e-9])
 def test_ends_of_the_range_are_inside(wavelength):
     assert air_optics(wavelength, 293.15, 101_325.0).scattering > 0
+
+
+def test_saturation_pressure_at_the_fixed_points_of_water():
+    """Triple point 273.16 K and 611.657 Pa; normal boiling point 99.974 °C (both IAPWS)."""
+    assert saturation_pressure(273.16) == pytest.approx(611.657, rel=1e-5, abs=0)
+    assert saturation_pressure(273.15 + 99.974) == pytest.approx(101_325.0, rel=5e-4, abs=0)
+
+
+def test_vapour_takes_the_place_of_dry_air():
+    dry, moist = air_optics(532e-9, 293.15, 101_325.0), air_optics(532e-9, 293.15, 101_325.0, 0.5)
+    assert moist.number == dry.number and dry.vapour == 0
+    assert moist.vapour / moist.number == pytest.approx(0.5 * 2339.2 / 101_325, rel=1e-4, abs=0)
+    assert moist.refractivity == dry.refractivity
+
+
+@pytest.mark.parametrize(("celsius", "less"), [(20, 0.0066), (40, 0.021), (65, 0.071)])
+def test_saturated_air_scatters_less(celsius, less):
+    """Refractivities of vapour and air at the same state, 2.40e-4 and 2.78e-4 (Ciddor; Peck & Reeder), and no
+    depolarisation: 0.71 of dry air's cross section."""
+    kelvin = 273.15 + celsius
+    dry, moist = air_optics(532e-9, kelvin, 101_325.0), air_optics(532e-9, kelvin, 101_325.0, 1.0)
+    assert 1 - moist.scattering / dry.scattering == pytest.approx(less, rel=0.02, abs=0)
+    vapour = vapour_refractivity(532e-9) * 101_325 / 1333 * 293.15 / 288.15
+    ratio = (vapour / dry.refractivity) ** 2 * 1.0005 / dry.king_factor
+    share = saturation_pressure(kelvin) / 101_325
+    assert moist.scattering / dry.scattering == pytest.approx(1 - share * (1 - ratio), rel=1e-4, abs=0)
+
+
+@settings(max_examples=60, deadline=None)
+@given(
+    wavelength=st.floats(200e-9, 1700e-9),
+    temperature=st.floats(203, 338),
+    pressure=st.floats(1e3, 120e3),
+    humidity=st.floats(0, 1),
+)
+def test_moist_air_lies_between_dry_air_and_vapour(wavelength, temperature, pressure, humidity):
+    dry = air_optics(wavelength, temperature, pressure)
+    damp = air_optics(wavelength, temperature, pressure, humidity / 2)
+    moist = air_optics(wavelength, temperature, pressure, humidity)
+    assert 0.5 * dry.scattering < moist.scattering <= damp.scattering <= dry.scattering * (1 + 1e-15)
+    assert 3e-4 * (1 - 1e-9) <= moist.depolarisation <= dry.depolarisation * (1 + 1e-9)
+    assert 0 <= moist.vapour <= moist.number
+    assert moist.scattering == pytest.approx(moist.cross_section * moist.number, rel=1e-12, abs=0)
+    f11, f12 = moist.matrix.at(np.linspace(0, np.pi, 181))
+    assert np.all(np.abs(f12) <= f11)
+
+
+def test_mixed_matrix_is_the_sum_of_its_parts():
+    """F11 at 90° of saturated air at 65 °C, from molecules of each kind by their scattering."""
+    moist, dry = air_optics(532e-9, 338.15, 101_325.0, 1.0), air_optics(532e-9, 338.15, 101_325.0)
+    share = 1 - (moist.number - moist.vapour) * dry.cross_section / moist.scattering
+    # Vapour: depolarisation 3e-4, so F11(90°) = 0.75 Δ + 1 − Δ with Δ = (1 − 3e-4)/(1 + 1.5e-4).
+    of_vapour = 1 - 0.25 * (1 - 3e-4) / (1 + 1.5e-4)
+    expected = (1 - share) * float(dry.matrix.at(np.pi / 2)[0]) + share * of_vapour
+    assert float(moist.matrix.at(np.pi / 2)[0]) == pytest.approx(expected, rel=1e-9, abs=0)
+
+
+@pytest.mark.parametrize("humidity", [-0.01, 1.01, float("nan")])
+def test_humidity_outside_its_range_is_refused(humidity):
+    with pytest.raises(AirRangeError, match=r"relative humidity .* 0 to 1"):
+        air_optics(532e-9, 293.15, 101_325.0, humidity)
