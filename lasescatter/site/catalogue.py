@@ -11,7 +11,6 @@ from pathlib import Path
 from typing import TypeVar
 
 from lasescatter.matter import IndexTable, Kind, Material, SizeMode
-from lasescatter.optics.indices import IndexRangeError, index_at, unconfirmed_at
 from lasescatter.problems import Problem, SiteError
 from lasescatter.rules import shipped_rules
 from lasescatter.site.data_file import DataFile, read_data_file
@@ -268,35 +267,3 @@ class _Maker:
             typical=tuple(load.to_typical(entry) for load, entry in zip(table.load, written, strict=True)),
             sources=source_lines(table), file=file.file, data=data, indices=used,
         )  # fmt: skip
-
-
-def answer_at(kind: Kind, wavelength: float) -> str:
-    """Whether a kind answers at a wavelength: "yes", "weak" (on unconfirmed data) or "no" (outside its data).
-
-    Moist air brings the index of water in, which is asked for too where the kind grows.
-    """
-    indices = []
-    for mode in kind.modes:
-        material = mode.material or kind.material
-        indices += [material.index, *([material.growth.water] if material.growth else [])]
-    try:
-        for index in indices:
-            index_at(index, wavelength)
-    except IndexRangeError:
-        return "no"
-    return "weak" if any(unconfirmed_at(index, wavelength) for index in indices) else "yes"
-
-
-COVERAGE = tuple(nm * 1e-9 for nm in (266, 355, 405, 450, 520, 532, 638, 808, 905, 1030, 1064, 1550, 10600))
-"""Wavelengths of the table of kinds. [m]"""
-
-
-def coverage_table(catalogue: Catalogue, wavelengths: tuple[float, ...] = COVERAGE) -> str:
-    """The table of kinds by wavelength, as Markdown."""
-    heads = [f"{wavelength * 1e9:.0f}" for wavelength in wavelengths]
-    rows = ["| Kind | Trust | " + " | ".join(heads) + " |", "|---|---|" + "---|" * len(heads)]
-    rows += [
-        f"| {kind.name} | {kind.trust.mark} | " + " | ".join(answer_at(kind, w) for w in wavelengths) + " |"
-        for kind in catalogue.kinds.values()
-    ]
-    return "\n".join(rows)
