@@ -15,10 +15,11 @@ from lasescatter.assessment.outcome import (
     InTheBeam,
     LineExposure,
     ObserverOutcome,
+    SizeMovement,
     StopCheck,
 )
 from lasescatter.limits.compare import Comparison, HazardJudgement
-from lasescatter.scene import QUANTITY_UNITS, Scene
+from lasescatter.scene import QUANTITY_UNITS, LoadReading, Scene
 
 FORMAT = "lasescatter record 1"
 
@@ -31,11 +32,14 @@ def record(assessment: Assessment) -> dict[str, Any]:
         "program": {"version": provenance.version, "numpy": provenance.numpy, "scipy": provenance.scipy},
         "made_at": provenance.made_at,
         "site": assessment.scene.source,
-        "rules": {},
+        "files": assessment.scene.files,
+        "rules": assessment.scene.rules,
         "verdict": assessment.verdict,
         "particles": [_component(component, assessment.scene) for component in assessment.components],
         "in_the_beam": [_in_the_beam(entry) for entry in assessment.in_the_beam],
         "observers": [_observer(observer) for observer in assessment.observers],
+        "size_movements": [_size_movement(entry, assessment.observers) for entry in assessment.size_movements],
+        "gaps": list(assessment.gaps),
         "maps": [],
         "assumptions": [asdict(entry) for entry in assessment.assumptions],
         "cautions": list(assessment.cautions),
@@ -57,30 +61,66 @@ def record_text(body: dict[str, Any]) -> str:
 
 
 def _component(component: ComponentSummary, scene: Scene) -> dict[str, Any]:
-    air = component.size_nodes is None
+    index = component.index
     body: dict[str, Any] = {
         "name": component.name,
         "beam": [line.name for beam in scene.beams for line in beam.lines if line.wavelength == component.wavelength],
         "wavelength_m": component.wavelength,
+        "kind": component.kind,
         "extinction_per_m": component.extinction,
         "scattering_per_m": component.scattering,
         "albedo": component.albedo,
         "asymmetry": component.asymmetry,
+        "index": None if index is None else {"real": index.real, "imaginary": index.imag},
+        "growth_factor": component.growth_factor,
+        "trust": {"mark": component.trust.mark, "factor": component.trust.factor, "reason": component.trust.reason},
         "equivalents": {
             "number_per_m3": component.number,
             "mass_kg_m3": component.mass,
+            "dry_mass_kg_m3": component.dry_mass,
             "mass_extinction_m2_kg": component.mass_extinction,
+            "readings": [_reading(reading) for reading in component.equivalents],
         },
         "effective_radius_m": component.effective_radius,
         "size_nodes": component.size_nodes,
         "error_f11": component.error_f11,
         "error_extinction": component.error_extinction,
     }
-    if air:
-        body["reason"] = "molecules: closed form, no sizes; number and mass are not used"
-    elif component.mass is None:
-        body["reason"] = "no density is stated, so there is no mass"
+    reason = _without(component, scene)
+    if reason:
+        body["reason"] = reason
     return body
+
+
+def _without(component: ComponentSummary, scene: Scene) -> str:
+    """Why some of a component's values are null; "" where none is."""
+    load = next((load for load in scene.loads if load.name == component.name), None)
+    if load is None or component.size_nodes is None:
+        return "molecules: closed form, no sizes; number, mass and index of particles are not used"
+    if load.stand_in is not None:
+        return "a stand-in for the scattering matrix has neither sizes nor index, so there is no number and no mass"
+    return "no density is stated, so there is no mass" if component.mass is None else ""
+
+
+def _reading(reading: LoadReading) -> dict[str, Any]:
+    """A reading in SI units, with the conditions that belong to its kind."""
+    conditions = {"at_m": reading.at, "over_m": reading.over, "as": reading.basis}
+    return {"kind": reading.kind, "value": reading.value} | {k: v for k, v in conditions.items() if v is not None}
+
+
+def _size_movement(movement: SizeMovement, observers: tuple[ObserverOutcome, ...]) -> dict[str, Any]:
+    return {
+        "load": movement.load,
+        "kind": movement.kind,
+        "what": movement.what,
+        "usual_m": movement.usual,
+        "sizes_m": list(movement.sizes),
+        "observers": [
+            {"name": observer.name, "scattered_compared_w_m2": list(light), "factor": factor}
+            for observer, light, factor in zip(observers, movement.scattered, movement.factor, strict=True)
+        ],
+        "source": movement.source,
+    }
 
 
 def _in_the_beam(entry: InTheBeam) -> dict[str, Any]:

@@ -7,16 +7,15 @@ from dataclasses import replace
 from exposure.beams import beam, line
 from limits.entries import blue, limit, observer, skin
 
-from lasescatter.matter import Lognormal, SizeMode
+from lasescatter.matter import Lognormal, Material, SizeMode
 from lasescatter.scene import Air, Box, Everywhere, LengthUnit, Load, LoadReading, Scene, Stop
 
 
 def haze(**changes) -> Load:
     values = {
         "name": "test haze",
-        "sizes": (SizeMode(Lognormal(0.35e-6, 1.5)),),
-        "index": 1.42 + 1e-6j,
-        "density": 1060.0,
+        "modes": (SizeMode(Lognormal(0.35e-6, 1.5)),),
+        "material": Material(1.42 + 1e-6j, 1060.0),
         "reading": LoadReading("extinction", 0.01, 532e-9),
         "region": Box((1.0, -2.0, 0.0), (8.0, 2.0, 3.0)),
         "steady_by": None,

@@ -10,7 +10,7 @@ from assessment.sites import Everywhere, LoadReading, bay, beam, haze, limit, li
 from numpy.testing import assert_allclose
 
 from lasescatter.assessment.assess import assess
-from lasescatter.matter import Lognormal, SingleSize, SizeMode
+from lasescatter.matter import Lognormal, Material, SingleSize, SizeMode
 from lasescatter.problems import SiteError
 from lasescatter.scene import Pulses, Stop
 
@@ -69,8 +69,8 @@ def test_polydisperse_case_against_a_literal_sum():
     from exposure.literal import literal_sum
 
     median, sd, index, wavelength = 0.2e-6, 1.4, 1.45 + 0.001j, 532e-9
-    load = haze(sizes=(SizeMode(Lognormal(median, sd)),), index=index, reading=LoadReading("number", 5e9),
-                region=Everywhere(), density=None)  # fmt: skip
+    load = haze(modes=(SizeMode(Lognormal(median, sd)),), material=Material(index, None),
+                reading=LoadReading("number", 5e9), region=Everywhere())  # fmt: skip
     scene = bay(loads=(load,))
     grid = np.radians(np.linspace(0, 180, 721))
     logs = np.linspace(-6, 6, 301) * math.log(sd)
@@ -196,7 +196,7 @@ def test_extinction_of_the_load_comes_out_as_stated():
         again = haze(reading=LoadReading("mass", component.mass))
         by_mass = next(c for c in assess(bay(loads=(again,))).components if c.name == "test haze")
         assert_allclose(by_mass.extinction, 0.01, rtol=1e-9)
-        number = haze(reading=LoadReading("number", component.number), density=None)
+        number = haze(reading=LoadReading("number", component.number), material=Material(1.42 + 1e-6j, None))
         by_number = next(c for c in assess(bay(loads=(number,))).components if c.name == "test haze")
         assert_allclose(by_number.extinction, 0.01, rtol=1e-9)
         assert by_number.mass is None
@@ -204,7 +204,7 @@ def test_extinction_of_the_load_comes_out_as_stated():
 
 def test_sizes_outside_the_range_name_their_key():
     with pytest.raises(SiteError, match=r'particles\["test haze"\]\.sizes'):
-        assess(bay(loads=(haze(sizes=(SizeMode(SingleSize(5e-3)),)),)))
+        assess(bay(loads=(haze(modes=(SizeMode(SingleSize(5e-3)),)),)))
 
 
 def test_pulsed_beam_per_pulse_and_mean():
@@ -374,7 +374,7 @@ def _ratios(scene, place, reach=0.0, name="eye"):
 def _big_drops_without_stop_light():
     """Light that goes forward within a few degrees."""
     path = replace(bay().beams[0], stop=Stop(0.0, (-1.0, 0.0, 0.0)))
-    drops = haze(sizes=(SizeMode(Lognormal(5e-6, 1.3)),), index=1.33 + 0j,
+    drops = haze(modes=(SizeMode(Lognormal(5e-6, 1.3)),), material=Material(1.33 + 0j, None),
                  region=haze().region.__class__((0.0, -2.0, 0.0), (9.0, 2.0, 3.0)))  # fmt: skip
     return bay(beams=(path,), loads=(drops,), limits=(limit(value=0.08), skin()))
 
@@ -390,7 +390,7 @@ def test_reach_bound_covers_the_forward_peak():
 
 
 def test_reach_bound_covers_the_polarization_null():
-    small = haze(sizes=(SizeMode(Lognormal(0.03e-6, 1.2)),), reading=LoadReading("extinction", 0.3, 532e-9),
+    small = haze(modes=(SizeMode(Lognormal(0.03e-6, 1.2)),), reading=LoadReading("extinction", 0.3, 532e-9),
                  region=haze().region.__class__((3.9, -2.0, 0.0), (4.1, 2.0, 3.0)))  # fmt: skip
     path = replace(bay().beams[0], stop=Stop(0.0, (-1.0, 0.0, 0.0)))
     scene = bay(beams=(path,), loads=(small,), limits=(limit(value=3.67e-4), skin()))
