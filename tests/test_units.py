@@ -11,7 +11,16 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from lasescatter.units import KINDS, UNITS, QuantityError, fitting_units, parse_obscuration, parse_quantity, si_text, unit_factor
+from lasescatter.units import (
+    KINDS,
+    UNITS,
+    QuantityError,
+    fitting_units,
+    parse_obscuration,
+    parse_quantity,
+    si_text,
+    unit_factor,
+)
 
 # Text, kind, SI value. Where no source is named the factor is a decimal prefix: SI Brochure, 9th edition (2019),
 # table 7. Every value is exact, so the nearest float is due: rel=0, abs=0.
@@ -218,7 +227,8 @@ def test_units_of_a_header():
     assert unit_factor("µm", "length") == Decimal("1e-6")
     assert unit_factor("nm", "wavelength") == Decimal("1e-9")
     assert float(180 * unit_factor("deg", "angle")) == math.pi
-    for unit, wrong in (("kg", "is not a length"), ("", "cannot be read"), ("micron", "not known"), ("u" * 300, "too long")):
+    refused = (("kg", "is not a length"), ("", "cannot be read"), ("micron", "not known"), ("u" * 300, "too long"))
+    for unit, wrong in refused:
         with pytest.raises(QuantityError) as caught:
             unit_factor(unit, "length")
         assert wrong in caught.value.wrong

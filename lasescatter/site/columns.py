@@ -168,7 +168,8 @@ def exactly_one(file: str, table: Columns, keys: Sequence[str], columns: Sequenc
 def _rows(text: str) -> list[tuple[int, str]]:
     """The lines that say something, counted from 1."""
     lines = text.removeprefix("\ufeff").replace("\r\n", "\n").replace("\r", "\n").split("\n")
-    return [(number, line) for number, line in enumerate(lines, 1) if line.strip() and not line.lstrip().startswith("#")]
+    told = ((number, line) for number, line in enumerate(lines, 1) if line.strip())
+    return [(number, line) for number, line in told if not line.lstrip().startswith("#")]
 
 
 def _split(line: str, delimiter: str) -> list[str]:

@@ -9,7 +9,7 @@ import re
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import Any, cast
 
 from pydantic import ValidationInfo
 from pydantic_core import PydanticCustomError
@@ -53,7 +53,7 @@ class TableFile(Marker):
 
     def read(self, value: Any, info: ValidationInfo) -> FromFile:
         name = _name(value, self.example)
-        reading: Reading = info.context
+        reading = cast(Reading, info.context)
         text = reading.files.get(name)
         if text is None:
             text = _text(name, reading)

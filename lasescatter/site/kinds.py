@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Any
+from typing import TYPE_CHECKING, Any, cast
 
 from pydantic import ValidationInfo
 
@@ -20,7 +20,10 @@ from lasescatter.matter import (
     SizeShape,
 )
 from lasescatter.site.faults import quoted, refusal
-from lasescatter.site.fields import Marker, read_text
+from lasescatter.site.fields import Marker, Reading, read_text
+
+if TYPE_CHECKING:
+    from lasescatter.site.catalogue import Catalogue
 
 
 @dataclass(frozen=True)
@@ -56,7 +59,8 @@ class KindName(Marker):
 
     def read(self, value: Any, info: ValidationInfo) -> NamedKind:
         name = read_text(value, "the name of a kind", self.example)
-        catalogue = info.context.catalogue
+        reading = cast(Reading, info.context)
+        catalogue = cast("Catalogue", reading.catalogue)
         kind = catalogue.named(name)
         if kind is None:
             near = catalogue.near(name)

@@ -7,6 +7,7 @@ from itertools import pairwise
 
 from lasescatter.matter import SizeTable
 from lasescatter.site.columns import LARGEST_NUMBER, Column, TableError, ascending, exactly_one, read_columns
+from lasescatter.site.faults import quoted
 
 MOST_SIZES = 2000
 CUT_OFF = 0.01
@@ -29,7 +30,7 @@ _ADVICE = {
     **{name: _PER_WIDTH for name in ("dn/dr", "dn/dd", "dn/ddp", "nr")},
     **{name: _PER_BIN for name in ("n", "dn", "number", "count", "counts", "concentration")},
     **{name: _BY_VOLUME for name in ("dv/dlogd", "dv/dlogdp", "dv/dlnr", "dv/dlnd", "dm/dlogd", "dm/dlogdp",
-                                     "dv/dlnd", "dm/dlnr", "dm/dlnd", "volume", "mass")},
+                                     "dm/dlnr", "dm/dlnd", "volume", "mass")},
     **{name: "Divide each value by the square of the diameter, and name the column dN/dlogD"
        for name in ("ds/dlogd", "ds/dlogdp", "ds/dlnr", "surface")},
 }  # fmt: skip
@@ -49,7 +50,7 @@ def size_table(file: str, text: str) -> tuple[SizeTable, str]:
     counts = exactly_one(file, table, ("per ln", "per log"), _COLUMNS)
     if not 2 <= len(table.lines) <= MOST_SIZES:
         raise TableError([(f"{file} has {len(table.lines)} row{'s' if len(table.lines) != 1 else ''}",
-                           f"Give from 2 to {MOST_SIZES} sizes; for a single size write shape = \"single\"")])  # fmt: skip
+                           f"Give from 2 to {MOST_SIZES} sizes, or write shape = {quoted('single')}")])  # fmt: skip
     ascending(table, size)
     radii = tuple(value if size == "radius" else value / 2 for value in table.values[size])
     heights = table.values[counts]
