@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 import lasescatter
-from lasescatter.assessment.components import SIZE_AVERAGE, TRUSTED, SiteOptics, is_vouched
+from lasescatter.assessment.components import DOUBTED_THICKNESS, SIZE_AVERAGE, UNIFORM_AIR, SiteOptics, is_vouched
 from lasescatter.assessment.detector import received
 from lasescatter.assessment.field import LineField, distance_to, line_field
 from lasescatter.assessment.handcheck import hand_checks, stop_checks
@@ -22,9 +22,10 @@ from lasescatter.assessment.outcome import (
     LineExposure,
     ObserverOutcome,
     Provenance,
+    SizeMovement,
     StopCheck,
 )
-from lasescatter.assessment.size_movement import size_movements
+from lasescatter.assessment.size_movement import USUAL_SIZE, size_movements
 from lasescatter.assessment.summaries import summaries
 from lasescatter.assumptions import Assumption, merged
 from lasescatter.cautions import cautions
@@ -41,6 +42,8 @@ from lasescatter.limits.hazards import full_field, hazard_of
 from lasescatter.limits.judge import Judgement, judge
 from lasescatter.limits.verdict import worst
 from lasescatter.medium import load as loads
+from lasescatter.medium.atmosphere import STANDARD_AIR
+from lasescatter.optics import growth
 from lasescatter.problems import Problem, SiteError
 from lasescatter.scene import Limit, Line, Observer, Scene
 
@@ -113,7 +116,7 @@ def assess(
         in_the_beam=in_the_beam(scene),
         observers=observers,
         size_movements=movements,
-        assumptions=_assumptions(scene, optics, set(components)),
+        assumptions=_assumptions(scene, optics, tuple(fields.values()), movements),
         cautions=cautions(),
         provenance=_provenance(made_at),
         gaps=gaps,
@@ -266,7 +269,9 @@ def _line_exposure(field: LineField, index: int, power: float) -> LineExposure:
     )
 
 
-def _assumptions(scene: Scene, optics: SiteOptics, wavelengths: set[float]) -> tuple[Assumption, ...]:
+def _assumptions(
+    scene: Scene, optics: SiteOptics, fields: tuple[LineField, ...], movements: tuple[SizeMovement, ...]
+) -> tuple[Assumption, ...]:
     found = [direct_light.WAIST_AT_START, direct_light.SMOOTH_BEAM, direct_light.NAKED_EYE]
     if not all(is_vouched(load) for load in scene.loads):
         found.append(WORST_FRACTION)
@@ -276,8 +281,13 @@ def _assumptions(scene: Scene, optics: SiteOptics, wavelengths: set[float]) -> t
         found.append(first_order.SHORT_REACH)
     if scene.loads:
         found += [SIZE_AVERAGE, direct_light.NO_EXTINCTION]
-    if any(optics.trust(load, at).factor > 1 or load.size_span for load in scene.loads for at in wavelengths):
-        found.append(TRUSTED)
+    found.append(STANDARD_AIR if scene.air.model == "standard atmosphere" else UNIFORM_AIR)
+    if any(optics.grows(load) for load in scene.loads):
+        found.append(growth.ONE_FACTOR)
+    if any(component.extinction_trust > 1 for field in fields for component in field.mixture.components):
+        found.append(DOUBTED_THICKNESS)
+    if movements:
+        found.append(USUAL_SIZE)
     if any(beam.stop for beam in scene.beams):
         found += [surfaces.MATT_STOP, surfaces.SMALL_SPOT]
     if any(line.pulses for beam in scene.beams for line in beam.lines):
@@ -290,7 +300,7 @@ def _assumptions(scene: Scene, optics: SiteOptics, wavelengths: set[float]) -> t
         tuple(found),
         first_order.ASSUMPTIONS,
         paths.assumptions_of(scene.beams),
-        loads.assumptions_of(scene.loads, wavelengths),
+        loads.assumptions_of(scene.loads, {field.line.wavelength for field in fields}),
     )
 
 

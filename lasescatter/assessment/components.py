@@ -20,20 +20,25 @@ from lasescatter.scene import Load, Scene
 
 AIR = "air"
 
+UNIFORM_AIR = Assumption(
+    name="Air is the same all over the site, with 360 ppm of carbon dioxide",
+    direction="high",
+    size="thinner air aloft is not credited: 1 % in 100 m; today's 430 ppm scatter 0.01 % more",
+    source="U.S. Standard Atmosphere 1976; Bodhaine et al. 1999",
+)
 SIZE_AVERAGE = Assumption(
     name="The average over particle sizes is a finite sum",
     direction="either",
     size="by the error printed with each component, which the bounds of every ratio carry; 1e-3 is aimed at",
     source="comparison of N with 2N radii",
 )
-TRUSTED = Assumption(
-    name="A load's particles are as its data say",
+DOUBTED_THICKNESS = Assumption(
+    name="The optical thickness of a load that was not read at the beam's wavelength is as computed",
     direction="either",
-    size="by the factor printed with each load: the upper bound takes its scattered light times that factor. Where the "
-    "reading does not fix the extinction (mass, number, a reading at another wavelength) the allowance for higher "
-    "orders and the light that walls return take the optical thickness times it too; the step at 0.5, above which "
-    "nothing is below its limit, is that of the stated load",
-    source="confidence marks of the catalogue; common practice, no source",
+    size="by the factor of trust, where the reading is a mass or a number; by the spectrum, (ratio of wavelengths)⁴ and "
+    "that factor at most, where it is optical. The allowance for higher orders and the light from walls carry it in "
+    "the upper bounds; the step at 0.5, above which nothing is below its limit, is taken as computed",
+    source="steepest spectrum: Rayleigh scattering; the rest: common practice, no source",
 )
 
 # At wavelengths where an index is unconfirmed a load is trusted no better than so.
@@ -98,6 +103,11 @@ class SiteOptics:
                     ]
                 ) from fault
         return self._floating[load]
+
+    def grows(self, load: Load) -> bool:
+        """Whether a load's particles have taken up water."""
+        floating = self.floating(load)
+        return floating is not None and max(floating.factors) > 1
 
     def of(self, load: Load, wavelength: float) -> ParticleOptics:
         """Optics of a load's particles.

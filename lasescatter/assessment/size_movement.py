@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from lasescatter.assessment.components import SiteOptics
 from lasescatter.assessment.field import LineField, first_order_light
 from lasescatter.assessment.outcome import SizeMovement
+from lasescatter.assumptions import Assumption
 from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode, SizeShape, SizeSpan, SizeTable
 from lasescatter.medium.mixture import Mixture
 from lasescatter.optics.sizes import Accuracy
@@ -19,6 +20,13 @@ from lasescatter.scene import Load, Scene
 
 Floats = NDArray[np.float64]
 Shape = TypeVar("Shape", bound=SizeShape)
+
+USUAL_SIZE = Assumption(
+    name="Particles of a kind whose size is uncertain are of its usual size",
+    direction="either",
+    size="by the movement printed for each such load: five sizes over its range; the upper bounds carry the largest",
+    source="the catalogue's range of sizes",
+)
 
 SIZES = 5
 # A factor is wanted, so the averages and integrals of the other sizes are coarser than those of the usual one.

@@ -1,0 +1,134 @@
+"""Light over the sizes that a kind may have: computed as for a load of that size, and carried by the upper bounds."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from assessment.sites import LoadReading, bay, haze, limit, line, observer, replace, skin
+from numpy.testing import assert_allclose
+
+from lasescatter.assessment.assess import assess
+from lasescatter.assessment.record import record
+from lasescatter.assessment.size_movement import COARSE, scaled, sizes_over
+from lasescatter.matter import (
+    ENTERED,
+    Lognormal,
+    Material,
+    ModifiedGamma,
+    SingleSize,
+    SizeMode,
+    SizeSpan,
+    SizeTable,
+    Trust,
+)
+from lasescatter.optics.distributions import mean_power
+from lasescatter.scene import Stop
+
+SPAN = SizeSpan("count median radius", 0.35e-6, 0.12e-6, 1.1e-6, "invented")
+PLACES = tuple(
+    observer(name=f"place {i}", key=f"place {i}", position=p)
+    for i, p in enumerate([(4.0, 1.5, 1.6), (8.5, 1.0, 1.4), (-1.0, 1.0, 1.2), (4.0, 0.0, 2.7)])
+)
+
+
+def uncertain(**changes):
+    return haze(**{"kind": "glycol haze", "size_span": SPAN, "trust": Trust("weak", 3.0, "invented"), **changes})
+
+
+def two_lines():
+    lines = tuple(
+        line(name=f"{w * 1e9:.0f}", key=f"{w}", wavelength=w, polarization="linear", electric_field=(0.0, 0.0, 1.0))
+        for w in (532e-9, 1064e-9)
+    )
+    return replace(bay().beams[0], lines=lines, stop=Stop(0.0, (-1.0, 0.0, 0.0)))
+
+
+def test_five_sizes_spread_in_the_logarithm_with_the_usual_one():
+    sizes = sizes_over(SPAN)
+    assert len(sizes) == 5 and SPAN.usual in sizes
+    assert (sizes[0], sizes[-1]) == (SPAN.low, SPAN.high)
+    even = np.geomspace(SPAN.low, SPAN.high, 5)
+    assert sum(abs(s / e - 1) < 1e-12 for s, e in zip(sizes, even, strict=True)) == 4
+    assert sizes_over(replace(SPAN, usual=SPAN.low)) == pytest.approx(even, rel=1e-12)
+
+
+@pytest.mark.parametrize(
+    "shape",
+    [
+        Lognormal(0.3e-6, 1.5),
+        Lognormal(0.3e-6, 1.5, 0.1e-6, 1e-6),
+        ModifiedGamma(4e-6, 6, 1),
+        SingleSize(1e-6),
+        SizeTable((0.1e-6, 0.2e-6, 0.5e-6), (0.0, 1.3, 0.0)),
+    ],
+)
+def test_every_radius_moves_in_proportion(shape):
+    """The mean of r^p over a distribution goes with the factor to the p."""
+    load = haze(modes=(SizeMode(shape, 0.4), SizeMode(SingleSize(2e-6), 0.6)))
+    moved = scaled(load, 1.7)
+    assert moved.reading == load.reading
+    for before, after in zip(load.modes, moved.modes, strict=True):
+        assert after.weight == before.weight
+        for power in (2, 3):
+            assert_allclose(mean_power(after.shape, power), 1.7**power * mean_power(before.shape, power), rtol=1e-9)
+
+
+def test_light_at_each_size_is_that_of_a_load_of_that_size():
+    found = assess(bay(beams=(two_lines(),), loads=(uncertain(),), observers=PLACES))
+    (movement,) = found.size_movements
+    assert (movement.load, movement.kind, movement.what) == ("test haze", "glycol haze", SPAN.what)
+    for i, size in enumerate(movement.sizes):
+        load = replace(scaled(uncertain(), size / SPAN.usual), size_span=None)
+        there = assess(bay(beams=(two_lines(),), loads=(load,), observers=PLACES)).observers
+        for j, person in enumerate(there):
+            # F11 of the other sizes is good to this; the usual size is computed as for every load.
+            tolerance = 1e-12 if size == SPAN.usual else COARSE.f11
+            assert_allclose(movement.scattered[j][i], person.total("scattered_compared"), rtol=tolerance)
+
+
+@pytest.mark.parametrize("reading", [LoadReading("extinction", 0.01, 532e-9), LoadReading("mass", 5e-6)])
+def test_upper_bounds_hold_at_every_size(reading):
+    """Above a vertically polarized beam, where small particles send nothing, too."""
+    scene = bay(beams=(two_lines(),), limits=(limit(wavelengths=(400e-9, 1400e-9)), skin()), observers=PLACES)
+    home = assess(replace(scene, loads=(uncertain(reading=reading, trust=ENTERED),)))
+    assert any(factor > 1 for factor in home.size_movements[0].factor)
+    for size in home.size_movements[0].sizes:
+        moved = replace(scaled(uncertain(reading=reading), size / SPAN.usual), size_span=None, trust=ENTERED)
+        for bound, real in zip(home.observers, assess(replace(scene, loads=(moved,))).observers, strict=True):
+            for high, found in zip(bound.comparisons, real.comparisons, strict=True):
+                assert found.ratio_high <= high.ratio_high * (1 + 2 * COARSE.f11)
+
+
+def test_the_factor_is_the_larger_of_trust_and_movement():
+    calm = replace(SPAN, low=0.33e-6, high=0.37e-6)
+    (steady,) = assess(bay(loads=(uncertain(size_span=calm),))).size_movements
+    assert steady.factor == (3.0,)
+    found = assess(bay(loads=(uncertain(trust=ENTERED),), observers=PLACES))
+    (movement,) = found.size_movements
+    for row, factor in zip(movement.scattered, movement.factor, strict=True):
+        assert factor >= max(row) / row[movement.sizes.index(SPAN.usual)]
+    causes = {cause for person in found.observers for c in person.comparisons for cause, _ in c.allowances}
+    assert any(cause.startswith('trust in "test haze" (sizes it may have, ×') for cause in causes)
+
+
+def test_a_stated_size_does_not_move_and_the_record_holds_what_does():
+    assert assess(bay(loads=(haze(kind="glycol haze"),))).size_movements == ()
+    found = assess(bay(loads=(uncertain(),)))
+    (entry,) = record(found)["size_movements"]
+    assert entry["usual_m"] == SPAN.usual
+    assert [person["name"] for person in entry["observers"]] == ["console operator"]
+    assert len(entry["observers"][0]["scattered_compared_w_m2"]) == len(entry["sizes_m"]) == 5
+    assert any("usual size" in assumption.name for assumption in found.assumptions)
+
+
+def test_a_kind_outside_its_data_moves_nothing():
+    from lasescatter.matter import IndexTable
+
+    visible = IndexTable((355e-9, 700e-9), (1.43, 1.42), (1e-7, 1e-6), (False, False), "invented glycol", "nowhere")
+    load = uncertain(material=Material(visible, 1060.0))
+    found = assess(bay(beams=(two_lines(),), loads=(load,)))
+    assert any("1064 nm" in gap for gap in found.gaps)
+    (movement,) = found.size_movements
+    alone = replace(two_lines(), lines=two_lines().lines[1:])
+    air = assess(bay(beams=(alone,), loads=())).observers[0].total("scattered_compared")
+    assert all(light > air for light in movement.scattered[0])
