@@ -115,16 +115,15 @@ def read_columns(file: str, text: str, columns: Sequence[Column], advice: Mappin
     if faults:
         raise TableError(_shortened(faults))
     values: dict[str, list[float]] = {column.key: [] for column, _ in found}
+    met: dict[str, list[tuple[str, str]]] = {}
     for line, row in body:
         for key, value, fault in _row(file, line, _split(row, delimiter), found, cells):
             if fault is None:
                 values[key].append(value)
             else:
-                faults.append(fault)
-        if len(faults) > MOST_TOLD:
-            break
-    if faults:
-        raise TableError(_shortened(faults))
+                met.setdefault(key, []).append(fault)
+    if met:
+        raise TableError(_shortened([_with_its_like(faults) for faults in met.values()]))
     return Columns(
         file,
         {key: tuple(column) for key, column in values.items()},
@@ -185,6 +184,13 @@ def _split(line: str, delimiter: str) -> list[str]:
 
 def _headers(columns: Sequence[Column]) -> str:
     return ", ".join(dict.fromkeys(column.header for column in columns))
+
+
+def _with_its_like(faults: list[tuple[str, str]]) -> tuple[str, str]:
+    """The first fault of a column; a whole column that is wrong is told once."""
+    (wrong, mend), *others = faults
+    more = f" ({len(others)} more row{'s' if len(others) > 1 else ''} of it likewise)" if others else ""
+    return wrong + more, mend
 
 
 def _shortened(faults: list[tuple[str, str]]) -> list[tuple[str, str]]:

@@ -160,7 +160,7 @@ class LoadTable(Table):
             yield Fault(("over",), f"a load by {reading} is not tied to a length of its own",
                         "Leave over out; it belongs to transmittance")  # fmt: skip
         if seen.stated("as_") and reading != "mass":
-            yield Fault(("as",), f"a load by {reading} is of the particles as they float",
+            yield Fault(("as",), f"a load by {reading} is of the particles with the water they have",
                         "Leave as out; it belongs to mass")  # fmt: skip
 
     @property

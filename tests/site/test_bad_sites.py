@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import re
+from pathlib import Path
 
 import pytest
-from site_cases import BAD_SITES, GOOD
+from site_cases import BAD_SITES, GOOD, TABLES, read_text
 
 from lasescatter.problems import SiteError
 from lasescatter.scene import Scene
-from lasescatter.site.reading import read_site_text
 from lasescatter.site.wording import known_fields
 
 # Words of the libraries behind the reader that must not reach the user.
@@ -20,21 +20,21 @@ JARGON = re.compile(
 )
 
 
-def problems_of(text: str):
+def problems_of(text: str, folder: Path = TABLES):
     with pytest.raises(SiteError) as caught:
-        read_site_text(text, "site.toml")
+        read_text(text, "site.toml", folder)
     return caught.value.problems
 
 
 @pytest.mark.parametrize("name", list(GOOD))
 def test_the_good_files_read(name):
-    assert isinstance(read_site_text(GOOD[name]), Scene)
+    assert isinstance(read_text(GOOD[name]), Scene)
 
 
 @pytest.mark.parametrize("case", BAD_SITES, ids=[case.what for case in BAD_SITES])
 def test_the_fault_is_told(case):
-    found = [problem for problem in problems_of(case.text) if problem.key == case.key]
-    assert found, [problem.key for problem in problems_of(case.text)]
+    found = [problem for problem in problems_of(case.text, case.folder) if problem.key == case.key]
+    assert found, [problem.key for problem in problems_of(case.text, case.folder)]
     said = [
         problem
         for problem in found
@@ -46,7 +46,7 @@ def test_the_fault_is_told(case):
 def test_the_line_is_right_in_nearly_all_bad_files():
     """At least 95 % by count, over all bad files; and there are at least forty of them."""
     assert len(BAD_SITES) >= 40
-    right = [case for case in BAD_SITES if case.line in {p.line for p in problems_of(case.text) if p.key == case.key}]
+    right = [case for case in BAD_SITES if case.line in {p.line for p in problems_of(case.text, case.folder) if p.key == case.key}]
     assert len(right) >= 0.95 * len(BAD_SITES), sorted(
         {case.what for case in BAD_SITES} - {case.what for case in right}
     )
@@ -55,7 +55,7 @@ def test_the_line_is_right_in_nearly_all_bad_files():
 def test_one_fault_gives_few_messages():
     """A fault must not drown in its consequences."""
     for case in BAD_SITES:
-        assert len(problems_of(case.text)) <= 2, case.what
+        assert len(problems_of(case.text, case.folder)) <= 2, case.what
 
 
 def test_every_key_that_is_read_is_broken_by_some_file():
@@ -69,7 +69,7 @@ def test_every_key_that_is_read_is_broken_by_some_file():
 
 def test_messages_are_plain_sentences():
     for case in BAD_SITES:
-        for problem in problems_of(case.text):
+        for problem in problems_of(case.text, case.folder):
             told = f"{problem.wrong}. {problem.mend}."
             without_values = re.sub(r'"[^"]*"', "", told)
             assert not JARGON.search(without_values), (case.what, told)
@@ -113,7 +113,7 @@ def test_all_faults_of_a_file_are_told_at_once():
 def test_the_whole_message_reads_well():
     text = GOOD["good_continuous"].replace('power = "2 W"', "power = 2")
     with pytest.raises(SiteError) as caught:
-        read_site_text(text, "bay.toml")
+        read_text(text, "bay.toml")
     assert str(caught.value) == (
         'bay.toml, line 19: beam["main beam"].power: 2 has no unit, and a power is due. '
         'Write number and unit in quotes, for example "2 W"; what fits: W, mW, uW, nW, kW or MW.'

@@ -12,22 +12,22 @@ from pathlib import Path
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
-from site_cases import GOOD, changed
+from site_cases import GOOD, changed, read_text
 
 from lasescatter.matter import Lognormal, Material, ModifiedGamma, SingleSize, SizeMode
 from lasescatter.problems import SiteError
 from lasescatter.scene import Air, Box, Everywhere, LoadReading, Pulses, Scene, Stop
-from lasescatter.site.reading import MOST_ENTRIES, MOST_LINES, MOST_PROBLEMS, read_site, read_site_text
+from lasescatter.site.reading import MOST_ENTRIES, MOST_LINES, MOST_PROBLEMS, read_site
 from lasescatter.site.syntax import LARGEST_FILE
 
-CONTINUOUS = read_site_text(GOOD["good_continuous"])
-PULSED = read_site_text(GOOD["good_pulsed"])
-COUNTED = read_site_text(GOOD["good_counted"])
+CONTINUOUS = read_text(GOOD["good_continuous"])
+PULSED = read_text(GOOD["good_pulsed"])
+COUNTED = read_text(GOOD["good_counted"])
 SAMPLE = Path(__file__).parents[2] / "sample_sites" / "hazed_test_bay.toml"
 
 
 def scene_with(*changes: tuple[str, str], base: str = "good_continuous") -> Scene:
-    return read_site_text(changed(GOOD[base], [list(change) for change in changes]))
+    return read_text(changed(GOOD[base], [list(change) for change in changes]))
 
 
 def problems_with(*changes: tuple[str, str], base: str = "good_continuous"):
@@ -206,7 +206,7 @@ def test_the_quantity_of_a_limit_decides_its_unit(quantity, value, read):
 def test_no_limits_and_no_particles_are_allowed():
     text = GOOD["good_continuous"]
     bare = text[: text.index("[[particles]]")] + text[text.index("[[observer]]") : text.index("[[limit]]")]
-    scene = read_site_text(bare)
+    scene = read_text(bare)
     assert scene.limits == () and scene.loads == ()
 
 
@@ -231,7 +231,7 @@ def test_a_scene_holds_plain_finite_numbers(scene):
 
 @pytest.mark.parametrize("name", list(GOOD))
 def test_the_source_is_the_file_as_plain_json(name):
-    scene = read_site_text(GOOD[name])
+    scene = read_text(GOOD[name])
     assert scene.source == tomllib.loads(GOOD[name])
     assert json.loads(json.dumps(scene.source)) == scene.source
 
@@ -290,14 +290,14 @@ def test_names_that_look_the_same_are_the_same():
         block, block.replace("console operator", "caf\u00e9") + block.replace("console operator", "cafe\u0301 ")
     )
     with pytest.raises(SiteError, match="used twice"):
-        read_site_text(twice)
+        read_text(twice)
 
 
 @pytest.mark.parametrize("table", list(MOST_ENTRIES))
 def test_counts_are_bounded(table):
     text = GOOD["good_continuous"] + "".join(f'[[{table}]]\nname = "n{n}"\n' for n in range(MOST_ENTRIES[table]))
     with pytest.raises(SiteError) as caught:
-        read_site_text(text)
+        read_text(text)
     (problem,) = caught.value.problems
     assert f"{MOST_ENTRIES[table] + 1} entries" in problem.wrong and problem.line == text.count("\n") - 1
 
@@ -324,7 +324,7 @@ def test_line_ends_and_byte_order_mark_of_other_systems(tmp_path):
     assert read_site(file) == CONTINUOUS
     broken = GOOD["good_continuous"].replace('power = "2 W"', "power = 2").replace("\n", "\r\n")
     with pytest.raises(SiteError) as caught:
-        read_site_text(broken)
+        read_text(broken)
     assert caught.value.problems[0].line == 19
 
 
@@ -362,20 +362,20 @@ def test_files_that_are_too_large(tmp_path):
     with pytest.raises(SiteError, match=r"5\.0 MB"):
         read_site(file)
     with pytest.raises(SiteError, match="characters"):
-        read_site_text("#" * (LARGEST_FILE + 1))
+        read_text("#" * (LARGEST_FILE + 1))
 
 
 def test_empty_texts():
     for text, wrong in (("", "is empty"), ("\n \n", "is empty"), ("# only a remark", "nothing but remarks")):
         with pytest.raises(SiteError) as caught:
-            read_site_text(text)
+            read_text(text)
         (problem,) = caught.value.problems
         assert wrong in problem.wrong and "lasescatter new" in problem.mend
 
 
 def test_what_is_missing_from_a_nearly_empty_text_is_told():
     with pytest.raises(SiteError) as caught:
-        read_site_text("[air]")
+        read_text("[air]")
     assert {"format", "title", "beam", "observer"} <= {problem.key for problem in caught.value.problems}
 
 
@@ -383,13 +383,13 @@ def test_shares_in_per_cent_are_the_same_as_plain_numbers():
     """Per cent of a stop, of mirrors and of modes: 30 % is 0.3 to the last bit."""
     text = GOOD["good_continuous"].replace("reflectance = 0.3", 'reflectance = "30 %"')
     text = text.replace("mirror_reflectance = [0.99]", 'mirror_reflectance = ["99%"]')
-    beam = read_site_text(text).beams[0]
+    beam = read_text(text).beams[0]
     assert beam.stop.reflectance == 0.3 and beam.mirror_reflectance == (0.99,)
-    listed = {line.key: (line.written, line.read) for line in read_site_text(text).inputs}
+    listed = {line.key: (line.written, line.read) for line in read_text(text).inputs}
     assert listed['beam["main beam"].beam_stop.reflectance'] == ("30 %", "0.3")
     assert listed['beam["main beam"].mirror_reflectance'] == ('["99%"]', "0.99")
     modes = GOOD["good_pulsed"].replace("weight = 0.4", 'weight = "40 %"').replace("weight = 0.6", 'weight = "60 %"')
-    assert read_site_text(modes).loads == read_site_text(GOOD["good_pulsed"]).loads
+    assert read_text(modes).loads == read_text(GOOD["good_pulsed"]).loads
 
 
 def test_a_plausible_wavelength_is_not_doubted():
@@ -400,7 +400,7 @@ def test_a_plausible_wavelength_is_not_doubted():
 def test_many_faults_are_cut_short():
     text = GOOD["good_continuous"].replace("[air]", "[air]\n" + "\n".join(f"k{n} = 1" for n in range(5000)))
     with pytest.raises(SiteError) as caught:
-        read_site_text(text)
+        read_text(text)
     assert len(caught.value.problems) == MOST_PROBLEMS + 1
     assert "not listed" in caught.value.problems[-1].wrong
 
@@ -411,7 +411,7 @@ def test_many_faults_are_cut_short():
 def attempt(text: str) -> None:
     """Read a text: a scene, or the reader's own error with something to say."""
     try:
-        scene = read_site_text(text)
+        scene = read_text(text)
     except SiteError as error:
         assert error.problems
         for problem in error.problems:
