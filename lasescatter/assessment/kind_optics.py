@@ -20,6 +20,7 @@ from lasescatter.scene import Air, Beam, Everywhere, LengthUnit, Line, Load, Loa
 ANGLES = (30.0, 90.0, 150.0)
 """At which F11 is told. [deg]"""
 
+
 @dataclass(frozen=True)
 class KindValues:
     """One size of the kind at one wavelength, as it floats."""

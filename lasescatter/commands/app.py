@@ -35,6 +35,8 @@ def _path_of(name: str, mend: str) -> Callable[[str], Path]:
 
 _file = _path_of("FILE", "Give the path of a site file")
 _folder = _path_of("--out", "Give a folder, or leave the option out for this folder")
+_rules = _path_of("--rules", "Give a folder, or leave the option out for the kinds that come with the program")
+_plot = _path_of("--plot", "Give a file that ends in .svg, .png or .pdf, or leave the option out")
 
 SiteFile = Annotated[
     Path, typer.Argument(metavar="FILE", parser=_file, help="Site file (TOML); - reads standard input.")
@@ -42,6 +44,13 @@ SiteFile = Annotated[
 Quiet = Annotated[
     bool, typer.Option("--quiet", "-q", help="Print nothing but errors, and how many earlier files were replaced.")
 ]
+Rules = Annotated[
+    Path | None,
+    typer.Option(
+        "--rules", metavar="DIR", parser=_rules,
+        help="Folder with particles/*.toml, indices/*.toml or both: kinds and indices that are added or replaced.",
+    ),
+]  # fmt: skip
 AsJson = Annotated[bool, typer.Option("--json", help="Print JSON to standard output.")]
 
 
@@ -72,21 +81,22 @@ def assess_command(
         bool,
         typer.Option("--verdict-exit", help="Exit 3 if something is above a limit, 4 if something is not established."),
     ] = False,
+    rules: Rules = None,
     as_json: AsJson = False,
     quiet: Quiet = False,
 ) -> None:
     """Assess a site: PDF, record, table and figures."""
     from lasescatter.commands.assessing import assess_site
 
-    raise typer.Exit(assess_site(file, out, page_size, verdict_exit, as_json, quiet))
+    raise typer.Exit(assess_site(file, out, page_size, verdict_exit, rules, as_json, quiet))
 
 
 @app.command("check")
-def check_command(file: SiteFile, as_json: AsJson = False, quiet: Quiet = False) -> None:
+def check_command(file: SiteFile, rules: Rules = None, as_json: AsJson = False, quiet: Quiet = False) -> None:
     """Read and validate a site file; compute nothing."""
     from lasescatter.commands.checking import check_site
 
-    check_site(file, as_json, quiet)
+    check_site(file, rules, as_json, quiet)
 
 
 @app.command("new")
@@ -101,6 +111,47 @@ def new_command(
     from lasescatter.commands.starting import new_site
 
     new_site(file, starter, quiet)
+
+
+particles_app = typer.Typer(no_args_is_help=True, help="Kinds of particles: what is known of them, and their optics.")
+app.add_typer(particles_app, name="particles")
+
+
+@particles_app.command("list")
+def particles_list_command(rules: Rules = None, as_json: AsJson = False) -> None:
+    """List the kinds: trust, wavelengths answered, whether the size must be stated."""
+    from lasescatter.commands.particles import list_kinds
+
+    list_kinds(rules, as_json)
+
+
+@particles_app.command("show")
+def particles_show_command(
+    kind: Annotated[str, typer.Argument(metavar="KIND", help='Name of a kind, for example "glycol haze".')],
+    wavelength: Annotated[
+        list[str], typer.Option("--wavelength", "-w", metavar="W", help='"532 nm"; may be given several times.')
+    ],
+    load: Annotated[
+        list[str] | None,
+        typer.Option(
+            "--load", metavar="READING",
+            help='As in the site file: "mass=8 mg/m^3" or "transmittance=0.8, over=3 m, at=650 nm".',
+        ),
+    ] = None,
+    humidity: Annotated[
+        str | None, typer.Option("--humidity", metavar="PERCENT", help='Relative humidity, "60 %"; dry if left out.')
+    ] = None,
+    plot: Annotated[
+        Path | None,
+        typer.Option("--plot", metavar="FILE", parser=_plot, help="Draw the curves to an .svg, .png or .pdf file."),
+    ] = None,
+    rules: Rules = None,
+    as_json: AsJson = False,
+) -> None:  # fmt: skip
+    """Show a kind's optics at wavelengths, over its sizes, and what instruments would read of a load."""
+    from lasescatter.commands.particles import show_kind
+
+    show_kind(kind, wavelength, load or [], humidity, plot, rules, as_json)
 
 
 @app.command("schema")

@@ -14,13 +14,16 @@ from lasescatter.commands.sources import STANDARD_INPUT, site_from
 from lasescatter.commands.steps import Steps
 from lasescatter.limits.verdict import ABOVE, NOT_ESTABLISHED
 from lasescatter.problems import Problem, SiteError
+from lasescatter.report.size_movement import size_warnings
 from lasescatter.report.typography import plain
 
 PAGE_SIZES = ("A4", "Letter")
 EXIT_ABOVE, EXIT_NOT_ESTABLISHED = 3, 4
 
 
-def assess_site(file: Path, out: Path, page_size: str, verdict_exit: bool, as_json: bool, quiet: bool) -> int:
+def assess_site(
+    file: Path, out: Path, page_size: str, verdict_exit: bool, rules: Path | None, as_json: bool, quiet: bool
+) -> int:
     """Assess a site file and write its PDF, record, table and figures. Returns the exit status."""
     from rich.console import Console
 
@@ -30,7 +33,7 @@ def assess_site(file: Path, out: Path, page_size: str, verdict_exit: bool, as_js
     if page_size not in PAGE_SIZES:
         problem = Problem("--page-size", f'"{page_size}" is no page size', f"Use one of: {', '.join(PAGE_SIZES)}")
         raise SiteError([problem], "command line")
-    scene = site_from(file)
+    scene = site_from(file, rules)
     made_at = _time_stamp()
     from_input = file == STANDARD_INPUT
     stem = "site" if from_input else file.stem
@@ -52,6 +55,9 @@ def assess_site(file: Path, out: Path, page_size: str, verdict_exit: bool, as_js
         typer.echo("")
         for path in written:
             typer.echo(f"wrote {plain(str(path))}{' (replaced)' if path in replaced else ''}")
+    if not quiet:
+        for line in size_warnings(assessment):
+            typer.echo(line, err=True)
     if replaced and (as_json or quiet):
         files = "1 file" if len(replaced) == 1 else f"{len(replaced)} files"
         typer.echo(f"replaced {files} of an earlier run in {plain(str(out))}", err=True)

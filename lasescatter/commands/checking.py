@@ -8,15 +8,16 @@ from pathlib import Path
 import typer
 
 from lasescatter.commands.sources import site_from
+from lasescatter.report.size_movement import size_request
 from lasescatter.report.typography import abridged, plain
 
 TITLE = 200
 """A longer title is cut."""
 
 
-def check_site(file: Path, as_json: bool, quiet: bool) -> None:
-    """Read a site file and say what is in it."""
-    scene = site_from(file)
+def check_site(file: Path, rules: Path | None, as_json: bool, quiet: bool) -> None:
+    """Read a site file and say what is in it, and what had better be stated."""
+    scene = site_from(file, rules)
     counts = {
         "beams": len(scene.beams),
         "loads": len(scene.loads),
@@ -24,9 +25,14 @@ def check_site(file: Path, as_json: bool, quiet: bool) -> None:
         "limits": len(scene.limits),
     }
     if as_json:
-        typer.echo(json.dumps({"valid": True, "title": scene.title, "reference": scene.reference, **counts}))
+        asked = [load.name for load in scene.loads if load.size_span is not None]
+        told = {"valid": True, "title": scene.title, "reference": scene.reference, **counts, "size_not_stated": asked}
+        typer.echo(json.dumps(told))
     elif not quiet:
         listed = ", ".join(f"{count} {name if count != 1 else name[:-1]}" for name, count in counts.items())
         typer.echo(f"{abridged(plain(scene.title), TITLE)}: the file can be read: {listed}.")
         if not scene.limits:
             typer.echo("It has no limits: every observer will be not established.")
+        for load in scene.loads:
+            if load.size_span is not None:
+                typer.echo(size_request(load, load.size_span))

@@ -124,6 +124,12 @@ def _floating(air: Air, entries: list[ComponentSummary]) -> str:
     return grown if radius is None else f"{grown}; effective radius {small_length(radius)}"
 
 
+def _grows(load: Load) -> bool:
+    """Whether a load takes up water in moist air."""
+    materials = [load.material, *(mode.material for mode in load.modes)]
+    return any(material is not None and material.growth is not None for material in materials)
+
+
 def _material(load: Load) -> str:
     found: list[Material] = []
     for mode in load.modes:
@@ -203,16 +209,16 @@ def _trust(load: Load, entries: list[ComponentSummary]) -> str:
 
 
 def _readings(load: Load, entries: list[ComponentSummary]) -> list[Any]:
-    stated = f"Read on site: <b>{markup(reading_words(load.reading))}</b>."
+    stated = f"Read on site: <b>{markup(reading_words(load.reading, _grows(load)))}</b>."
     rows = reading_rows(reading for entry in entries for reading in entry.equivalents)
     if not rows:
         return [paragraph(stated)]
     waves = list(dict.fromkeys(wave for row in rows for wave in row.cells if wave is not None))
     story: list[Any] = [
         paragraph(
-            f"<b>What instruments would read of this load.</b> {stated} The same load in other readings, this load alone, air's share not included; hold them "
-            "against whatever instrument is at hand. Carried to the wavelength over each column through the load's own "
-            "spectrum."
+            f"<b>What instruments would read of this load.</b> {stated} The same load in other readings, for whatever "
+            "instrument is at hand: this load alone, air's share not included, carried to the wavelength over each "
+            "column through the load's own spectrum."
         ),
     ]
     for first in range(0, max(1, len(waves)), COLUMNS):

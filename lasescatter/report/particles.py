@@ -55,6 +55,12 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
             "Values where the component is; number, mass and radius as the particles float, water included. Errors "
             "are the program's own estimates, relative to the value."
         ),
+        *(
+            [paragraph("<b>Left out</b>, because no data reach it; nothing is below its limit then:")]
+            + [paragraph(markup(gap, 600), "small item", bullet="•") for gap in assessment.gaps]
+            if assessment.gaps
+            else []
+        ),
         ruled(rows, [26, 19, 18, 18, 15, 18, 15, 15, 15, 15], numeric=tuple(range(1, 10))),
         ruled(quality, [60, 22, 27, 39, 26], numeric=(1, 2, 3, 4)),
         *load_sections(assessment),

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
@@ -18,14 +19,15 @@ _NAMES = {
     "visual_range": "visual range (2 % contrast)",
     "extinction": "extinction coefficient",
     "obscuration": "obscuration",
-    "optical_density": "optical density per metre",
+    "optical_density": "optical density",
     "attenuation": "attenuation",
     "transmittance": "transmittance",
 }
 _BASES = {"dry": ", without water taken up", "ambient": ", with water taken up", None: ""}
 _MASSES = ((1.0, "kg/m³"), (1e-3, "g/m³"), (1e-6, "mg/m³"), (1e-9, "µg/m³"))
 NEAR_ONE = 0.01
-"""A transmittance nearer to 1 is told by what it lacks."""
+"""A transmittance nearer to 1 is told with more digits."""
+MOST_DECIMALS = 8
 
 
 @dataclass(frozen=True)
@@ -50,9 +52,13 @@ def path_length(value: float) -> str:
 
 
 def reading_value(reading: LoadReading) -> tuple[str, str]:
-    """Number and unit, as instruments show them."""
-    if reading.kind == "transmittance" and 0 < 1 - reading.value < NEAR_ONE:
-        return f"1 − {digits(1 - reading.value)}", ""
+    """Number and unit for a table: one unit for each sort of reading, so that rows and loads can be compared."""
+    if reading.kind == "mass":
+        return digits(reading.value * 1e6), "mg/m³"
+    lost = 1 - reading.value
+    if reading.kind == "transmittance" and 0 < lost < NEAR_ONE:
+        # Three digits of what is lost.
+        return f"{reading.value:.{min(MOST_DECIMALS, 2 - math.floor(math.log10(lost)))}f}", ""
     return _value(reading, digits)
 
 
@@ -72,16 +78,19 @@ def _value(reading: LoadReading, told: Callable[[float], str]) -> tuple[str, str
     return told(value), "dB/m" if reading.kind == "attenuation" else "1/m"
 
 
-def reading_words(reading: LoadReading) -> str:
-    """A reading in one phrase, as short as it was entered: "transmittance 0.8 over 3 m at 650 nm"."""
+def reading_words(reading: LoadReading, grows: bool = True) -> str:
+    """A reading in one phrase, as short as it was entered: "transmittance 0.8 over 3 m at 650 nm".
+
+    Of particles that take up no water (`grows` false) a mass is simply their mass.
+    """
     value, unit = _value(reading, trimmed)
-    told = f"{_NAMES[reading.kind]} {value}{' ' + unit if unit else ''}{_BASES[reading.basis]}"
+    told = f"{_NAMES[reading.kind]} {value}{' ' + unit if unit else ''}{_BASES[reading.basis] if grows else ''}"
     told += "" if reading.over is None else f" over {path_length(reading.over)}"
     return told if reading.at is None else f"{told} at {wavelength(reading.at)}"
 
 
 def reading_rows(readings: Iterable[LoadReading]) -> list[ReadingRow]:
-    """Readings as rows, those of one sort at several wavelengths together.
+    """Readings as rows, those of one sort at several wavelengths together, those not tied to a laser first.
 
     Mass with and without water is one row where both are the same. The two ranges are not tied to a laser: their
     wavelength, 550 nm, is in the name.
@@ -96,7 +105,7 @@ def reading_rows(readings: Iterable[LoadReading]) -> list[ReadingRow]:
             name += f", {wavelength(reading.at)}"
         value, unit = reading_value(reading)
         rows.setdefault((name, unit), ReadingRow(name, unit, {})).cells[at] = value
-    return list(rows.values())
+    return sorted(rows.values(), key=lambda row: None not in row.cells)
 
 
 def _merged(readings: list[LoadReading]) -> list[LoadReading]:

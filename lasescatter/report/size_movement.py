@@ -43,7 +43,9 @@ def size_warnings(assessment: Assessment) -> list[str]:
     for movement in assessment.size_movements:
         name = _named(movement.load, movement.kind)
         found = extremes(movement)
-        moves = "no light to move" if found is None else f"light moves by {digits(found[0], 2)} to {digits(found[1], 2)}"
+        moves = (
+            "no light arrives" if found is None else f"light moves by {digits(found[0], 2)} to {digits(found[1], 2)}"
+        )
         span = size_range(movement.sizes[0], movement.sizes[-1], "um")
         lines.append(f"{name}: size not stated; {moves} over {span}")
     return lines
@@ -54,8 +56,8 @@ def size_request(load: Load, span: SizeSpan) -> str:
     sizes = size_range(span.low, span.high, "um")
     usual = trimmed(float(f"{span.usual * 1e6:.3g}"))
     return (
-        f"{_named(load.name, load.kind)}: size not stated; state sizes ({plain(span.what)} is {usual} um if left "
-        f"out, and may be {sizes})"
+        f"{_named(load.name, load.kind)}: size not stated: state it as [particles.sizes] ({plain(span.what)} is "
+        f"taken as {usual} um; it may be {sizes})"
     )
 
 
@@ -89,6 +91,8 @@ def movement_section(movement: SizeMovement, observers: tuple[str, ...]) -> list
         heads("No.", "Observer", *(small_length(movement.sizes[i]) for i in sizes), "at usual size [W/m²]",
               numeric_from=2)
     ]  # fmt: skip
+    if movement.factor:
+        rows[0] += heads("factor in bounds", numeric_from=0)
     usual = movement.sizes.index(movement.usual)
     ratios = relative(movement)
     for place in shown:
@@ -98,14 +102,17 @@ def movement_section(movement: SizeMovement, observers: tuple[str, ...]) -> list
                 words(observers[place] if place < len(observers) else "", limit=NAME),
                 *(digits(ratios[place][i]) for i in sizes),
                 digits(movement.scattered[place][usual]),
+                *([digits(movement.factor[place])] if movement.factor else []),
             ]
         )
-    width = 14.0
-    story.append(
-        ruled(rows, [8, 174 - 8 - 30 - width * len(sizes), *[width] * len(sizes), 30],
-              numeric=tuple(range(2, 3 + len(sizes))))
-    )  # fmt: skip
+    widths = [*[13.0] * len(sizes), 25.0, *([17.0] if movement.factor else [])]
+    story.append(ruled(rows, [8, 166 - sum(widths), *widths], numeric=tuple(range(2, 2 + len(widths)))))
     notes = [f"All scattered light as compared, all lines together, relative to the usual {markup(movement.what)}."]
+    if movement.factor:
+        notes.append(
+            "Factor in bounds: times which the upper bound of a ratio takes the light of this load, for trust and for "
+            "the size that sends most."
+        )
     if len(shown) < len(movement.scattered):
         notes.append(f"The {len(shown)} observers of {len(movement.scattered)} whose light moves most are shown.")
     if len(sizes) < len(movement.sizes):

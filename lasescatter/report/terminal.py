@@ -18,12 +18,12 @@ from lasescatter.report.standing import (
     left_out_words,
     standing,
 )
+from lasescatter.report.text_page import TextPage
 from lasescatter.report.typography import abridged, plain
 
 if TYPE_CHECKING:
     from rich.console import Console
 
-WIDTH = 80
 NAME = 100
 OBSERVERS = 20
 """More than so many are counted by verdict and only the worst are listed."""
@@ -31,7 +31,7 @@ OBSERVERS = 20
 
 def print_summary(assessment: Assessment, console: Console) -> None:
     """Print the result in brief: somebody in the beam, verdicts, what is left out, the foremost cautions."""
-    page = _Page(console)
+    page = TextPage(console)
     scene = assessment.scene
     page.say(abridged(plain(scene.title), 200), style="bold")
     page.say(abridged(f"Reference {plain(scene.reference)}, prepared by {plain(scene.prepared_by)}", 200))
@@ -79,7 +79,7 @@ def _unended(assessment: Assessment, line: InTheBeam) -> str:
     return "" if ends else "; the beam leaves the site: nothing ends it"
 
 
-def _observers(assessment: Assessment, page: _Page) -> None:
+def _observers(assessment: Assessment, page: TextPage) -> None:
     shown = list(enumerate(assessment.observers, start=1))
     if len(shown) > OBSERVERS:
         counts = ", ".join(f"{count} {verdict}" for verdict, count in counted(assessment).items())
@@ -95,52 +95,3 @@ def _observers(assessment: Assessment, page: _Page) -> None:
         if outcome.verdict != BELOW:
             for reason in grouped(outcome.reasons):
                 page.say("     - " + abridged(plain(reason), 400), indent=7)
-
-
-class _Page:
-    """Lines wrapped by the cells that their characters take, cut at the console's width or 80."""
-
-    def __init__(self, console: Console) -> None:
-        self.console = console
-        self.width = max(20, min(WIDTH, console.width))
-
-    def say(self, text: str, indent: int = 0, style: str = "") -> None:
-        from rich.text import Text
-
-        for line in _wrapped(_encodable(text, self.console.encoding), self.width, indent):
-            self.console.print(Text(line, style=style), soft_wrap=True)
-
-    def item(self, text: str) -> None:
-        self.say(f"  - {text}", indent=4)
-
-    def gap(self) -> None:
-        self.console.print()
-
-
-def _encodable(text: str, encoding: str) -> str:
-    """Text with what the terminal cannot take written as code points."""
-    try:
-        text.encode(encoding)
-    except (UnicodeEncodeError, LookupError):
-        return text.encode("ascii", "backslashreplace").decode("ascii")
-    return text
-
-
-def _wrapped(text: str, width: int, indent: int) -> list[str]:
-    """Lines of at most `width` cells; those after the first are indented."""
-    from rich.cells import cell_len, chop_cells
-
-    lines: list[str] = []
-    head = text[: len(text) - len(text.lstrip(" "))]
-    current, empty = head, True
-    pad = " " * indent
-    for word in text.split():
-        for piece in chop_cells(word, width - max(indent, len(head))) if cell_len(word) > width - indent else [word]:
-            joined = current + piece if empty else f"{current} {piece}"
-            if cell_len(joined) <= width or (empty and current in (head, pad)):
-                current, empty = joined, False
-            else:
-                lines.append(current)
-                current, empty = pad + piece, False
-    lines.append(current)
-    return lines

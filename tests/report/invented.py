@@ -407,7 +407,9 @@ def movement(observers: tuple[ObserverOutcome, ...]) -> SizeMovement:
         tuple(o.total("scattered_compared") * shift ** (1 + 0.01 * place) for shift in SHIFTS)
         for place, o in enumerate(observers)
     )
-    return SizeMovement(LOADS[0].name, LOADS[0].kind, SPAN.what, SPAN.usual, SIZES, scattered, SPAN.source)
+    factors = tuple(3.0 + 0.01 * place for place in range(len(observers)))
+    load = LOADS[0]
+    return SizeMovement(load.name, load.kind, SPAN.what, SPAN.usual, SIZES, scattered, SPAN.source, factors)
 
 
 def assessment(places: tuple[tuple[str, Vector], ...] = PLACES, unit: LengthUnit = METRE) -> Assessment:
