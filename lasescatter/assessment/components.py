@@ -98,7 +98,7 @@ class SiteOptics:
                         Problem(
                             "air.relative_humidity",
                             f"{fault}; {load.key} takes up water",
-                            "Give at most 99 %, or enter the load by its wet sizes and index",
+                            "Give a humidity within that range, or enter the load by its wet sizes and index",
                         )
                     ]
                 ) from fault
