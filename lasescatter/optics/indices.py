@@ -8,6 +8,8 @@ from lasescatter.matter import Index, IndexTable
 
 WEAK_ABSORPTION = 1e-3
 """k below which a table is read on a logarithmic scale: it spans decades there."""
+SAME_WAVELENGTH = 1e-9
+"""Relative difference within which a wavelength is that of a node: 1550e-9 and 1.55e-6 differ by rounding."""
 
 
 class IndexRangeError(ValueError):
@@ -17,13 +19,13 @@ class IndexRangeError(ValueError):
 def _enclosing(table: IndexTable, wavelength: float) -> tuple[int, int, float]:
     """The nodes on either side of a wavelength and the way from one to the other, 0 to 1; a node encloses itself."""
     nodes = table.wavelengths
-    if not nodes[0] <= wavelength <= nodes[-1]:
+    if not nodes[0] * (1 - SAME_WAVELENGTH) <= wavelength <= nodes[-1] * (1 + SAME_WAVELENGTH):
         raise IndexRangeError(
             f"the refractive index of {table.name} is not known at {wavelength * 1e9:.6g} nm: "
             f"its data reach from {nodes[0] * 1e9:.6g} nm to {nodes[-1] * 1e9:.6g} nm"
         )
-    above = bisect_left(nodes, wavelength)
-    if nodes[above] == wavelength:
+    above = min(bisect_left(nodes, wavelength * (1 - SAME_WAVELENGTH)), len(nodes) - 1)
+    if abs(nodes[above] - wavelength) <= SAME_WAVELENGTH * wavelength:
         return above, above, 0.0
     return above - 1, above, (wavelength - nodes[above - 1]) / (nodes[above] - nodes[above - 1])
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from itertools import pairwise
-from typing import Annotated, Any, Literal, cast
+from typing import Annotated, Any, ClassVar, Literal, cast
 
 from pydantic import field_validator
 
@@ -125,7 +125,7 @@ class TypicalTable(Table):
     from_: Source = key("Document, year and table", "Weld. J. 2016, abstract", alias="from")
     remark: Annotated[str, Text("a remark", "at 2 m")] | None = key("Anything else", "at 2 m", default=None)
 
-    READINGS = ("mass", "number", "meteorological_optical_range", "visual_range")
+    READINGS: ClassVar[tuple[str, ...]] = ("mass", "number", "meteorological_optical_range", "visual_range")
 
     @classmethod
     def rules(cls, seen: Seen) -> Iterator[Fault]:
