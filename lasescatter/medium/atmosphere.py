@@ -15,8 +15,8 @@ STANDARD_AIR = Assumption(
     name="Air thins with height as in the U.S. Standard Atmosphere 1976, over a flat earth",
     direction="either",
     size="weather moves the density at a height by some per cent, by up to a fifth in the cold; at the same distance "
-    "a round earth has air thinner by 1 % at 34 km and 10 % at 107 km along a level beam; vapour has the share of z = 0 "
-    "at all heights, which is low aloft by 1 % at most in air of 20 °C",
+    "a round earth has air thinner by 1 % at 34 km and 10 % at 107 km along a level beam; vapour has the share of "
+    "z = 0 at all heights, which is low aloft by 1 % at most in air of 20 °C",
     source="U.S. Standard Atmosphere 1976; distance²/(2 × earth's radius) over a scale height of 9 km; weather: common "
     "practice, no source",
 )

@@ -86,7 +86,7 @@ tables = st.tuples(
 )
 
 
-@settings(max_examples=25, deadline=None)
+@settings(max_examples=12, deadline=None)
 @given(table=tables)
 def test_a_table_read_back_gives_the_same_curve(table):
     """Rows of any spacing, a forward peak and noise of 20 %: each table angle, and the lines between, to 1e-3."""
