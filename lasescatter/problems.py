@@ -35,5 +35,5 @@ class SiteError(Exception):
             file = problem.file or self.file
             place = file if problem.line is None else f"{file}, line {problem.line}"
             key = f" {problem.key}:" if problem.key else ""
-            lines.append(f"{place}:{key} " + f"{problem.wrong}. {problem.mend}.".replace("..", "."))
+            lines.append(f"{place}:{key} " + f"{problem.wrong.rstrip('.')}. {problem.mend.rstrip('.')}.")
         return "\n".join(lines)
