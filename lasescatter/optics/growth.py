@@ -30,7 +30,7 @@ ONE_FACTOR = Assumption(
     name="All particles of a mode grow by one factor in moist air",
     direction="either",
     size="larger particles grow more than smaller ones: with mass-median diameters from 0.2 µm up the light is right "
-    "to 1.5 % at 80 % humidity, 6 % at 95 % and 17 % at 99 %; with 0.1 µm it is low by up to 5, 15 and 44 %, most "
+    "to 1.5 % at 80 % humidity, 6 % at 95 % and 20 % at 99 %; with 0.1 µm it is low by up to 5, 15 and 44 %, most "
     "towards the source. None of it where the factors are a source's own. Particles still drying differ by more",
     source="comparison with growth size by size: geometric standard deviations of 1.4–2.2, kappa of 0.1–0.61, 532 nm",
 )
