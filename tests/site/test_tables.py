@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import os
+from itertools import pairwise
 
 import pytest
 from hypothesis import given, settings
@@ -30,7 +31,7 @@ def integral(table) -> float:
         share = (x - logs[place]) / (logs[place + 1] - logs[place])
         return table.density[place] * (1 - share) + table.density[place + 1] * share
 
-    return sum(quad(density, low, high)[0] for low, high in zip(logs[:-1], logs[1:], strict=True))
+    return sum(quad(density, low, high)[0] for low, high in pairwise(logs))
 
 
 def test_sizes_integrate_to_one_and_keep_their_shape():
