@@ -84,7 +84,7 @@ class IndexFileTable(Table):
         for number, node in enumerate(nodes):
             if sources is not None and node.mark not in named:
                 yield Fault(("nodes", number, "mark"), f'no source is given for nodes of mark "{node.mark}"',
-                            f'Add [[source]] with marks = ["{node.mark}"] and from = "document, year, table"')  # fmt: skip
+                            f'Add [[source]] with marks = ["{node.mark}"] and from = "document, year"')  # fmt: skip
                 named.add(node.mark)
 
     def to_index(self) -> IndexTable:

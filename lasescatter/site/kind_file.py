@@ -24,6 +24,7 @@ Name = Annotated[str, Text("a name", "glycol haze")]
 Source = Annotated[str, Text("document, year and table", "Hess, Koepke & Schult 1998, table 1")]
 TrustMark = Annotated[str, Word(tuple(FACTORS))]
 
+
 class PartTable(Table):
     """Another kind that this one contains."""
 
@@ -148,7 +149,9 @@ class KindSourceTable(Table):
     )
     from_: Source = key("Document, year and table", "Hess, Koepke & Schult 1998, table 1", alias="from")
     mark: Mark = key("Evidence mark", "S")
-    remark: Annotated[str, Text("a remark", "abstract only")] | None = key("Anything else", "abstract only", default=None)
+    remark: Annotated[str, Text("a remark", "abstract only")] | None = key(
+        "Anything else", "abstract only", default=None
+    )
 
 
 class KindFileTable(Table):
@@ -232,7 +235,7 @@ def _numbers(seen: Seen) -> Iterator[tuple[str, ...]]:
 def _sources(seen: Seen) -> Iterator[Fault]:
     """Every number has a source, every source a number; what is from memory is not called checked."""
     sources = seen.get("source")
-    if sources is None:
+    if sources is None or (seen.stated("sizes") and seen.stated("part")):
         return
     numbers = dict.fromkeys(_numbers(seen))
     covered = {tuple(text.split(".")): entry for entry in sources for text in entry.of}
@@ -243,9 +246,9 @@ def _sources(seen: Seen) -> Iterator[Fault]:
     known = {*numbers, *(number[:1] for number in numbers)}
     for position, entry in enumerate(sources):
         for text in entry.of:
-            first = text.split(".")[0]
-            faulty = first in _WITH_NUMBERS and seen.stated(first) and seen.get(first) is None
-            if tuple(text.split(".")) not in known and not faulty:
+            place = tuple(text.split("."))
+            # Of a table that is missing or reads badly something else is told.
+            if place not in known and (place[0] not in _WITH_NUMBERS or seen.get(place[0])):
                 yield Fault(("source", position, "of"), f"{quoted(text)} is no number of this file",
                             f"Name keys or tables that it has: {', '.join('.'.join(n) for n in numbers)}")  # fmt: skip
     trust = seen.get("trust")

@@ -111,7 +111,9 @@ class SizeSpanTable(Table):
     usual: Length = key("That of the sizes above", "0.7 um")
     low: Length = key("Smallest", "0.5 um")
     high: Length = key("Largest", "1.5 um")
-    remark: Annotated[str, Text("a remark", "both machines")] | None = key("Anything else", "both machines", default=None)
+    remark: Annotated[str, Text("a remark", "both machines")] | None = key(
+        "Anything else", "both machines", default=None
+    )
 
     @classmethod
     def rules(cls, seen: Seen) -> Iterator[Fault]:

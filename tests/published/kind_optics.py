@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from functools import lru_cache
+from functools import cache
 
 from lasescatter.matter import Kind, Lognormal, SizeMode
 from lasescatter.optics.indices import index_at, volume_mixed
@@ -40,7 +40,7 @@ def moist(
     return SizeMode(grown, mode.weight), volume_mixed(index, water, factor**-3)
 
 
-@lru_cache(maxsize=None)
+@cache
 def optics_of(name: str, humidity: float, wavelength: float, median_radius: float | None = None) -> ParticleOptics:
     """Optics of a kind; its one lognormal mode may be given another median radius."""
     kind = kind_of(name)

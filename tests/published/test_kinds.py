@@ -54,7 +54,7 @@ def test_effective_radius_of_fogs(case):
 
 @pytest.mark.parametrize("case", cases("lowtran_7_fogs.toml"), ids=name_of)
 def test_fogs_of_lowtran(case):
-    """The parameters are from memory, so this is what vouches for them: another model is off by 3 % and more.
+    """The parameters are from memory: this is what vouches for their shape.
 
     Extinction within 1.5 % and asymmetry within 0.005: the code's tables date from size grids of 1979.
     """

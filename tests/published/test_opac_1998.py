@@ -19,11 +19,12 @@ EXTINCTION = 3e-3
 ALBEDO = 1e-3
 FINE, COARSE = 0.004, 0.012
 COARSE_KINDS = {
-    "insoluble particles", "sea salt, coarse mode", "mineral dust, coarse mode", "transported mineral dust", "water fog",
+    "insoluble particles", "sea salt, coarse mode", "mineral dust, coarse mode", "transported mineral dust",
+    "water fog",
 }  # fmt: skip
 
 # At 1.5 um the water of the files is another than the catalogue's (1.319 + 1.4e-4i, Hale & Querry 1973 and Segelstein
-# 1981). Found by the optics of drops there; two numbers explain all eighteen.
+# 1981). Found by the optics of drops there; these two numbers explain all twenty-one that are printed.
 WATER_AT = 1.5e-6
 OPAC_WATER = 1.321 + 2.0e-4j
 OTHER_WATER_EXTINCTION, OTHER_WATER_ALBEDO = 0.01, 0.006
@@ -100,7 +101,7 @@ def same_data(case: dict) -> bool:
 
 @pytest.mark.parametrize("case", [case for case in INDICES if same_data(case)], ids=name_of)
 def test_indices_at_laser_wavelengths(case):
-    """Dry: half a unit of the last digit, so the nodes are those of the files. Wet: as far as two tables of water agree."""
+    """Dry: half a unit of the last digit, so the nodes are the files'. Wet: as far as two tables of water agree."""
     given = case["inputs"]
     kind, wavelength = kind_of(given["kind"]), given["wavelength"]
     growth, index = kind.material.growth, index_at(kind.material.index, wavelength)
