@@ -28,7 +28,7 @@ FRONT_LINES = 6
 """Beam lines in the short table of the first page; all are in their own section."""
 FRONT_OBSERVERS = 8
 """Observers in the table of the first page; where there are more, a full table follows."""
-BRIEF = 200
+BRIEF = 240
 """Characters of reasons in the table of the first page; a third of it where there are many observers."""
 FEW_OBSERVERS = 4
 NAME = 60
@@ -155,7 +155,15 @@ def _because(observer: ObserverOutcome, room: int) -> str:
     told = list(grouped(observer.reasons))
     if observer.governing and (observer.verdict == BELOW or not told):
         told.insert(0, observer.governing)
-    return markup("; ".join(told), room) if told else ""
+    return markup(_in_words("; ".join(told), room), room) if told else ""
+
+
+def _in_words(text: str, room: int) -> str:
+    """Text cut between words, so that no number is cut; within a word only where it fills the room."""
+    if len(text) <= room:
+        return text
+    kept = text[: room - 2].rpartition(" ")[0]
+    return f"{kept} …" if kept else text
 
 
 def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:

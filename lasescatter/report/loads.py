@@ -18,7 +18,7 @@ from lasescatter.matter import (
     SizeShape,
 )
 from lasescatter.report.front import NAME
-from lasescatter.report.quantities import counted, digits, small_length, trimmed, wavelength
+from lasescatter.report.quantities import digits, small_length, trimmed, wavelength
 from lasescatter.report.readings import ReadingRow, reading_rows, reading_words
 from lasescatter.report.size_movement import movement_section
 from lasescatter.report.styles import heads, paragraph, ruled, words
@@ -87,24 +87,28 @@ def _kind(assessment: Assessment, load: Load) -> str:
 def _shape(shape: SizeShape) -> str:
     if isinstance(shape, Lognormal):
         told = (
-            f"lognormal, median radius {small_length(shape.median_radius, None)}, geometric standard deviation "
+            f"lognormal, median radius {_radius(shape.median_radius)}, geometric standard deviation "
             f"{trimmed(shape.geometric_sd)}"
         )
         cuts = [
-            f"{word} {small_length(radius, None)}"
+            f"{word} {_radius(radius)}"
             for word, radius in (("below", shape.smallest), ("above", shape.largest))
             if radius is not None
         ]
         return f"{told}, none {' and none '.join(cuts)}" if cuts else told
     if isinstance(shape, ModifiedGamma):
         return (
-            f"modified gamma, mode radius {small_length(shape.mode_radius, None)}, alpha {trimmed(shape.alpha)}, "
+            f"modified gamma, mode radius {_radius(shape.mode_radius)}, alpha {trimmed(shape.alpha)}, "
             f"gamma {trimmed(shape.gamma)}"
         )
     if isinstance(shape, SingleSize):
-        return f"one radius, {small_length(shape.radius, None)}"
-    ends = f"{small_length(shape.radii[0])} to {small_length(shape.radii[-1])}"
-    return f"table of {counted(len(shape.radii), 'radius').replace('radiuss', 'radii')}, {ends}"
+        return f"one radius, {_radius(shape.radius)}"
+    return f"table of {len(shape.radii)} radii, {_radius(shape.radii[0])} to {_radius(shape.radii[-1])}"
+
+
+def _radius(value: float) -> str:
+    """As short as it can be said to four digits."""
+    return small_length(float(f"{value:.4g}"), None)
 
 
 def _sizes(modes: tuple[SizeMode, ...]) -> str:

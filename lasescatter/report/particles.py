@@ -63,14 +63,13 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
         ),
         ruled(rows, [26, 19, 18, 18, 15, 18, 15, 15, 15, 15], numeric=tuple(range(1, 10))),
         ruled(quality, [60, 22, 27, 39, 26], numeric=(1, 2, 3, 4)),
-        *load_sections(assessment),
-        paragraph("Curves and tables", "subsection"),
         paragraph(
-            "The curve and the tables after it: F11/(4π) and F12/(4π) in 1/sr at the scattering angle theta, and their "
-            "integrals over the angle from 0 to theta: B11, B12, and |B12| of the absolute value of F12, which serves "
-            "where the axis of polarization is unknown."
+            "The curve, and the tables at the end of this section: F11/(4π) and F12/(4π) in 1/sr at the scattering "
+            "angle theta, and their integrals over the angle from 0 to theta: B11, B12, and |B12| of the absolute "
+            "value of F12, which serves where the axis of polarization is unknown."
         ),
         *([FigurePlace("phase", figure_size[0] * MM, figure_size[1] * MM)] if figure_size else []),
+        *load_sections(assessment),
     ]
 
 

@@ -24,7 +24,8 @@ _NAMES = {
     "transmittance": "transmittance",
 }
 _BASES = {"dry": ", without water taken up", "ambient": ", with water taken up", None: ""}
-_MASSES = ((1.0, "kg/m³"), (1e-3, "g/m³"), (1e-6, "mg/m³"), (1e-9, "µg/m³"))
+# From so much on, unit and its size. [kg m⁻³]
+_MASSES = ((1.0, "kg/m³", 1.0), (1e-3, "g/m³", 1e-3), (1e-8, "mg/m³", 1e-6), (0.0, "µg/m³", 1e-9))
 NEAR_ONE = 0.01
 """A transmittance nearer to 1 is told with more digits."""
 MOST_DECIMALS = 8
@@ -65,8 +66,8 @@ def reading_value(reading: LoadReading) -> tuple[str, str]:
 def _value(reading: LoadReading, told: Callable[[float], str]) -> tuple[str, str]:
     value = reading.value
     if reading.kind == "mass":
-        factor, unit = next((pair for pair in _MASSES if value >= 0.9999999 * pair[0]), _MASSES[-1])
-        return told(value / factor), unit
+        unit, size = next((unit, size) for least, unit, size in _MASSES if value >= 0.9999999 * least)
+        return told(value / size), unit
     if reading.kind == "number":
         return told(value * 1e-6), "1/cm³"
     if reading.kind in ("meteorological_optical_range", "visual_range"):

@@ -105,7 +105,7 @@ def movement_section(movement: SizeMovement, observers: tuple[str, ...]) -> list
                 *([digits(movement.factor[place])] if movement.factor else []),
             ]
         )
-    widths = [*[13.0] * len(sizes), 25.0, *([17.0] if movement.factor else [])]
+    widths = [*[14.0] * len(sizes), 25.0, *([17.0] if movement.factor else [])]
     story.append(ruled(rows, [8, 166 - sum(widths), *widths], numeric=tuple(range(2, 2 + len(widths)))))
     notes = [f"All scattered light as compared, all lines together, relative to the usual {markup(movement.what)}."]
     if movement.factor:

@@ -73,7 +73,7 @@ def everything() -> str:
         "entered by the user, factor 1: sizes and index are the user's own. No factor is put on the light",
         # Readings as taken on site.
         "Read on site: extinction coefficient 0.01 1/m at 550 nm.",
-        "Read on site: mass of particles 50 µg/m³.",
+        "Read on site: mass of particles 0.05 mg/m³.",
         "Read on site: transmittance 0.8 over 3 m at 650 nm.",
         "Read on site: visual range (2 % contrast) 50 m at 550 nm.",
         "Read on site: number of particles 1000 1/cm³.",
