@@ -35,9 +35,9 @@ SIZE_AVERAGE = Assumption(
 DOUBTED_THICKNESS = Assumption(
     name="The optical thickness of a load that was not read at the beam's wavelength is as computed",
     direction="either",
-    size="by the factor of trust, where the reading is a mass or a number; by the spectrum, (ratio of wavelengths)⁴ and "
-    "that factor at most, where it is optical. The allowance for higher orders and the light from walls carry it in "
-    "the upper bounds; the step at 0.5, above which nothing is below its limit, is taken as computed",
+    size="by the factor of trust, where the reading is a mass or a number; by the spectrum, (ratio of wavelengths)⁴ "
+    "and that factor at most, where it is optical. The allowance for higher orders and the light from walls carry it "
+    "in the upper bounds; the step at 0.5, above which nothing is below its limit, is taken as computed",
     source="steepest spectrum: Rayleigh scattering; the rest: common practice, no source",
 )
 
@@ -89,9 +89,7 @@ class SiteOptics:
         if load not in self._floating:
             air = self.scene.air
             try:
-                self._floating[load] = as_they_float(
-                    load.modes, load.material, air.relative_humidity, air.temperature
-                )
+                self._floating[load] = as_they_float(load.modes, load.material, air.relative_humidity, air.temperature)
             except HumidityError as fault:
                 raise SiteError(
                     [

@@ -13,7 +13,7 @@ from lasescatter.exposure.direct import aperture_mean, beam_radius, irradiance
 from lasescatter.exposure.fraction import Greatest, greatest_over_fraction
 from lasescatter.exposure.legs import Leg, Swing, legs_of, swings_of
 from lasescatter.exposure.line import BrightLine, Peak, Window, bright_line, brightest_window, peak_radiance
-from lasescatter.exposure.scattered import LEAST_GAP, TOLERANCE, LegLight, PanelEdges, scattered
+from lasescatter.exposure.scattered import LEAST_GAP, LegLight, PanelEdges, scattered
 from lasescatter.exposure.sightline import Sightlines
 from lasescatter.exposure.surfaces import stop_light
 from lasescatter.exposure.thickness import optical_thickness
@@ -60,7 +60,7 @@ class LineField:
     extinction_factors: Floats
     """By which the extinction of each component may be off, (components,)."""
     known: dict[tuple[str, float], Any]
-    """Values for all observers that limits have asked for: by name and aperture, acceptance or leg."""
+    """Values for all observers that have been asked for: by name and aperture, acceptance or leg."""
 
     def _once(self, name: str, parameter: float, make: Callable[[], T]) -> T:
         key = (name, parameter)
@@ -71,17 +71,18 @@ class LineField:
     @property
     def scattered(self) -> Floats:
         """First order at the stated load. [m⁻²]"""
-        return np.sum([light.by_component.sum(axis=0) for light in self.lights], axis=0)
+        return self._once("scattered", 0, lambda: np.sum([light.by_component.sum(axis=0) for light in self.lights], 0))
 
     @property
     def unpolarised(self) -> Floats:
         """The same with F12 left out. [m⁻²]"""
-        return np.sum([light.unpolarised for light in self.lights], axis=0)
+        return self._once("unpolarised", 0, lambda: np.sum([light.unpolarised for light in self.lights], axis=0))
 
     @property
     def error(self) -> Floats:
         """Numerical error of `scattered`: of the integral and of the average over sizes. [m⁻²]"""
-        return np.sum([light.error for light in self.lights], axis=0) + self.mixture.error * self.unpolarised
+        integral = self._once("error", 0, lambda: np.sum([light.error for light in self.lights], axis=0))
+        return np.asarray(integral + self.mixture.error * self.unpolarised)
 
     @property
     def hot_spot(self) -> float:
@@ -129,6 +130,9 @@ class LineField:
         A sight line grows by the reach at most, twice the farthest distance by twice the reach; where the medium
         thins with height, no part of a sight line comes to lie lower by more than the reach.
         """
+        return self._once("thickness", 0, self._thickness_within_reach)
+
+    def _thickness_within_reach(self) -> Floats:
         shift = np.exp(self.mixture.steepness * self.reaches)
         return self.thickness * shift + 2 * self.mixture.greatest_extinction(self.points, self.reaches) * self.reaches
 
@@ -136,7 +140,7 @@ class LineField:
     def within_reach(self) -> Floats:
         """Scattered irradiance of each component that no place within reach exceeds, at any load fraction,
         (components, observers). [m⁻²]"""
-        return np.sum([light.within_reach for light in self.lights], axis=0)
+        return self._once("within reach", 0, lambda: np.sum([light.within_reach for light in self.lights], axis=0))
 
     @property
     def extinction_factor(self) -> float:
@@ -147,6 +151,9 @@ class LineField:
     @property
     def _thicknesses_along(self) -> list[Floats]:
         """Optical thickness of each component along each leg, (components,); of an endless leg it is not used."""
+        return self._once("thicknesses along", 0, self._along)
+
+    def _along(self) -> list[Floats]:
         ends = [leg.length if np.isfinite(leg.length) else 0.0 for leg in self.legs]
         return [
             self.mixture.thicknesses(leg.origin, leg.origin + end * leg.direction)
@@ -204,7 +211,11 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
     """
     legs = legs_of(beam)
     swings = swings_of(beam, line, legs)
-    lights, greatest, thickness = first_order_light(line, legs, swings, mixture, points, reaches)
+    parts = [
+        _scattered_part(line, legs, swings, mixture, points[some], reaches[some])
+        for some in groups(len(legs), len(points))
+    ]
+    lights = tuple(_joined([part[0][i] for part in parts]) for i in range(len(legs)))
     spot, spot_radius, stop_tau, compared = _stop(beam, line, legs, mixture, points, lights[-1].tau_before)
     hot = 1.0 if line.pulses is None else line.pulses.hot_spot
     direct = np.zeros(len(points))
@@ -221,8 +232,12 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
         points=points,
         reaches=reaches,
         lights=lights,
-        greatest=greatest,
-        thickness=thickness,
+        greatest=Greatest(
+            irradiance=np.concatenate([part[1].irradiance for part in parts]),
+            fraction=np.concatenate([part[1].fraction for part in parts]),
+            error=np.concatenate([part[1].error for part in parts]),
+        ),
+        thickness=np.concatenate([part[2] for part in parts]),
         stop_stated=compared * np.exp(-stop_tau),
         stop_compared=compared,
         stop_tau=stop_tau,
@@ -235,52 +250,11 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
     )
 
 
-def first_order_light(
-    line: Line,
-    legs: tuple[Leg, ...],
-    swings: tuple[Swing, ...],
-    mixture: Mixture,
-    points: Floats,
-    reaches: Floats,
-    tolerance: float = TOLERANCE,
-) -> tuple[tuple[LegLight, ...], Greatest, Floats]:
-    """Scattered light of each leg at every observer, the greatest over the load fraction, the optical thickness.
-
-    Parameters
-    ----------
-    tolerance : float
-        Relative to the unpolarised value of each leg.
-    """
-    together = max(1, MOST_LEGS_TIMES_OBSERVERS // len(legs))
-    parts = [
-        _scattered_part(
-            line, legs, swings, mixture, points[start : start + together], reaches[start : start + together], tolerance
-        )
-        for start in range(0, len(points), together)
-    ]
-    return (
-        tuple(_joined([part[0][i] for part in parts], together) for i in range(len(legs))),
-        Greatest(
-            irradiance=np.concatenate([part[1].irradiance for part in parts]),
-            fraction=np.concatenate([part[1].fraction for part in parts]),
-            error=np.concatenate([part[1].error for part in parts]),
-        ),
-        np.concatenate([part[2] for part in parts]),
-    )
-
-
 def _scattered_part(
-    line: Line,
-    legs: tuple[Leg, ...],
-    swings: tuple[Swing, ...],
-    mixture: Mixture,
-    points: Floats,
-    reaches: Floats,
-    tolerance: float,
+    line: Line, legs: tuple[Leg, ...], swings: tuple[Swing, ...], mixture: Mixture, points: Floats, reaches: Floats
 ) -> tuple[list[LegLight], Greatest, Floats]:
     """Scattered light of some observers; the nodes are let go with it."""
-    least = [beam_radius(line, leg.path_before + np.clip(_foot(leg, points)[0], 0, None)) for leg in legs]
-    integrated = scattered(legs, swings, mixture, points, np.stack(least), reaches, tolerance)
+    integrated = scattered(legs, swings, mixture, points, beam_radii(line, legs, points), reaches)
     return (
         [leg.light for leg in integrated],
         greatest_over_fraction(integrated, mixture, len(points)),
@@ -288,8 +262,20 @@ def _scattered_part(
     )
 
 
-def _joined(parts: list[LegLight], together: int) -> LegLight:
-    """One leg's light of several groups of observers, `together` in each but the last."""
+def beam_radii(line: Line, legs: tuple[Leg, ...], points: Floats) -> Floats:
+    """Radius of the beam alongside each observer, (legs, observers). [m]"""
+    return np.stack([beam_radius(line, leg.path_before + np.clip(_foot(leg, points)[0], 0, None)) for leg in legs])
+
+
+def groups(legs: int, observers: int) -> list[slice]:
+    """Observers that are integrated together."""
+    together = max(1, MOST_LEGS_TIMES_OBSERVERS // legs)
+    return [slice(start, start + together) for start in range(0, observers, together)]
+
+
+def _joined(parts: list[LegLight]) -> LegLight:
+    """One leg's light of several groups of observers, as many in each but the last."""
+    together = len(parts[0].unpolarised)
     sights = [part.sight for part in parts]
     return LegLight(
         leg=parts[0].leg,

@@ -3,23 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
-from typing import TypeVar
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from lasescatter.assessment.components import SiteOptics
-from lasescatter.assessment.field import LineField, first_order_light
+from lasescatter.assessment.field import LineField, beam_radii, groups
 from lasescatter.assessment.outcome import SizeMovement
 from lasescatter.assumptions import Assumption
-from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode, SizeShape, SizeSpan, SizeTable
-from lasescatter.medium.mixture import Mixture
+from lasescatter.exposure.exchange import exchange
+from lasescatter.exposure.scattered import scattered
+from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeShape, SizeSpan, SizeTable
+from lasescatter.medium.mixture import Component, Mixture
 from lasescatter.optics.sizes import Accuracy
 from lasescatter.scene import Load, Scene
 
 Floats = NDArray[np.float64]
-Shape = TypeVar("Shape", bound=SizeShape)
 
 USUAL_SIZE = Assumption(
     name="Particles of a kind whose size is uncertain are of its usual size",
@@ -32,18 +32,6 @@ SIZES = 5
 # A factor is wanted, so the averages and integrals of the other sizes are coarser than those of the usual one.
 COARSE = Accuracy(f11=1e-2, extinction=1e-3, tail=1e-4)
 COARSE_TOLERANCE = 1e-3
-
-
-@dataclass(frozen=True)
-class _Light:
-    """Light of one line with one load at another size. Axis 0: observers, per watt."""
-
-    compared: Floats
-    """Greatest over the load fraction. [m⁻²]"""
-    within_reach: Floats
-    """Of that load alone: bound for every place within reach, at any load fraction. [m⁻²]"""
-    extinction: float
-    """Of that load. [m⁻¹]"""
 
 
 def size_movements(
@@ -112,30 +100,26 @@ def _of_load(
     powers: dict[str, Floats],
 ) -> tuple[SizeMovement, dict[str, LineField]]:
     sizes = sizes_over(span)
-    present = {
-        key: 1 + optics.present(field.line.wavelength).index(load)
-        for key, field in fields.items()
-        if not optics.fault(load, field.line.wavelength)
-    }
-    columns = []
-    others: dict[str, list[_Light]] = {key: [] for key in present}
-    for size in sizes:
-        column = np.zeros(len(next(iter(powers.values()))))
-        for key, field in fields.items():
-            compared = field.greatest.irradiance
-            if size != span.usual and key in present:
-                light = _at_size(scaled(load, size / span.usual), coarse, field, present[key])
-                others[key].append(light)
-                compared = light.compared
-            column += powers[key] * compared
-        columns.append(column)
-    light_at = np.stack(columns, axis=1)
-    usual = light_at[:, sizes.index(span.usual)]
-    moved = np.max(light_at, axis=1) / np.where(usual > 0, usual, 1.0)
+    column = sizes.index(span.usual)
+    light_at = np.zeros((len(sizes), len(next(iter(powers.values())))))
     raised = dict(fields)
+    bounds: dict[str, Floats] = {}
+    for key, field in fields.items():
+        compared = np.repeat(field.greatest.irradiance[None], len(sizes), axis=0)
+        if not optics.fault(load, field.line.wavelength):
+            index = 1 + optics.present(field.line.wavelength).index(load)
+            others = [coarse.component(scaled(load, size / span.usual), field.line.wavelength) for size in sizes]
+            found, bounds[key] = _at_sizes(field, index, others)
+            # The usual size is the load as it is, computed with full care.
+            compared[np.arange(len(sizes)) != column] = found[np.arange(len(sizes)) != column]
+            raised[key] = _with_extinction(field, index, others)
+        light_at += powers[key] * compared
+    usual = light_at[column]
+    moved = np.max(light_at, axis=0) / np.where(usual > 0, usual, np.inf)
     largest = np.ones(len(usual))
-    for key, index in present.items():
-        raised[key] = _raised(fields[key], index, others[key], moved)
+    for key, bound in bounds.items():
+        index = 1 + optics.present(fields[key].line.wavelength).index(load)
+        raised[key] = _raised(raised[key], index, np.maximum(moved, bound.max(axis=0) / bound[column]))
         largest = np.maximum(largest, raised[key].factors[index])
     movement = SizeMovement(
         load=load.name,
@@ -143,40 +127,45 @@ def _of_load(
         what=span.what,
         usual=span.usual,
         sizes=sizes,
-        scattered=tuple(tuple(row) for row in light_at.tolist()),
+        scattered=tuple(tuple(row) for row in light_at.T.tolist()),
         source=span.source,
         factor=tuple(largest.tolist()),
     )
     return movement, raised
 
 
-def _at_size(load: Load, coarse: SiteOptics, field: LineField, index: int) -> _Light:
-    component = coarse.component(load, field.line.wavelength)
+def _at_sizes(field: LineField, index: int, others: list[Component]) -> tuple[Floats, Floats]:
+    """Light as compared and the bound within reach of the load alone, per watt, each (sizes, observers). [m⁻²]"""
     components = list(field.mixture.components)
-    components[index] = component
-    lights, greatest, _ = first_order_light(
-        field.line, field.legs, field.swings, Mixture(tuple(components)), field.points, field.reaches, COARSE_TOLERANCE
-    )
-    return _Light(
-        compared=greatest.irradiance,
-        within_reach=np.sum([light.within_reach[index] for light in lights], axis=0),
-        extinction=component.extinction,
-    )
+    # The largest particles have the matrix that changes fastest with angle: their nodes serve all sizes.
+    components[index] = others[-1]
+    mixture = Mixture(tuple(components))
+    parts = []
+    for some in groups(len(field.legs), len(field.points)):
+        points, reaches = field.points[some], field.reaches[some]
+        radii = beam_radii(field.line, field.legs, points)
+        lights = scattered(field.legs, field.swings, mixture, points, radii, reaches, COARSE_TOLERANCE)
+        exchanged = exchange(lights, mixture, index, points, reaches)
+        found = [exchanged.light(other) for other in others]
+        parts.append(([light.compared for light in found], [light.within_reach for light in found]))
+    compared, bound = (np.concatenate([part[i] for part in parts], axis=1) for i in (0, 1))
+    return compared, bound
 
 
-def _raised(field: LineField, index: int, others: list[_Light], moved: Floats) -> LineField:
-    """A field whose factors of one component hold at the other sizes too.
+def _with_extinction(field: LineField, index: int, others: list[Component]) -> LineField:
+    """A field whose optical thickness may be that of any of the sizes."""
+    most = max(other.extinction for other in others) / field.mixture.components[index].extinction
+    factors = field.extinction_factors.copy()
+    factors[index] = max(factors[index], most)
+    return replace(field, extinction_factors=factors)
 
-    The factor multiplies the bound within reach, so it must also cover that bound's own movement: near a null of
+
+def _raised(field: LineField, index: int, moved: Floats) -> LineField:
+    """A field whose light of one component may be as much more as it moves over the sizes.
+
+    The factor multiplies the bound within reach, so it also covers that bound's own movement: near a null of
     polarization and for forward light the two differ.
     """
-    usual = field.within_reach[index]
-    bound = np.max([light.within_reach for light in others], axis=0, initial=0.0)
     factors = field.factors.copy()
-    factors[index] = np.maximum.reduce([factors[index], moved, bound / np.where(usual > 0, usual, np.inf)])
-    extinction = max([light.extinction for light in others], default=0.0)
-    extinction_factors = field.extinction_factors.copy()
-    extinction_factors[index] = max(
-        extinction_factors[index], extinction / field.mixture.components[index].extinction
-    )
-    return replace(field, factors=factors, extinction_factors=extinction_factors)
+    factors[index] = np.maximum(factors[index], moved)
+    return replace(field, factors=factors)

@@ -58,21 +58,12 @@ def greatest_over_fraction(lights: tuple[IntegratedLeg, ...], mixture: Mixture, 
     tau_own = np.concatenate([light.nodes.tau_steady for light in lights])
     tau_load = np.concatenate([light.nodes.tau_load for light in lights])
 
-    def values(fraction: Floats) -> Floats:
-        f = fraction[owner]
-        return (own + f * load) * np.exp(-tau_own - f * tau_load)
-
-    best = np.ones(count)
-    if not steady.all():
-        passed = weight * np.exp(-tau_own)
-        rising = sums_by_owner(owner, passed * (load * _least_slope(tau_load) - own * tau_load), count) >= 0
-        some = ~rising[owner]
-        if some.any():
-            found = _sought(owner[some], (passed * own)[some], (passed * load)[some], tau_load[some], count)
-            best = np.where(rising, best, found)
-    irradiance = sums_by_owner(owner, weight * values(best), count)
+    best = worst_fraction(owner, weight * own * np.exp(-tau_own), weight * load * np.exp(-tau_own), tau_load, count)
+    f = best[owner]
+    at_best = (own + f * load) * np.exp(-tau_own - f * tau_load)
+    irradiance = sums_by_owner(owner, weight * at_best, count)
     error = np.zeros(count)
-    at_best, offset = values(best), 0
+    offset = 0
     for light in lights:
         panels = light.nodes.panels
         size = len(light.nodes.owner)
@@ -80,6 +71,24 @@ def greatest_over_fraction(lights: tuple[IntegratedLeg, ...], mixture: Mixture, 
         error += sums_by_owner(panels.owner, panels.errors(some), count)
         offset += size
     return Greatest(irradiance, best, error)
+
+
+def worst_fraction(owner: Integers, own: Floats, load: Floats, tau: Floats, count: int) -> Floats:
+    """Load fraction at which each owner's sum of (own + f·load)·exp(−f·tau) is greatest, (count,).
+
+    Parameters
+    ----------
+    owner : ndarray (nodes,)
+    own, load : ndarray (nodes,)
+        Light that the fraction leaves alone and light of the whole load, neither shielded by the load. [m⁻²]
+    tau : ndarray (nodes,)
+        Optical thickness of the whole load.
+    """
+    rising = sums_by_owner(owner, load * _least_slope(tau) - own * tau, count) >= 0
+    some = ~rising[owner]
+    if not some.any():
+        return np.ones(count)
+    return np.where(rising, 1.0, _sought(owner[some], own[some], load[some], tau[some], count))
 
 
 def _least_slope(tau: Floats) -> Floats:
@@ -92,7 +101,7 @@ def _least_slope(tau: Floats) -> Floats:
 
 
 def _sought(owner: Integers, own: Floats, load: Floats, tau: Floats, count: int) -> Floats:
-    """Load fraction at which each owner's sum of (own + f·load)·exp(−f·tau) is greatest, (count,)."""
+    """The same, by trial."""
 
     def total(fraction: Floats) -> Floats:
         f = fraction[owner]

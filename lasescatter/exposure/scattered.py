@@ -206,12 +206,17 @@ def reach_brightness(
     r = b / np.sin(theta)
     s = np.clip(sight.s0[owner] - b * np.cos(theta) / np.sin(theta), 0.0, leg.length)
     density = mixture.densities(leg.origin + s[..., None] * leg.direction) * (leg.reflected / (4 * np.pi) / b)
+    turned, nearer = brought_near(r, reach)
+    near = [component.matrix.greatest_near(theta, turned) for component in mixture.components]
+    return np.stack(near) * density * nearer
+
+
+def brought_near(r: Floats, reach: Floats) -> tuple[Floats, Floats]:
+    """Greatest turn of the angle under which an element at r is seen from within a reach [rad], and of 1/r² there."""
     turned = np.arcsin(np.clip(reach / r, 0.0, 1.0))
     # An element within reach can be seen under any angle.
     turned = np.where(r <= reach, np.pi, turned)
-    nearer = np.square(r / np.maximum(r - reach, np.minimum(LEAST_GAP, r)))
-    near = [component.matrix.greatest_near(theta, turned) for component in mixture.components]
-    return np.stack(near) * density * nearer
+    return turned, np.square(r / np.maximum(r - reach, np.minimum(LEAST_GAP, r)))
 
 
 def breaks_of(leg: Leg, sight: Sightlines, mixture: Mixture) -> Floats:
@@ -295,13 +300,17 @@ def elements(
     tau = tau_before.reshape((-1,) + (1,) * s.ndim) + mixture.thicknesses(leg.origin, places) + tau_sight
     emitted = np.empty_like(density)
     plain = np.zeros_like(s)
-    turn = _double_cosine(swing, sight)[owner]
+    turn = double_cosine(swing, sight)[owner]
     for i, component in enumerate(mixture.components):
         f11, f12 = component.matrix.at(theta)
-        polarised = np.abs(f12) if swing.worst else swing.q * turn * f12
-        emitted[i] = density[i] * (f11 + polarised)
+        emitted[i] = density[i] * (f11 + polarised_part(f12, swing, turn))
         plain += density[i] * f11
     return emitted, plain, tau, tau_sight
+
+
+def polarised_part(f12: Floats, swing: Swing, double_cosine: Floats) -> Floats:
+    """What polarization adds to F11 (E5)."""
+    return np.abs(f12) if swing.worst else swing.q * double_cosine * f12
 
 
 def azimuths(swing: Swing, sight: Sightlines) -> Floats | None:
@@ -311,7 +320,8 @@ def azimuths(swing: Swing, sight: Sightlines) -> Floats | None:
     return np.arccos(np.clip(sight.outward @ np.asarray(swing.axis), -1.0, 1.0))
 
 
-def _double_cosine(swing: Swing, sight: Sightlines) -> Floats:
+def double_cosine(swing: Swing, sight: Sightlines) -> Floats:
+    """cos 2 phi of E5, (observers,); 0 without a known axis."""
     if swing.axis is None:
         return np.zeros_like(sight.b)
     return 2 * np.square(sight.outward @ np.asarray(swing.axis)) - 1
