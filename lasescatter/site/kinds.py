@@ -99,7 +99,7 @@ def index_text(index: Index) -> str:
 def growth_text(growth: Growth | None) -> str:
     """Whether and how particles take up water."""
     if growth is None:
-        return "takes up no water"
+        return "growth in moist air is not computed"
     by = f"kappa {growth.kappa:g}" if growth.kappa is not None else "a table of growth factors"
     return f"takes up water, by {by}; sizes, index and density are those of the dry particles"
 

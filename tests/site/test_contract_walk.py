@@ -9,6 +9,7 @@ from site_cases import GOOD, changed, read_text
 
 from lasescatter.problems import SiteError
 from lasescatter.site import contract
+from lasescatter.site.reading import read_site_text
 from lasescatter.site.starters import STARTERS, starter_text
 from lasescatter.site.wording import known_fields
 
@@ -95,8 +96,9 @@ def test_every_key_of_the_format_is_read_or_refused_by_name():
 def test_every_key_that_is_read_arrives_among_the_inputs():
     """No key is read and then dropped: each is listed, as written and in SI, for some good file."""
     listed = set()
-    for text in (*GOOD.values(), *(starter_text(name) for name in STARTERS)):
-        for line in read_text(text).inputs:
+    scenes = [*map(read_text, GOOD.values()), *(read_site_text(starter_text(name)) for name in STARTERS)]
+    for scene in scenes:
+        for line in scene.inputs:
             if line.stated:
                 path = re.sub(r'^not_judged\["([^"]*)"\]', lambda found: f"not_judged.{found[1]}", line.key)
                 listed.add(re.sub(r'\["[^"]*"\]|\[\d+\]', "", path).replace(" ", "_").replace("line.pulses", "pulses"))
