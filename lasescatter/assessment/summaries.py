@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from typing import TypedDict
 
 import numpy as np
 
@@ -82,7 +83,18 @@ def _load(component: Component, wavelength: float, optics: SiteOptics, load: Loa
     )
 
 
-def _curves(matrix: ScatteringMatrix) -> dict[str, tuple[float, ...]]:
+class _Curves(TypedDict):
+    """The printed curves of a summary."""
+
+    angles: tuple[float, ...]
+    phase: tuple[float, ...]
+    phase_12: tuple[float, ...]
+    running: tuple[float, ...]
+    running_12: tuple[float, ...]
+    running_12_abs: tuple[float, ...]
+
+
+def _curves(matrix: ScatteringMatrix) -> _Curves:
     f11, f12 = matrix.at(CURVE_ANGLES)
     # F12 is 0 straight on and straight back by symmetry: rounding is not printed as a number.
     f12 = np.where(np.abs(f12) < ROUNDING * f11.max(), 0.0, f12)
