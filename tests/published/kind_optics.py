@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from functools import cache
 
 from lasescatter.matter import Kind, Lognormal, SizeMode
 from lasescatter.optics.indices import index_at, volume_mixed
-from lasescatter.optics.sizes import Accuracy, ParticleOptics, particle_optics
+from lasescatter.optics.sizes import Accuracy, particle_optics
 from lasescatter.site.catalogue import read_catalogue
 
-ACCURACY = Accuracy(f11=1.0, extinction=3e-4, tail=1e-5)
+ACCURACY = Accuracy(f11=1.0, extinction=1e-3, tail=1e-4, work=1e9)
 """Extinction, albedo and asymmetry only: their printed values have 3 or 4 digits."""
 
 
@@ -40,17 +40,47 @@ def moist(
     return SizeMode(grown, mode.weight), volume_mixed(index, water, factor**-3)
 
 
+@dataclass(frozen=True)
+class Mean:
+    """Means per particle."""
+
+    extinction: float
+    scattering: float
+    asymmetry: float
+    volume: float
+    effective_radius: float
+
+    @property
+    def albedo(self) -> float:
+        return self.scattering / self.extinction
+
+
+mode_optics = cache(particle_optics)
+"""Many kinds share a mode, and a mode takes long where its particles are large."""
+
+
 @cache
-def optics_of(name: str, humidity: float, wavelength: float, median_radius: float | None = None) -> ParticleOptics:
-    """Optics of a kind; its one lognormal mode may be given another median radius."""
+def optics_of(name: str, humidity: float, wavelength: float, median_radius: float | None = None) -> Mean:
+    """Optics of a kind, mode by mode; its one lognormal mode may be given another median radius."""
     kind = kind_of(name)
-    modes, indices = zip(*(moist(mode, kind, humidity, wavelength) for mode in kind.modes), strict=True)
-    if median_radius is not None:
-        modes = tuple(replace(mode, shape=replace(mode.shape, median_radius=median_radius)) for mode in modes)
-    return particle_optics(modes, indices, wavelength, accuracy=ACCURACY)
+    parts = []
+    for mode in kind.modes:
+        floating, index = moist(mode, kind, humidity, wavelength)
+        shape = floating.shape if median_radius is None else replace(floating.shape, median_radius=median_radius)
+        parts.append((mode.weight, mode_optics((SizeMode(shape),), index, wavelength, accuracy=ACCURACY)))
+    extinction, scattering, forward, volume, area = (
+        sum(weight * value(optics) for weight, optics in parts)
+        for value in (
+            lambda o: o.extinction,
+            lambda o: o.scattering,
+            lambda o: o.scattering * o.asymmetry,
+            lambda o: o.volume,
+            lambda o: o.volume / o.effective_radius,
+        )
+    )
+    return Mean(extinction, scattering, forward / scattering, volume, volume / area)
 
 
-def mass_extinction(optics: ParticleOptics, density: float) -> float:
+def mass_extinction(optics: Mean, density: float) -> float:
     """Of dry particles. [m²/kg]"""
-    assert optics.volume is not None
     return optics.extinction / (optics.volume * density)
