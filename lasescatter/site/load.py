@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import Annotated, Any, Literal, cast
@@ -34,6 +35,8 @@ OPTICAL = tuple(name for name in READINGS if name not in ("mass", "number"))
 _RANGES = ("meteorological_optical_range", "visual_range")
 _AT_DUE = ("obscuration", "optical_density", "attenuation", "transmittance")
 _SMALLEST_SHARE = 1e-9
+_DENSEST = 100.0
+"""Largest extinction coefficient that a share lost or left over a length may mean. [1/m]"""
 _INSTRUMENT = "say at which wavelength the instrument measures"
 
 
@@ -69,6 +72,8 @@ class Obscuration(Marker):
             raise refusal(f"{quoted(value)} is outside what is accepted for an obscuration",
                           "Give a share above 0 % and below 100 % of the light, lost over one unit of length; for "
                           "another length give transmittance with over")  # fmt: skip
+        if -math.log1p(-share) > _DENSEST * over:
+            raise refusal(f"{quoted(value)} means an extinction above {_DENSEST:g} /m", "Check the unit of length")
         return LostShare(share, over)
 
     def schema(self) -> dict[str, Any]:
@@ -156,6 +161,11 @@ class LoadTable(Table):
         if reading == "transmittance" and not seen.stated("over"):
             yield Fault(("over",), "the key is missing",
                         'A transmittance needs the length that the light went, for example over = "3 m"')  # fmt: skip
+        if reading == "transmittance" and seen.good("transmittance", "over"):
+            extinction = -math.log(seen.get("transmittance")) / seen.get("over")
+            if extinction > _DENSEST:
+                yield Fault(("over",), f"the reading means an extinction of {extinction:.3g} /m, above {_DENSEST:g} /m",
+                            "Check length and unit: over is the way that the light went")  # fmt: skip
         if seen.stated("over") and reading != "transmittance":
             yield Fault(("over",), f"a load by {reading} is not tied to a length of its own",
                         "Leave over out; it belongs to transmittance")  # fmt: skip

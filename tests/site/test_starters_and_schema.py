@@ -10,6 +10,9 @@ import jsonschema
 import pytest
 from site_cases import GOOD, read_text
 
+from lasescatter.medium.load import concentration
+from lasescatter.optics.growth import as_they_float
+from lasescatter.optics.sizes import particle_optics
 from lasescatter.site.reading import read_site, read_site_text
 from lasescatter.site.schema import site_schema
 from lasescatter.site.starters import STARTERS, starter_text
@@ -129,3 +132,28 @@ def test_all_that_a_user_must_replace_begins_with_example(name):
 def test_there_is_no_other_starter():
     with pytest.raises(ValueError, match="indoor, outdoor, pulsed"):
         starter_text("space")
+
+
+def test_the_readings_that_the_indoor_starter_lists_are_of_one_load():
+    """Each in place of the stated one, through the kind's own optics; the remarks have two digits."""
+    text = starter_text("indoor")
+    stated = re.search(r"^meteorological_optical_range = .*$", text, re.MULTILINE)[0]
+    listed = re.findall(r'^#   (\w+ = "[^"]+")', text, re.MULTILINE)
+    assert len(listed) == 8
+    numbers = [_number_of(text)]
+    for reading in listed:
+        at = "" if reading.startswith(("visual", "mass", "number")) else '\nat = "532 nm"'
+        over = '\nover = "3 m"' if reading.startswith("transmittance") else ""
+        numbers.append(_number_of(text.replace(stated, reading + at + over)))
+    assert numbers == pytest.approx([numbers[0]] * 9, rel=0.025, abs=0)
+
+
+def _number_of(text: str) -> float:
+    scene = read_site_text(text)
+    (load,) = scene.loads
+    floating = as_they_float(load.modes, load.material, scene.air.relative_humidity, scene.air.temperature)
+
+    def optics_at(wavelength):
+        return particle_optics(floating.modes, floating.indices(wavelength), wavelength)
+
+    return concentration(load, floating, optics_at, 532e-9).number
