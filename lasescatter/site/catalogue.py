@@ -49,8 +49,9 @@ class Catalogue:
         """Up to three kinds that may be meant, for messages."""
         plain = plain_name(name)[:100]
         inside = [known for known in self._names if len(plain) >= 3 and (plain in known or known in plain)]
-        close = difflib.get_close_matches(plain, self._names, n=6, cutoff=0.6)
-        return tuple(dict.fromkeys(self._names[known] for known in [*close, *sorted(inside, key=len)]))[:3]
+        inside.sort(key=lambda known: (known != plain_name(self._names[known]), len(known), known))
+        close = difflib.get_close_matches(plain, self._names, n=6, cutoff=0.75)
+        return tuple(dict.fromkeys(self._names[known] for known in [*close, *inside]))[:3]
 
 
 def read_catalogue(own: Path | None = None) -> Catalogue:
@@ -148,7 +149,7 @@ def _catalogue(
     indices: Mapping[str, DataFile[IndexFileTable]],
     problems: Iterable[Problem] = (),
 ) -> Catalogue:
-    """Put together what the files say of one another.
+    """Put together what the files say of one another; the user's come after the shipped ones.
 
     Raises
     ------
@@ -170,8 +171,9 @@ def _catalogue(
     if maker.problems:
         raise SiteError(maker.problems, "rules")
     ordered = {name: made[name] for name in sorted(made)}
-    names = {plain_name(other): name for name in reversed(ordered) for other in ordered[name].also_called}
-    names |= {plain_name(name): name for name in ordered}
+    # Names come before other names, and a user's other names before the shipped ones.
+    names = {plain_name(other): name for name in kinds if name in made for other in made[name].also_called}
+    names |= {plain_name(name): name for name in made}
     return Catalogue(ordered, {name: file.table.to_index() for name, file in indices.items()}, names)
 
 

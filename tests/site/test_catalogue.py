@@ -122,6 +122,7 @@ def test_misspelt_names_lead_to_kinds():
     catalogue = read_catalogue()
     assert "glycol haze" in catalogue.near("glicol haze")
     assert "diesel soot" in catalogue.near("deisel soot")
+    assert "water fog" in catalogue.near("fog") and "glycol haze" in catalogue.near("haze")
     assert catalogue.near("xqzw") == () and catalogue.named("xqzw") is None
     assert catalogue.near("x" * 100_000) == ()
 
@@ -272,6 +273,23 @@ def test_other_shapes_and_growth(tmp_path):
     assert growth.factors == ((0.0, 1.0), (0.8, pytest.approx(1.2, rel=1e-12)))
 
 
+def test_other_names_of_a_user_go_before_shipped_ones(tmp_path):
+    text = KIND.replace("flour dust", "fog machine")
+    catalogue = read_catalogue(folder_of(tmp_path, (text,), (INDEX,)))
+    assert catalogue.named("fog machine").name == "bakery flour"
+    assert read_catalogue().named("fog machine").name == "heated glycol fog"
+
+
+def test_the_examples_of_the_readme_read(tmp_path):
+    blocks = README.read_text(encoding="utf-8").split("```toml\n")[1:]
+    examples = [block.split("```")[0] for block in blocks]
+    kinds = tuple(text for text in examples if text.startswith('format = "lasescatter kind'))
+    indices = tuple(text for text in examples if text.startswith('format = "lasescatter index'))
+    assert kinds and indices
+    catalogue = read_catalogue(folder_of(tmp_path, kinds, indices))
+    assert len(catalogue.kinds) == len(read_catalogue().kinds) + len(kinds)
+
+
 def test_folders_that_cannot_be_used(tmp_path):
     (tmp_path / "file").write_text("")
     (tmp_path / "empty").mkdir()
@@ -316,6 +334,8 @@ BAD_KINDS = {
                                 "ascending"),
     "span without the usual size": ('usual = "2 um"', 'usual = "3 um"', 25, "size_span.usual", "of 2 um",
                                     'usual = "2 um"'),
+    "a table for a list of tables": ("[[sizes]]", "[sizes]", 8, "sizes", "list of tables", "[[sizes]]"),
+    "a number for a table": ('index = "flour"', 'index = "flour"\ngrowth = 0.1', 7, "growth", "a table is due", "[growth]"),
     "not TOML": ("[trust]", "[trust", 13, "", "not closed", "bracket"),
     "wrong format": ("kind 1", "kind 7", 1, "format", "not a word", "kind 1"),
 }  # fmt: skip
