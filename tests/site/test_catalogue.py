@@ -335,7 +335,8 @@ BAD_KINDS = {
     "span without the usual size": ('usual = "2 um"', 'usual = "3 um"', 25, "size_span.usual", "of 2 um",
                                     'usual = "2 um"'),
     "a table for a list of tables": ("[[sizes]]", "[sizes]", 8, "sizes", "list of tables", "[[sizes]]"),
-    "a number for a table": ('index = "flour"', 'index = "flour"\ngrowth = 0.1', 7, "growth", "a table is due", "[growth]"),
+    "a number for a table": ('index = "flour"', 'index = "flour"\ngrowth = 0.1', 7, "growth", "a table is due",
+                             "[growth]"),
     "not TOML": ("[trust]", "[trust", 13, "", "not closed", "bracket"),
     "wrong format": ("kind 1", "kind 7", 1, "format", "not a word", "kind 1"),
 }  # fmt: skip
