@@ -61,12 +61,14 @@ def show_kind(
         found = kind_optics(kind, waves, readings, Air(relative_humidity=_humidity(humidity)))
     except SiteError as fault:
         raise _renamed(fault, "air.relative_humidity", "--humidity") from fault
+    # The file first: where it cannot be written nothing is printed either.
+    told = [] if plot is None else _drawn(found, plot)
     if as_json:
         typer.echo(json.dumps(kind_in_full(found), indent=1, ensure_ascii=False, allow_nan=False))
     else:
         print_kind(found, Console(highlight=False, markup=False))
-    if plot is not None:
-        _draw(found, plot, told_on_stderr=as_json)
+    for line in told:
+        typer.echo(line, err=True)
 
 
 def _named(catalogue: Catalogue, name: str) -> Kind:
@@ -120,13 +122,13 @@ def _check_plot(plot: Path | None) -> None:
                        f"Give a name that ends in {', '.join(FORMATS[:-1])} or {FORMATS[-1]}")  # fmt: skip
 
 
-def _draw(found: KindOptics, plot: Path, told_on_stderr: bool) -> None:
+def _drawn(found: KindOptics, plot: Path) -> list[str]:
+    """Draw the curves. Returns what there is to tell of the file."""
     from lasescatter.commands.delivery import delivery_to
     from lasescatter.report.kind_curves import write_curves
 
     if all(entry.usual is None for entry in found.wavelengths):
-        typer.echo(f"{plain(str(plot))}: no curve is known at these wavelengths; nothing was drawn", err=True)
-        return
+        return [f"{plain(str(plot))}: no curve is known at these wavelengths; nothing was drawn"]
     try:
         with delivery_to(plot.parent) as delivery:
             delivery.refuse_taken([plot.name])
@@ -134,8 +136,7 @@ def _draw(found: KindOptics, plot: Path, told_on_stderr: bool) -> None:
             written, replaced = delivery.put_in_place([plot.name])
     except SiteError as fault:
         raise _renamed(fault, "--out", "--plot") from fault
-    for path in written:
-        typer.echo(f"wrote {plain(str(path))}{' (replaced)' if path in replaced else ''}", err=told_on_stderr)
+    return [f"wrote {plain(str(path))}{' (replaced)' if path in replaced else ''}" for path in written]
 
 
 def _renamed(fault: SiteError, key: str, option: str) -> SiteError:

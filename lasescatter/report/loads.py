@@ -203,11 +203,11 @@ def _stand_in(load: Load) -> str:
 
 def _trust(load: Load, entries: list[ComponentSummary]) -> str:
     """As it counts at each wavelength."""
-    trusts = {entry.wavelength: entry.trust for entry in entries} or {None: load.trust}
+    trusts = dict.fromkeys(entry.trust for entry in entries) or {load.trust: None}
     told = []
-    for trust in dict.fromkeys(trusts.values()):
-        waves = [wavelength(wave) for wave, found in trusts.items() if found == trust and wave is not None]
-        at = f"{', '.join(waves)}: " if len(set(trusts.values())) > 1 else ""
+    for trust in trusts:
+        waves = dict.fromkeys(wavelength(entry.wavelength) for entry in entries if entry.trust == trust)
+        at = f"{', '.join(waves)}: " if len(trusts) > 1 else ""
         told.append(f"{at}<b>{trust_word(trust)}</b>: {markup(trust.reason, 400)}. {trust_effect(trust)}")
     return "<br/>".join(told).replace("..", ".")
 
