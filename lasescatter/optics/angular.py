@@ -56,28 +56,55 @@ def angular_functions(cosine: NDArray[np.float64], orders: int) -> Table:
 
 
 class AngularTables:
-    """Tables at theta_j = pi j / (2 L), j = 0…L, and orders 1…L; those of a few sizes are kept for reuse.
+    """Tables at theta_j = pi j/K, j = 0…K with K = 2 L, and orders 1…L; those of a few sizes are kept for reuse.
 
-    The other half of the sphere follows from the mirror rule: plus_n(−mu) = (−1)^(n−1) minus_n(mu).
+    The second half of the angles follows from the mirror rule: plus_n(−mu) = (−1)^(n−1) minus_n(mu). So 0° and 180°
+    obey their symmetries to rounding.
     """
 
-    def __init__(self, kept_bytes: int = 160_000_000) -> None:
+    def __init__(self, kept_bytes: int = 256_000_000) -> None:
         self._left = kept_bytes
         self._kept: dict[int, Table] = {}
 
     def pieces(self, orders: int, widest: int) -> Iterator[tuple[slice, Table]]:
-        """The table in pieces of at most `widest` angles, or whole where it is small enough to keep."""
+        """The table, each part (angles, orders), in pieces of at most `widest` angles and their mirror images, or
+        whole where it is small enough to keep. The slice is that of the angles."""
         if orders in self._kept:
-            yield slice(0, orders + 1), self._kept[orders]
+            yield slice(0, 2 * orders + 1), self._kept[orders]
             return
-        cosine = np.cos(np.pi * np.arange(orders + 1) / (2 * orders))
-        cosine[-1] = 0.0
-        size = 16 * orders * (orders + 1)
+        size = 16 * orders * (2 * orders + 1)
         if size <= self._left:
             self._left -= size
-            self._kept[orders] = angular_functions(cosine, orders)
-            yield slice(0, orders + 1), self._kept[orders]
+            self._kept[orders] = _both_halves(orders)
+            yield slice(0, 2 * orders + 1), self._kept[orders]
             return
+        cosine = _cosines(orders)
         for first in range(0, orders + 1, widest):
             piece = slice(first, min(first + widest, orders + 1))
-            yield piece, angular_functions(cosine[piece], orders)
+            plus, minus = angular_functions(cosine[piece], orders)
+            yield piece, (plus.T, minus.T)
+            mirrored = slice(2 * orders + 1 - piece.stop, 2 * orders + 1 - piece.start)
+            if piece.stop == orders + 1:
+                # theta = 90° is in both halves.
+                plus, minus = plus[:, :-1], minus[:, :-1]
+                mirrored = slice(orders + 1, mirrored.stop)
+            yield mirrored, _mirrored(plus, minus)
+
+
+def _cosines(orders: int) -> NDArray[np.float64]:
+    """Of the forward half of the angles; 90° exactly."""
+    cosine = np.cos(np.pi * np.arange(orders + 1) / (2 * orders))
+    cosine[-1] = 0.0
+    return cosine
+
+
+def _mirrored(plus: NDArray[np.float64], minus: NDArray[np.float64]) -> Table:
+    """Tables at pi − theta, angles ascending, from those at theta; (angles, orders) from (orders, angles)."""
+    alternate = 1.0 - 2.0 * (np.arange(len(plus)) % 2)
+    return minus.T[::-1] * alternate, plus.T[::-1] * alternate
+
+
+def _both_halves(orders: int) -> Table:
+    plus, minus = angular_functions(_cosines(orders), orders)
+    back_plus, back_minus = _mirrored(plus[:, :-1], minus[:, :-1])
+    return np.concatenate((plus.T, back_plus)), np.concatenate((minus.T, back_minus))

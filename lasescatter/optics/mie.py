@@ -7,9 +7,10 @@ Huffman, Absorption and Scattering of Light by Small Particles (1983), ch. 4.
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass, field
 from itertools import pairwise
-from math import acosh, ceil, sqrt, tanh
+from math import ceil
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -18,21 +19,36 @@ from lasescatter.optics import cosines
 from lasescatter.optics.angular import AngularTables, angular_functions
 from lasescatter.optics.partial_waves import (
     LARGEST_SIZE_PARAMETER,
-    SMALL_SIZE_PARAMETER,
     PartialWaves,
     SizeRangeError,
     check_index,
     check_size_parameter,
     partial_waves,
-    series_length,
 )
+from lasescatter.optics.recurrences import series_length
+from lasescatter.optics.workspace import Workspace
 
-__all__ = ["SizeRangeError", "SphereOptics", "SphereSum", "averaged", "block_edges", "block_sum", "sphere", "work"]
+__all__ = [
+    "MieSpace",
+    "SizeRangeError",
+    "SphereOptics",
+    "SphereSum",
+    "averaged",
+    "block_edges",
+    "sphere",
+    "sums",
+    "work",
+]
 
 # Bounds on the arrays of one step, in elements.
 _WAVES = 400_000
 _TABLE = 4_000_000
-_PRODUCT = 2_000_000
+_CACHED = 30_000
+_LEAST_HEIGHT = 32
+# Spheres whose coefficients are computed together.
+_TOGETHER = 750
+# What the calls of one more group are worth: spheres times orders squared.
+_CALLS = 100_000.0
 
 
 @dataclass(frozen=True, eq=False)
@@ -50,8 +66,7 @@ class SphereOptics:
     def amplitudes(self, theta: ArrayLike) -> tuple[NDArray[np.complex128], NDArray[np.complex128]]:
         """S1 and S2 at scattering angles [rad]; any shape."""
         angle = np.asarray(theta, dtype=float)
-        total = (self.waves.a + self.waves.b)[:, 0]
-        difference = (self.waves.a - self.waves.b)[:, 0]
+        total, difference = self.waves.total[:, 0], self.waves.difference[:, 0]
         cosine = np.cos(angle.ravel())
         s1 = np.empty(cosine.size, dtype=complex)
         s2 = np.empty_like(s1)
@@ -83,12 +98,12 @@ def sphere(index: complex, size_parameter: float) -> SphereOptics:
     check_size_parameter(size_parameter, size_parameter)
     x = float(size_parameter)
     orders = int(series_length(x))
-    waves = partial_waves(complex(index), np.array([x]), orders)
+    waves = partial_waves(complex(index), np.array([x]))
     a, b = waves.a[:, 0], waves.b[:, 0]
     n = np.arange(1, orders + 1)
     sign = 1 - 2 * (n % 2)
     q_sca = 2 / x**2 * float(((2 * n + 1) * (np.abs(a) ** 2 + np.abs(b) ** 2)).sum())
-    q_abs = 2 / x**2 * float(((2 * n + 1) * waves.absorbed[:, 0]).sum())
+    q_abs = 2 / x**2 * float(waves.absorbed[0])
     back = (sign * (n + 0.5) * (a - b)).sum()
     # Bohren & Huffman (1983), section 4.5: Q_sca <cos theta>.
     neighbours = (a[:-1] * a[1:].conj() + b[:-1] * b[1:].conj()).real
@@ -101,6 +116,14 @@ def sphere(index: complex, size_parameter: float) -> SphereOptics:
         asymmetry=float(4 / x**2 * cosine / q_sca),
         waves=waves,
     )
+
+
+class MieSpace:
+    """What sums over spheres carry from call to call: tables and work arrays. Not for two threads."""
+
+    def __init__(self) -> None:
+        self.tables = AngularTables()
+        self.work = Workspace()
 
 
 @dataclass(frozen=True, eq=False)
@@ -130,7 +153,7 @@ def averaged(
     index: complex,
     size_parameter: NDArray[np.float64],
     weight: NDArray[np.float64],
-    tables: AngularTables | None = None,
+    space: MieSpace | None = None,
 ) -> SphereSum:
     """Sum over spheres of one index, each with its weight.
 
@@ -143,7 +166,7 @@ def averaged(
         Relative to the medium.
     size_parameter, weight : (R,) arrays
         Weights are at least 0.
-    tables : AngularTables, optional
+    space : MieSpace, optional
         Carried from call to call to save work.
 
     Raises
@@ -153,94 +176,108 @@ def averaged(
     """
     check_index(complex(index))
     check_size_parameter(float(size_parameter.min()), float(size_parameter.max()))
-    tables = tables or AngularTables()
-    order = np.argsort(size_parameter)
+    order = np.argsort(-size_parameter)
     x, w = size_parameter[order], weight[order]
-    places = np.searchsorted(block_edges(), x, side="right")
-    total = SphereSum(0.0, 0.0, np.zeros((4, 1)))
-    for first, stop in pairwise([0, *(np.flatnonzero(np.diff(places)) + 1).tolist(), x.size]):
-        total += block_sum(index, x[first:stop], w[first:stop], tables)
-    return total
+    return sum(sums(index, x, w, _cuts(x), space or MieSpace()), SphereSum(0.0, 0.0, np.zeros((4, 1))))
 
 
-def block_sum(
-    index: complex, size_parameter: NDArray[np.float64], weight: NDArray[np.float64], tables: AngularTables
-) -> SphereSum:
-    """The same for spheres between two neighbouring block edges; unchecked."""
-    x, w = size_parameter, weight
-    orders = int(series_length(x).max())
-    rung = _LADDER[int(np.searchsorted(_LADDER, orders))]
-    samples = np.zeros((4, 2 * rung + 1))
-    scattering = absorption = 0.0
-    twice = 2.0 * np.arange(1, orders + 1) + 1
-    step = max(1, min(_WAVES // orders, _PRODUCT // (4 * min(rung + 1, _widest(rung)))))
-    for first in range(0, x.size, step):
-        few = slice(first, first + step)
-        waves = partial_waves(complex(index), x[few], orders)
-        strength = (waves.a.real**2 + waves.a.imag**2 + waves.b.real**2 + waves.b.imag**2) @ w[few]
-        scattering += 2 * np.pi * float(twice @ strength)
-        absorption += 2 * np.pi * float(twice @ (waves.absorbed @ w[few]))
-        _add_samples(samples, waves, np.sqrt(w[few]), rung, tables)
-    if not (np.isfinite(scattering) and np.isfinite(absorption) and np.isfinite(samples).all()):
-        raise FloatingPointError(f"Mie sums of index {index}, size parameters near {x[0]:.6g} are not finite")
-    return SphereSum(scattering, absorption, cosines.from_samples(samples))
+def _cuts(x: NDArray[np.float64]) -> list[int]:
+    """Where to cut descending size parameters into groups that share a table.
+
+    Wide groups save calls, narrow ones arithmetic: from rung to rung a group grows while that costs its new spheres
+    less than the calls of one more group.
+    """
+    tops = np.array(_LADDER)[np.searchsorted(_LADDER, series_length(x))]
+    ends = [*(np.flatnonzero(np.diff(tops)) + 1).tolist(), x.size]
+    cuts, top = [0], float(tops[0])
+    for end, next_end in pairwise(ends):
+        here = float(tops[next_end - 1])
+        if (next_end - end) * (top**2 - here**2) > _CALLS:
+            cuts.append(end)
+            top = here
+    return [*cuts, x.size]
 
 
-def work(size_parameter: NDArray[np.float64]) -> float:
-    """Multiplications that a sum will take, near enough to bound a job before it starts."""
-    orders = series_length(size_parameter).astype(float)
-    return float((16 * orders**2 + 1500 * orders).sum())
+def sums(
+    index: complex,
+    size_parameter: NDArray[np.float64],
+    weight: NDArray[np.float64],
+    cuts: list[int],
+    space: MieSpace,
+) -> list[SphereSum]:
+    """Sums over groups of spheres; unchecked.
+
+    Parameters
+    ----------
+    size_parameter, weight : (R,) arrays
+        Descending in size.
+    cuts : list of int
+        Where the groups begin, and R.
+    """
+    lengths = series_length(size_parameter)
+    rungs = [_LADDER[int(np.searchsorted(_LADDER, int(lengths[first])))] for first in cuts[:-1]]
+    samples = [np.zeros((4, 2 * rung + 1)) for rung in rungs]
+    absorbed = np.empty(size_parameter.size)
+    for first, stop, parts in _batches(cuts, lengths):
+        waves = partial_waves(index, size_parameter[first:stop], weight[first:stop], space.work)
+        absorbed[first:stop] = waves.absorbed
+        for group, begin, end in parts:
+            _add_samples(samples[group], waves, slice(begin - first, end - first), int(lengths[begin]), space)
+    totals = 2 * np.pi * np.add.reduceat(absorbed, cuts[:-1])
+    results = []
+    for values, absorption in zip(samples, totals.tolist(), strict=True):
+        series = cosines.from_samples(values)
+        if not (np.isfinite(absorption) and np.isfinite(series[0, 0])):
+            raise FloatingPointError(f"Mie sums of index {index} are not finite")
+        results.append(SphereSum(4 * np.pi * cosines.sphere_mean(series[0]), absorption, series))
+    return results
+
+
+def _batches(cuts: list[int], lengths: NDArray[np.int64]) -> Iterator[tuple[int, int, list[tuple[int, int, int]]]]:
+    """Spheres to take together, first and stop, and which of them belong to which group: (group, begin, end)."""
+    first, parts = 0, list[tuple[int, int, int]]()
+    for group, (begin, end) in enumerate(pairwise(cuts)):
+        while begin < end:
+            room = first + max(1, min(_TOGETHER, _WAVES // int(lengths[first]))) - begin
+            stop = min(end, begin + room)
+            if stop > begin:
+                parts.append((group, begin, stop))
+            begin = stop
+            if begin < end:
+                yield first, begin, parts
+                first, parts = begin, []
+    yield first, cuts[-1], parts
 
 
 def _add_samples(
-    samples: NDArray[np.float64],
-    waves: PartialWaves,
-    root: NDArray[np.float64],
-    rung: int,
-    tables: AngularTables,
+    samples: NDArray[np.float64], waves: PartialWaves, columns: slice, orders: int, space: MieSpace
 ) -> None:
-    """Add the weighted matrix of some spheres at theta_j = pi j/(2 rung).
-
-    Complex sums are laid out as [real | imaginary], first for the forward half of the angles, then mirrored.
-    """
-    orders, count = waves.a.shape
-    alternate = (1.0 - 2.0 * (np.arange(orders) % 2))[:, np.newaxis]
-    total = np.empty((orders, 4 * count))
-    difference = np.empty_like(total)
-    both = (waves.a + waves.b) * root
-    apart = (waves.a - waves.b) * root
-    for target, here, mirrored in ((total, both, apart), (difference, apart, both)):
-        target[:, :count], target[:, count : 2 * count] = here.real, here.imag
-        np.multiply(mirrored.real, alternate, out=target[:, 2 * count : 3 * count])
-        np.multiply(mirrored.imag, alternate, out=target[:, 3 * count :])
-    half = 2 * count
-    for piece, (plus, minus) in tables.pieces(rung, _widest(rung)):
-        left = plus[:orders].T @ total
-        right = minus[:orders].T @ difference
-        samples[:, piece] += _matrix_rows(left[:, :half], right[:, :half])
-        mirror = slice(2 * rung - piece.start, 2 * rung - piece.stop, -1)
-        mirrored_rows = _matrix_rows(right[:, half:], left[:, half:])
-        if piece.stop == rung + 1:
-            # theta = 90° is in both halves.
-            mirror = slice(2 * rung - piece.start, rung, -1)
-            mirrored_rows = mirrored_rows[:, :-1]
-        samples[:, mirror] += mirrored_rows
+    """Add the weighted matrix of some spheres at theta_j = pi j/(2 rung)."""
+    rung = samples.shape[1] // 2
+    total = waves.total[:orders].view(float)[:, 2 * columns.start : 2 * columns.stop]
+    difference = waves.difference[:orders].view(float)[:, 2 * columns.start : 2 * columns.stop]
+    height = max(_LEAST_HEIGHT, _CACHED // total.shape[1])
+    for piece, (plus, minus) in space.tables.pieces(rung, max(64, _TABLE // rung)):
+        for start in range(0, len(plus), height):
+            some = slice(start, min(start + height, len(plus)))
+            left = space.work.array("left", some.stop - start, total.shape[1])
+            right = space.work.array("right", *left.shape)
+            np.matmul(plus[some, :orders], total, out=left)
+            np.matmul(minus[some, :orders], difference, out=right)
+            samples[:, piece][:, some] += _matrix_rows(left, right)
 
 
 def _matrix_rows(plus: NDArray[np.float64], minus: NDArray[np.float64]) -> NDArray[np.float64]:
-    """S11, S12, S33, S34 summed over spheres, (4, J), from S1 + S2 and S1 − S2 laid out as [real | imaginary]."""
-    count = plus.shape[1] // 2
-    pp = np.einsum("ij,ij->i", plus, plus)
-    mm = np.einsum("ij,ij->i", minus, minus)
-    pm = np.einsum("ij,ij->i", plus, minus)
-    cross = np.einsum("ij,ij->i", plus[:, count:], minus[:, :count])
-    cross -= np.einsum("ij,ij->i", plus[:, :count], minus[:, count:])
-    return np.stack(((pp + mm) / 4, -pm / 2, (pp - mm) / 4, cross / 2))
+    """S11, S12, S33, S34 summed over spheres, (4, J), from S1 + S2 and S1 − S2, (J, 2R), real and imaginary in turn."""
+    pp, mm = np.vecdot(plus, plus), np.vecdot(minus, minus)
+    pm = np.vecdot(plus.view(complex), minus.view(complex))
+    return np.stack((pp + mm, -2 * pm.real, pp - mm, -2 * pm.imag)) / 4
 
 
-def _widest(rung: int) -> int:
-    """Angles of one piece of a table that is not kept."""
-    return max(64, _TABLE // rung)
+def work(size_parameter: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Multiplications that each sphere will take, near enough to bound a job before it starts."""
+    orders = series_length(size_parameter).astype(float)
+    return 16 * orders**2 + 1500 * orders
 
 
 def _outgrown(rung: int) -> float:
@@ -252,33 +289,18 @@ def _outgrown(rung: int) -> float:
     return c**3
 
 
-def _growth(n: int, x: float) -> float:
-    """Logarithm, nearly, of chi_n(x) for n above x."""
-    u = acosh(n / x)
-    return n * (u - tanh(u))
-
-
 def _ladder() -> tuple[int, ...]:
-    """Series lengths that blocks are padded to; the first is that of x = 1.
-
-    A step is the square root of two, and less for large spheres: chi_n(x) beyond n = x grows as
-    exp(n (u − tanh u)) with cosh u = n/x, and must stay below 1e130 for its square to be finite. That of the
-    smallest sphere of a block, padded to its rung, grows most.
-    """
-    rungs = [int(series_length(SMALL_SIZE_PARAMETER))]
+    """Series lengths that have a table; the first is that of x = 1. A step is the fourth root of two."""
+    rungs = [int(series_length(1.0))]
     last = int(series_length(LARGEST_SIZE_PARAMETER))
     while rungs[-1] < last:
-        smallest = _outgrown(rungs[-1]) if len(rungs) > 1 else SMALL_SIZE_PARAMETER
-        rung = ceil(rungs[-1] * sqrt(2))
-        while _growth(rung, smallest) > 300:
-            rung -= max(1, rung // 1000)
-        rungs.append(rung)
+        rungs.append(ceil(rungs[-1] * 2**0.25))
     return tuple(rungs)
 
 
 _LADDER = _ladder()
 # A shade lower, so that rounding cannot lift the sphere at an edge over the rung below.
-_EDGES = (SMALL_SIZE_PARAMETER, *(_outgrown(rung) * (1 - 1e-12) for rung in _LADDER[1:]))
+_EDGES = (1.0, *(_outgrown(rung) * (1 - 1e-12) for rung in _LADDER[1:]))
 
 
 def block_edges() -> NDArray[np.float64]:

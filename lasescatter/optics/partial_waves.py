@@ -9,19 +9,22 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import NDArray
+
+from lasescatter.optics.recurrences import Ratios, order_groups, psi_and_chi, series_length, small_from
+from lasescatter.optics.workspace import Workspace
+
+Floats = NDArray[np.float64]
 
 SMALLEST_SIZE_PARAMETER = 1e-6
 LARGEST_SIZE_PARAMETER = 2e4
 LARGEST_INDEX = 20.0
 SMALLEST_CONTRAST = 1e-6
 
-# Up to this (and a rounding) the upward recurrence of psi_n cancels; its ratios are taken downward instead.
-SMALL_SIZE_PARAMETER = 1.0
-# The growth of a recurrence between two rescalings, in decades: squares must stay below 1e308.
-_DECADES = 120.0
-# Elements that one step of the algebra handles, so that its operands stay in the second-level cache.
-_CACHED = 12_000
+# Up to this k x the recurrence runs at the real part of m x and absorption enters by its derivative; what that
+# leaves out is of the order of the square.
+_WEAK_ABSORPTION = 1e-5
+_TINY_SIZE_PARAMETER = 0.01
 
 
 class SizeRangeError(ValueError):
@@ -30,22 +33,24 @@ class SizeRangeError(ValueError):
 
 @dataclass(frozen=True)
 class PartialWaves:
-    """Orders 1…N of R spheres. All arrays have the shape (N, R)."""
+    """Orders 1…N of R spheres, N being the series length of the largest. The arrays are those of a workspace."""
 
-    a: NDArray[np.complex128]
-    b: NDArray[np.complex128]
-    absorbed: NDArray[np.float64]
-    """Re(a) − |a|² + Re(b) − |b|² of each order, free of cancellation."""
+    total: NDArray[np.complex128]
+    """a_n + b_n, shape (N, R)."""
+    difference: NDArray[np.complex128]
+    """a_n − b_n."""
+    absorbed: Floats
+    """Sum of (2n + 1) (Re(a) − |a|² + Re(b) − |b|²) over the orders, free of cancellation, shape (R,)."""
 
+    @property
+    def a(self) -> NDArray[np.complex128]:
+        """Electric coefficients, (N, R)."""
+        return (self.total + self.difference) / 2
 
-def series_length(size_parameter: ArrayLike) -> NDArray[np.int64]:
-    """Orders needed for full accuracy of the amplitudes at every angle.
-
-    The form is that of Wiscombe (1980), Appl. Opt. 19, 1505; the factor 6 in place of his 4.05 takes the
-    truncation error of the weakest angles from 1e-7 to rounding.
-    """
-    x = np.asarray(size_parameter, dtype=float)
-    return np.floor(x + 6 * np.cbrt(x) + 3).astype(np.int64)
+    @property
+    def b(self) -> NDArray[np.complex128]:
+        """Magnetic coefficients, (N, R)."""
+        return (self.total - self.difference) / 2
 
 
 def check_size_parameter(smallest: float, largest: float, whose: str = "") -> None:
@@ -81,125 +86,209 @@ def check_index(index: complex) -> None:
         )
 
 
-def partial_waves(index: complex, size_parameter: NDArray[np.float64], orders: int) -> PartialWaves:
+def partial_waves(
+    index: complex, size_parameter: Floats, weight: Floats | None = None, workspace: Workspace | None = None
+) -> PartialWaves:
     """Coefficients of spheres of one index.
+
+    Orders are taken in groups; in each only the spheres whose series is that long take part.
 
     Parameters
     ----------
     index : complex
         Relative to the medium. An infinite value means a perfect conductor.
     size_parameter : (R,) array
-        Either all up to 1 or all from 1.
-    orders : int
-        N, at least the series length of every sphere. What lies beyond a sphere's own length is zero.
+        Descending.
+    weight : (R,) array, optional
+        Coefficients come multiplied by its root, and what is absorbed by itself.
+    workspace : Workspace, optional
+        Its arrays are used for the result, which the next call with it overwrites.
     """
-    x = size_parameter
-    psi, chi = _riccati_bessel(x, orders)
-    conductor = bool(np.isinf(index))
-    m = 1.0 if conductor else (index.real if index.imag == 0 else index)
-    inner = np.ones((orders, x.size)) if conductor else _ratios(m * x, orders)
-    n_over_x = np.arange(1, orders + 1)[:, np.newaxis] / x
-
-    a = np.empty((orders, x.size), dtype=complex)
-    b = np.empty_like(a)
-    absorbed = np.zeros((orders, x.size))
-    step = max(1, _CACHED // x.size)
-    for first in range(0, orders, step):
-        rows = slice(first, min(first + step, orders))
-        outer = psi[rows], psi[1:][rows], chi[rows], chi[1:][rows]
-        if conductor:
-            a[rows], _ = _coefficient(n_over_x[rows], *outer)
-            b[rows] = outer[1] / (outer[1] - 1j * outer[3])
-            continue
-        a[rows], lost_a = _coefficient(inner[rows] / m + n_over_x[rows] * (1 - 1 / m**2), *outer)
-        b[rows], lost_b = _coefficient(m * inner[rows], *outer)
-        absorbed[rows] = lost_a + lost_b
-
+    x, space = size_parameter, workspace or Workspace()
+    root = np.ones(x.size) if weight is None else np.sqrt(weight)
     lengths = series_length(x)
-    shortest = int(lengths.min())
-    beyond = np.arange(shortest + 1, orders + 1)[:, np.newaxis] > lengths
-    for values in (a, b, absorbed):
-        values[shortest:][beyond] = 0
-    return PartialWaves(a, b, absorbed)
+    groups = order_groups(x, lengths)
+    psi_chi = psi_and_chi(x, groups, space)
+    conductor = bool(np.isinf(index))
+    # For tiny spheres what the first order absorbs would cancel in the weak form.
+    weak = not conductor and (
+        index.imag == 0 or (index.imag * float(x[0]) <= _WEAK_ABSORPTION and float(x[-1]) >= _TINY_SIZE_PARAMETER)
+    )
+    downward = None if conductor else Ratios((index.real if weak else index) * x, lengths, space)
+    orders = int(lengths[0])
+    total = space.complex_array("total", orders, x.size)
+    difference = space.complex_array("difference", orders, x.size)
+    absorbed = np.zeros(x.size)
+    inverse = 1 / x
+    for low, high, count in reversed(groups):
+        n = np.arange(low, high + 1.0)[:, np.newaxis]
+        both = psi_chi[low - 1 : high + 1, : 2 * count]
+        psi, chi = space.array("psi", high - low + 2, count), space.array("chi", high - low + 2, count)
+        np.copyto(psi, both[:, ::2])
+        np.copyto(chi, both[:, 1::2])
+        over = np.multiply(n, inverse[:count], out=space.array("over", high - low + 1, count))
+        algebra = _Algebra(space, over, (root[:count], psi[:-1], psi[1:], chi[:-1], chi[1:]))
+        if downward is None:
+            a, b = algebra.conductor()
+        elif weak and index.imag == 0:
+            a, b = algebra.real(index.real, downward.of_orders(low, high, count))
+        else:
+            inner = downward.of_orders(low, high, count)
+            a, b, lost = algebra.weak(index, n, x[:count], inner) if weak else algebra.full(index, inner)
+            absorbed[:count] += (2 * n[:, 0] + 1) @ lost
+        rows = slice(low - 1, high), slice(0, count)
+        total[low - 1 : high, count:] = 0
+        difference[low - 1 : high, count:] = 0
+        for part, sums, differences in ((0, total.real, difference.real), (1, total.imag, difference.imag)):
+            np.add(a[part], b[part], out=sums[rows])
+            np.subtract(a[part], b[part], out=differences[rows])
+    small = small_from(x)
+    if small < x.size:
+        # psi_n of small spheres is right up to this order; what comes out beyond it could drown the first ones.
+        beyond = int(lengths[small])
+        total[beyond:, small:] = 0
+        difference[beyond:, small:] = 0
+    return PartialWaves(total, difference, absorbed * root)
 
 
-def _coefficient(
-    t: NDArray,
-    psi_before: NDArray[np.float64],
-    psi: NDArray[np.float64],
-    chi_before: NDArray[np.float64],
-    chi: NDArray[np.float64],
-) -> tuple[NDArray[np.complex128], NDArray[np.float64] | float]:
-    """(t psi_n − psi_{n−1}) / (t xi_n − xi_{n−1}) with xi = psi − i chi, and Re − |·|² of it.
-
-    The latter is −Im(t)/|denominator|², because psi_{n−1} chi_n − psi_n chi_{n−1} = 1.
-    """
-    p = t * psi
-    p -= psi_before
-    q = t * chi
-    q -= chi_before
-    if np.iscomplexobj(t):
-        denominator = p - 1j * q
-        absorbed: NDArray[np.float64] = -t.imag / (denominator.real**2 + denominator.imag**2)
-        return np.asarray(p / denominator, dtype=complex), absorbed
-    # Without absorption all is real: p/(p − iq) = (p² + ipq)/(p² + q²).
-    size = p * p + q * q
-    ratio = p / size
-    result = np.empty(p.shape, dtype=complex)
-    np.multiply(ratio, q, out=result.imag)
-    np.multiply(ratio, p, out=result.real)
-    return result, 0.0
+Parts = tuple[Floats, Floats]
+# Root of the weights, psi_{n−1}, psi_n, chi_{n−1}, chi_n.
+Outer = tuple[Floats, Floats, Floats, Floats, Floats]
 
 
-def _riccati_bessel(x: NDArray[np.float64], orders: int) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """psi_n(x) and chi_n(x) for n = 0…orders, each (orders + 1, R); chi_0 = cos x."""
-    count = x.size
-    both = np.empty((orders + 1, 2 * count))
-    sine, cosine = np.sin(x), np.cos(x)
-    both[0, :count], both[0, count:] = sine, cosine
-    both[1, :count], both[1, count:] = sine / x - cosine, cosine / x + sine
-    factors = (2 * np.arange(1, orders)[:, np.newaxis] + 1) * np.concatenate((1 / x, 1 / x))
-    rows, steps = list(both), list(factors)
-    for n in range(1, orders):
-        np.multiply(steps[n - 1], rows[n], out=rows[n + 1])
-        np.subtract(rows[n + 1], rows[n - 1], out=rows[n + 1])
-    psi, chi = both[:, :count], both[:, count:]
-    if x.max() < SMALL_SIZE_PARAMETER * (1 + 1e-9):
-        psi = np.vstack((sine, 1 / _ratios(x, orders))).cumprod(axis=0)
-    return psi, chi
+@dataclass(frozen=True)
+class _Algebra:
+    """Coefficients of one group of orders, (orders, spheres), in arrays of a workspace."""
 
+    space: Workspace
+    over: Floats
+    """n/x. Overwritten."""
+    outer: Outer
 
-def _ratios(z: NDArray, orders: int) -> NDArray:
-    """psi_{n−1}(z)/psi_n(z) for n = 1…orders, shape (orders, R), by downward recurrence of psi itself.
+    def _array(self, name: str) -> Floats:
+        return self.space.array(name, *self.over.shape)
 
-    The recurrence must start above |z|: below it the start error is neither damped nor amplified, and
-    large spheres that hardly absorb would keep it (the extinction would not show it, the angles do).
-    """
-    largest = float(np.abs(z).max())
-    start = int(max(orders, largest + 8 * np.cbrt(largest))) + 15
-    inverse = 1 / z
-    growth = np.log10((2 * start + 1) / float(np.abs(z).min()) + 1)
-    stride = max(1, min(int(_DECADES / growth), max(1, _CACHED // z.size)))
+    def conductor(self) -> tuple[Parts, Parts]:
+        """The limit of an infinite index."""
+        root, _, psi, _, chi = self.outer
+        a = self._lossless("a", self.over)
+        real, imaginary = self._array("b real"), self._array("b imaginary")
+        np.multiply(psi, psi, out=real)
+        np.multiply(chi, chi, out=imaginary)
+        imaginary += real
+        np.divide(root, imaginary, out=imaginary)
+        real *= imaginary
+        imaginary *= psi
+        imaginary *= chi
+        return a, (real, imaginary)
 
-    ratios = np.empty((orders, z.size), dtype=z.dtype)
-    window = np.empty((stride + 2, z.size), dtype=z.dtype)
-    rows = list(window)
-    rows[0][:], rows[1][:] = 0, 1
-    top = start
-    while top > 0:
-        steps = min(stride, top)
-        n = np.arange(top, top - steps, -1)
-        factors = list((2 * n + 1)[:, np.newaxis] * inverse)
-        for i in range(steps):
-            np.multiply(factors[i], rows[i + 1], out=rows[i + 2])
-            np.subtract(rows[i + 2], rows[i], out=rows[i + 2])
-        bottom = top - steps
-        if bottom < orders:
-            kept = min(top, orders) - bottom
-            ratios[bottom : bottom + kept] = (window[2 : steps + 2] / window[1 : steps + 1])[::-1][:kept]
-        last = window[steps : steps + 2].copy()
-        # Rescaled to a modulus near 1: only ratios are used, so the recurrence can neither overflow nor vanish.
-        last /= np.abs(last).max(axis=0)
-        window[:2] = last
-        top = bottom
-    return ratios
+    def real(self, m: float, inner: Floats) -> tuple[Parts, Parts]:
+        """Without absorption; `inner` is f = psi_{n−1}(mx)/psi_n(mx). Overwrites it."""
+        magnetic = np.multiply(inner, m, out=self._array("magnetic"))
+        np.multiply(self.over, 1 - 1 / m**2, out=self.over)
+        inner *= 1 / m
+        inner += self.over
+        return self._lossless("a", inner), self._lossless("b", magnetic)
+
+    def weak(self, index: complex, n: Floats, x: Floats, inner: Floats) -> tuple[Parts, Parts, Floats]:
+        """Real algebra, to first order in k; `inner` is f at z = Re(m) x. Overwrites it.
+
+        With t = f/m + (n/x)(1 − 1/m²) or m f and df/dz = −1 − f² + 2 n f/z the imaginary parts of t are −s,
+        s = k [z (1 + f²) − (2n + 1) f] for the magnetic one. Near a zero of psi_n(z) it is psi_n and psi_{n−1}
+        that are taken to first order: f and s are then smaller by 1 + (k x (f − n/z))².
+        """
+        m, k = index.real, index.imag
+        kz = k * m * x
+        near_zero = np.multiply(self.over, -1 / m, out=self._array("near zero"))
+        near_zero += inner
+        near_zero *= k * x
+        near_zero *= near_zero
+        near_zero += 1
+        np.reciprocal(near_zero, out=near_zero)
+        s_magnetic = np.multiply(kz, inner, out=self._array("s magnetic"))
+        s_magnetic -= k * (2 * n + 1)
+        s_magnetic *= inner
+        s_magnetic += kz
+        s_magnetic *= near_zero
+        inner *= near_zero
+        magnetic = np.multiply(inner, m, out=self._array("magnetic"))
+        electric = inner
+        electric *= 1 / m
+        s_electric = np.multiply(self.over, -1 / m**2, out=self._array("s electric"))
+        s_electric += electric
+        s_electric *= 2 * k * m
+        s_electric += s_magnetic
+        s_electric *= 1 / m**2
+        np.multiply(self.over, 1 - 1 / m**2, out=self.over)
+        electric += self.over
+        return self._both(electric, s_electric, magnetic, s_magnetic)
+
+    def full(self, index: complex, inner: NDArray[np.complex128]) -> tuple[Parts, Parts, Floats]:
+        """Complex algebra; `inner` is f at z = m x."""
+        product = np.multiply(inner, index, out=self.space.complex_array("product", *inner.shape))
+        magnetic, s_magnetic = self._array("magnetic"), self._array("s magnetic")
+        np.copyto(magnetic, product.real)
+        np.negative(product.imag, out=s_magnetic)
+        np.multiply(inner, 1 / index, out=product)
+        contrast = 1 - 1 / index**2
+        electric = np.multiply(self.over, contrast.real, out=self._array("electric"))
+        electric += product.real
+        s_electric = np.multiply(self.over, -contrast.imag, out=self._array("s electric"))
+        s_electric -= product.imag
+        return self._both(electric, s_electric, magnetic, s_magnetic)
+
+    def _both(
+        self, electric: Floats, s_electric: Floats, magnetic: Floats, s_magnetic: Floats
+    ) -> tuple[Parts, Parts, Floats]:
+        """Both coefficients, and what they absorb together."""
+        a = self._lossy("a", electric, s_electric)
+        b = self._lossy("b", magnetic, s_magnetic)
+        s_electric += s_magnetic
+        return a, b, s_electric
+
+    def _lossless(self, name: str, t: Floats) -> Parts:
+        """(t psi_n − psi_{n−1})/(t xi_n − xi_{n−1}) with xi = psi − i chi and real t: p/(p − iq). Overwrites t."""
+        root, psi_before, psi, chi_before, chi = self.outer
+        p = np.multiply(t, psi, out=self._array(f"{name} imaginary"))
+        p -= psi_before
+        q = np.multiply(t, chi, out=t)
+        q -= chi_before
+        size = np.multiply(p, p, out=self._array(f"{name} real"))
+        scale = np.multiply(q, q, out=self._array("u"))
+        scale += size
+        np.divide(root, scale, out=scale)
+        p *= q
+        p *= scale
+        size *= scale
+        return size, p
+
+    def _lossy(self, name: str, t: Floats, s: Floats) -> Parts:
+        """The same for t − is; s becomes Re − |·|² of it, and t is overwritten.
+
+        Because psi_{n−1} chi_n − psi_n chi_{n−1} = 1 it is (p² + s + s² psi² + i (pq + s² psi chi))/d with
+        d = p² + q² + 2s + s² (psi² + chi²), and s/d is absorbed.
+        """
+        root, psi_before, psi, chi_before, chi = self.outer
+        p = np.multiply(t, psi, out=self._array(f"{name} imaginary"))
+        p -= psi_before
+        q = np.multiply(t, chi, out=t)
+        q -= chi_before
+        v = np.multiply(s, psi, out=self._array("v"))
+        u = np.multiply(s, chi, out=self._array("u"))
+        real = np.multiply(p, p, out=self._array(f"{name} real"))
+        p *= q
+        q *= q
+        real += s
+        q += s
+        u_v = np.multiply(u, v, out=self._array("uv"))
+        p += u_v
+        v *= v
+        real += v
+        u *= u
+        q += u
+        q += real
+        np.divide(root, q, out=q)
+        real *= q
+        p *= q
+        s *= q
+        return real, p

@@ -8,17 +8,18 @@ compares the estimate with fine sums.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, field
 from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
 
-from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode
+from lasescatter.matter import SingleSize, SizeMode
 from lasescatter.optics import cosines, distributions
-from lasescatter.optics.angular import AngularTables
+from lasescatter.optics.distributions import SmoothShape
 from lasescatter.optics.matrix import SPLINE_ERROR, ScatteringMatrix, from_series
-from lasescatter.optics.mie import SphereSum, averaged, block_edges, block_sum, work
+from lasescatter.optics.mie import MieSpace, SphereSum, averaged, block_edges, sums, work
 from lasescatter.optics.partial_waves import SizeRangeError, check_index, check_size_parameter
 
 # Error estimate = margin × the last change, or a third of the change before where this is more. The margin is
@@ -31,6 +32,8 @@ _WIDEST_INTERVAL = 0.05
 _FIRST_HALVINGS = 2
 # The two ends of a distribution.
 _TAILS = 2
+
+NOTHING = SphereSum(0.0, 0.0, np.zeros((4, 1)))
 
 
 @dataclass(frozen=True)
@@ -80,7 +83,7 @@ class ParticleOptics:
 
 def particle_optics(
     modes: tuple[SizeMode, ...],
-    index: complex,
+    index: complex | tuple[complex, ...],
     wavelength: float,
     medium_index: float = 1.0,
     accuracy: Accuracy | None = None,
@@ -91,7 +94,7 @@ def particle_optics(
     ----------
     modes : tuple of SizeMode
         Weights are fractions by number and sum to 1.
-    index : complex
+    index : complex, or one for each mode
         Of the particles, n + ik.
     wavelength : float
         In vacuum. [m]
@@ -113,8 +116,12 @@ def particle_optics(
     if not (0 < wavelength < np.inf and 0 < medium_index < np.inf):
         raise SizeRangeError(f"wavelength {wavelength:.6g} m and medium index {medium_index:.6g} must be above 0")
     wavenumber = 2 * np.pi * medium_index / wavelength
-    relative = complex(index) / medium_index
-    check_index(relative)
+    indices = index if isinstance(index, tuple) else (index,) * len(modes)
+    relative = tuple(complex(one) / medium_index for one in indices)
+    if len(relative) != len(modes):
+        raise SizeRangeError(f"there are {len(relative)} refractive indices for {len(modes)} size modes")
+    for one in relative:
+        check_index(one)
     total = sum(mode.weight for mode in modes)
     if not modes or any(mode.weight < 0 for mode in modes) or abs(total - 1) > 1e-6:
         raise SizeRangeError(f"weights of the size modes sum to {total:.6g}; they are fractions at least 0, sum 1")
@@ -147,13 +154,11 @@ def particle_optics(
 class _Panel:
     """A stretch of ln r of one mode, its trapezoid sum, and how far that is thought to be off."""
 
-    shape: Lognormal | ModifiedGamma
-    weight: float
-    """Fraction by number of its mode."""
+    mode: int
     low: float
     high: float
     intervals: int
-    sum: SphereSum
+    sum: SphereSum = NOTHING
     cost: float = 0.0
     """Multiplications of the next halving."""
     change: NDArray[np.float64] = field(default_factory=lambda: np.zeros(1))
@@ -161,34 +166,51 @@ class _Panel:
     error: NDArray[np.float64] = field(default_factory=lambda: np.zeros(1))
     """Estimate of the same for the sum as it is."""
 
+    def all_nodes(self) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """Descending ln r and the steps that belong to them."""
+        u = np.linspace(self.high, self.low, self.intervals + 1)
+        step = np.full(u.size, (self.high - self.low) / self.intervals)
+        step[[0, -1]] /= 2
+        return u, step
+
+    def middles(self) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """The same for the nodes halfway between, as a rule of their own."""
+        u = np.linspace(self.high, self.low, 2 * self.intervals + 1)[1::2]
+        return u, np.full(u.size, (self.high - self.low) / self.intervals)
+
+
+Nodes = Callable[[_Panel], tuple[NDArray[np.float64], NDArray[np.float64]]]
+
 
 class _Average:
     """Sum over all modes, refined panel by panel."""
 
-    def __init__(self, modes: tuple[SizeMode, ...], index: complex, wavenumber: float, accuracy: Accuracy) -> None:
-        self._index, self._wavenumber, self._accuracy = index, wavenumber, accuracy
-        self._tables = AngularTables()
+    def __init__(
+        self, modes: tuple[SizeMode, ...], indices: tuple[complex, ...], wavenumber: float, accuracy: Accuracy
+    ) -> None:
+        self._modes, self._indices = modes, indices
+        self._wavenumber, self._accuracy = wavenumber, accuracy
+        self._space = MieSpace()
         self._done = 0.0
         self.nodes = 0
         self.error_f11 = self.error_extinction = 0.0
         self.panels: list[_Panel] = []
-        self._fixed = SphereSum(0.0, 0.0, np.zeros((4, 1)))
-        for mode in modes:
+        self._fixed = NOTHING
+        for number, (mode, index) in enumerate(zip(modes, indices, strict=True)):
             if isinstance(mode.shape, SingleSize):
                 x = wavenumber * mode.shape.radius
                 check_size_parameter(x, x)
-                self._fixed += averaged(index, np.array([x]), np.array([mode.weight]), self._tables)
+                self._fixed += averaged(index, np.array([x]), np.array([mode.weight]), self._space)
                 self.nodes += 1
             else:
-                self.panels += self._start(mode.shape, mode.weight)
+                self.panels += self._cut(number, mode.shape)
+        for panel, total in zip(self.panels, self._sums(self.panels, _Panel.all_nodes), strict=True):
+            panel.sum = total
 
     @property
     def total(self) -> SphereSum:
         """Sum over everything so far."""
-        result = self._fixed
-        for panel in self.panels:
-            result += panel.sum
-        return result
+        return sum((panel.sum for panel in self.panels), self._fixed)
 
     def refine(self) -> None:
         """Halve panels until the estimates meet the accuracy, or the next round would exceed the work bound.
@@ -219,43 +241,50 @@ class _Average:
                 return
             self._halve(chosen)
 
-    def _start(self, shape: Lognormal | ModifiedGamma, weight: float) -> list[_Panel]:
-        """The panels of a mode: its radii cut where the sums change their block."""
-        limits = distributions.log_radius_limits(shape, self._wavenumber, abs(self._index - 1), self._accuracy.tail)
+    def _cut(self, number: int, shape: SmoothShape) -> list[_Panel]:
+        """The panels of a mode, ascending: its radii cut where the series outgrow their tables, and at its corners."""
+        contrast = abs(self._indices[number] - 1)
+        limits = distributions.log_radius_limits(shape, self._wavenumber, contrast, self._accuracy.tail)
         for end in limits:
             x = self._wavenumber * float(np.exp(end))
             check_size_parameter(x, x, f" (radius {np.exp(end):.4g} m, which a distribution of sizes reaches)")
-        edges = np.log(block_edges() / self._wavenumber)
-        edges = np.array([limits[0], *edges[(edges > limits[0]) & (edges < limits[1])], limits[1]])
+        edges = np.concatenate((np.log(block_edges() / self._wavenumber), distributions.corners(shape)))
+        inside = np.unique(edges[(edges > limits[0]) & (edges < limits[1])])
         widest = min(_WIDEST_INTERVAL, (limits[1] - limits[0]) / _FEWEST_INTERVALS)
-        panels = []
-        for low, high in pairwise(edges.tolist()):
-            intervals = max(2, int(np.ceil((high - low) / widest)))
-            u = np.linspace(low, high, intervals + 1)
-            step = np.full(u.size, (high - low) / intervals)
-            step[[0, -1]] /= 2
-            panels.append(_Panel(shape, weight, low, high, intervals, self._sum(shape, u, weight * step)))
-        return panels
+        return [
+            _Panel(number, low, high, max(2, int(np.ceil((high - low) / widest))))
+            for low, high in pairwise([limits[0], *inside.tolist(), limits[1]])
+        ]
 
-    def _sum(
-        self, shape: Lognormal | ModifiedGamma, log_radius: NDArray[np.float64], step: NDArray[np.float64]
-    ) -> SphereSum:
-        """Sum over some radii of a distribution that all lie in one block."""
-        x = self._wavenumber * np.exp(log_radius)
-        self.nodes += x.size
-        self._done += work(x)
-        return block_sum(self._index, x, distributions.density(shape, log_radius) * step, self._tables)
+    def _sums(self, panels: list[_Panel], nodes: Nodes) -> list[SphereSum]:
+        """Sums over some nodes of each panel; modes of one index and all their sizes share the work."""
+        results: dict[int, SphereSum] = {}
+        for number, mode in enumerate(self._modes):
+            own = [panel for panel in reversed(panels) if panel.mode == number]
+            if not own:
+                continue
+            found = [nodes(panel) for panel in own]
+            log_radius, step = (np.concatenate([pair[i] for pair in found]) for i in (0, 1))
+            x = self._wavenumber * np.exp(log_radius)
+            weight = mode.weight * distributions.density(mode.shape, log_radius) * step
+            cuts = np.concatenate(((0,), np.cumsum([pair[0].size for pair in found]))).tolist()
+            self.nodes += x.size
+            work_of = np.add.reduceat(work(x), cuts[:-1])
+            self._done += float(work_of.sum())
+            for panel, spent, total in zip(
+                own, work_of.tolist(), sums(self._indices[number], x, weight, cuts, self._space), strict=True
+            ):
+                panel.cost = 2 * spent
+                results[id(panel)] = total
+        return [results[id(panel)] for panel in panels]
 
     def _halve(self, panels: list[_Panel]) -> None:
         """Halve the intervals of some panels and note what that changed."""
         total = self.total
         degree = total.matrix.shape[1] - 1
         s11, s12 = cosines.to_samples(total.matrix[:2], degree)
-        for panel in panels:
-            before = self._done
+        for panel, between in zip(panels, self._sums(panels, _Panel.middles), strict=True):
             width = (panel.high - panel.low) / panel.intervals
-            middle = np.linspace(panel.low, panel.high, 2 * panel.intervals + 1)[1::2]
-            between = self._sum(panel.shape, middle, np.full(middle.size, panel.weight * width))
             halved = (panel.sum + between).scaled(0.5)
             c11, c12 = cosines.to_samples(halved.matrix[:2] - panel.sum.matrix[:2], degree)
             common = (halved.scattering - panel.sum.scattering) / total.scattering
@@ -265,4 +294,3 @@ class _Average:
             panel.error = (_MARGIN_COARSE if coarse else _MARGIN_FINE) * np.maximum(change, panel.change / 3)
             panel.change, panel.sum = change, halved
             panel.intervals *= 2
-            panel.cost = 2 * (self._done - before)

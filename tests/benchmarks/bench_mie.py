@@ -21,7 +21,7 @@ from lasescatter.matter import Lognormal, ModifiedGamma, SizeMode, SizeShape
 from lasescatter.optics.angular import AngularTables
 from lasescatter.optics.distributions import density, log_radius_limits
 from lasescatter.optics.mie import averaged, sphere
-from lasescatter.optics.partial_waves import series_length
+from lasescatter.optics.recurrences import series_length
 from lasescatter.optics.sizes import particle_optics
 
 WAVELENGTH = 532e-9

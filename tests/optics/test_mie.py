@@ -2,17 +2,17 @@
 
 from __future__ import annotations
 
-from itertools import pairwise
-
 import miepython
 import numpy as np
 import pytest
 from scipy.special import spherical_jn, spherical_yn
 
 from lasescatter.optics import cosines
+from lasescatter.optics import partial_waves as waves_module
 from lasescatter.optics.angular import AngularTables
-from lasescatter.optics.mie import SizeRangeError, averaged, block_edges, block_sum, sphere
-from lasescatter.optics.partial_waves import partial_waves, series_length
+from lasescatter.optics.mie import MieSpace, SizeRangeError, averaged, block_edges, sphere
+from lasescatter.optics.partial_waves import partial_waves
+from lasescatter.optics.recurrences import series_length
 
 RNG = np.random.default_rng(20)
 
@@ -241,25 +241,56 @@ def test_closed_forms_of_the_cosine_series():
 def test_tables_that_are_too_large_to_keep_give_the_same():
     x = np.linspace(200.0, 220.0, 30)
     weight = np.ones(30)
-    kept = block_sum(1.33, x, weight, AngularTables())
-    pieces = block_sum(1.33, x, weight, AngularTables(kept_bytes=0))
-    assert abs(kept.matrix - pieces.matrix).max() < 1e-13 * abs(kept.matrix).max()
+    kept, pieces = MieSpace(), MieSpace()
+    pieces.tables = AngularTables(kept_bytes=0)
+    whole = averaged(1.33, x, weight, kept)
+    assert abs(whole.matrix - averaged(1.33, x, weight, pieces).matrix).max() < 1e-13 * abs(whole.matrix).max()
 
 
-def test_padding_small_spheres_with_large_ones_cannot_overflow():
-    """The smallest sphere of every block, padded to its longest series, keeps its coefficients."""
-    edges = np.concatenate(([1e-6], block_edges()))
-    assert edges[-2] < 20_000 < edges[-1]
-    for low, high in pairwise(edges):
-        pair = np.array([low, min(high * (1 - 1e-9), 20_000.0)])
-        for index in (1.33, 1.5 + 1j) if low < 500 else (1.33,):
-            alone = sphere(index, low).waves
-            own = alone.a.shape[0]
-            padded = partial_waves(index, pair, int(series_length(pair[1])))
-            assert np.isfinite([padded.a, padded.b, padded.absorbed]).all()
-            assert abs(padded.a[:own, 0] - alone.a[:, 0]).max() < 1e-11 * abs(alone.a).max()
-            assert abs(padded.b[:own, 0] - alone.b[:, 0]).max() < 1e-11 * abs(alone.a).max()
-            assert not padded.a[own:, 0].any()
+def test_a_space_that_was_used_before_changes_nothing():
+    """Larger and smaller sums, real and complex ones, in turn: nothing of the one is left in the next."""
+    space = MieSpace()
+    for index, x in (
+        (1.5 + 0.1j, np.linspace(1, 300, 900)),
+        (1.33 + 1e-8j, np.linspace(0.02, 9, 40)),
+        (1.33, np.linspace(50, 60, 7)),
+        (2 + 1j, np.linspace(1e-4, 0.5, 30)),
+        (1.33 + 1e-8j, np.linspace(20, 90, 2000)),
+    ):
+        weight = RNG.uniform(0.1, 2, x.size)
+        fresh, used = averaged(index, x, weight), averaged(index, x, weight, space)
+        assert (fresh.matrix == used.matrix).all()
+        assert fresh.absorption == used.absorption
+
+
+@pytest.mark.parametrize("index", [1.33 + 1e-8j, 1.5 + 2e-8j, 3.0 + 1e-8j, 1.05 + 5e-8j])
+def test_weak_absorption_to_first_order_is_enough(index, monkeypatch):
+    """Real algebra against the complex one, spheres with and without resonances."""
+    x = np.sort(RNG.uniform(0.02, 190, 400))[::-1]
+    weight = np.ones(400)
+    quick = averaged(index, x, weight)
+    monkeypatch.setattr(waves_module, "_WEAK_ABSORPTION", 0.0)
+    full = averaged(index, x, weight)
+    theta = np.linspace(0, np.pi, 2001)
+    of_quick, of_full = (np.cos(np.outer(theta, np.arange(s.matrix.shape[1]))) @ s.matrix.T for s in (quick, full))
+    assert (abs(of_quick - of_full) / of_full[:, :1]).max() < 1e-9
+    assert quick.scattering == pytest.approx(full.scattering, rel=1e-11, abs=0)
+    assert quick.absorption == pytest.approx(full.absorption, rel=1e-8, abs=0)
+
+
+def test_spheres_of_very_different_sizes_together_cannot_overflow():
+    """Down to the smallest beside the largest: every one keeps the coefficients it has alone."""
+    for index in (1.33, 1.5 + 1j):
+        x = np.array([3000.0, 1200.0, 300.0, 60.0, 11.0, 2.0, 1.0, 0.5, 1e-2, 1e-4, 1e-6])
+        together = partial_waves(index, x)
+        assert np.isfinite([together.total, together.difference]).all()
+        assert np.isfinite(together.absorbed).all()
+        for column, size in enumerate(x):
+            alone = partial_waves(index, np.array([size]))
+            own = len(alone.total)
+            assert abs(together.a[:own, column] - alone.a[:, 0]).max() < 1e-11 * abs(alone.a).max()
+            assert abs(together.b[:own, column] - alone.b[:, 0]).max() < 1e-11 * abs(alone.a).max()
+            assert abs(together.total[own:, column]).max(initial=0) < 1e-11 * abs(alone.a).max()
 
 
 def test_series_length_is_enough():
@@ -269,7 +300,7 @@ def test_series_length_is_enough():
         a, b = literal(1.5, x, orders + 3)
         tail = abs(np.concatenate((a[orders:], b[orders:]))).max()
         assert tail < 1e-12 * abs(a[0])
-        assert partial_waves(1.5, np.array([x]), orders).a.shape == (orders, 1)
+        assert partial_waves(1.5, np.array([x])).a.shape == (orders, 1)
 
 
 @pytest.mark.parametrize(
