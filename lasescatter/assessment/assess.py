@@ -41,9 +41,10 @@ from lasescatter.limits.compare import Received
 from lasescatter.limits.hazards import full_field, hazard_of
 from lasescatter.limits.judge import Judgement, judge
 from lasescatter.limits.verdict import worst
+from lasescatter.matter import MeasuredMatrix
 from lasescatter.medium import load as loads
 from lasescatter.medium.atmosphere import STANDARD_AIR
-from lasescatter.optics import growth
+from lasescatter.optics import growth, measured
 from lasescatter.problems import Problem, SiteError
 from lasescatter.scene import Limit, Line, Observer, Scene
 
@@ -282,8 +283,10 @@ def _assumptions(
     if scene.loads:
         found += [SIZE_AVERAGE, direct_light.NO_EXTINCTION]
     found.append(STANDARD_AIR if scene.air.model == "standard atmosphere" else UNIFORM_AIR)
-    if any(optics.grows(load) for load in scene.loads):
+    if any(optics.grows_by_kappa(load) for load in scene.loads):
         found.append(growth.ONE_FACTOR)
+    if any(isinstance(load.stand_in, MeasuredMatrix) for load in scene.loads):
+        found.append(measured.STRAIGHT_LINES)
     if any(component.extinction_trust > 1 for field in fields for component in field.mixture.components):
         found.append(DOUBTED_THICKNESS)
     if movements:

@@ -102,10 +102,15 @@ class SiteOptics:
                 ) from fault
         return self._floating[load]
 
-    def grows(self, load: Load) -> bool:
-        """Whether a load's particles have taken up water."""
+    def grows_by_kappa(self, load: Load) -> bool:
+        """Whether some of a load's particles have taken up water by kappa-Köhler theory."""
         floating = self.floating(load)
-        return floating is not None and max(floating.factors) > 1
+        if floating is None:
+            return False
+        growths = [material.growth for material in floating.materials]
+        return any(
+            g is not None and g.kappa is not None and f > 1 for g, f in zip(growths, floating.factors, strict=True)
+        )
 
     def of(self, load: Load, wavelength: float) -> ParticleOptics:
         """Optics of a load's particles.
