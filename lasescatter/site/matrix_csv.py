@@ -10,9 +10,15 @@ from lasescatter.site.columns import Column, Columns, TableError, ascending, exa
 
 WIDEST_GAP = 5.0
 """Widest step between angles. [deg]"""
+COARSEST = 0.05
+"""How far the mean of F11 may depend on how it runs between the rows. A forward peak that the rows do not follow
+takes light from the sides when F11 is normalised."""
 _ENDS_WITHIN = 1e-6
 """How far an end may lie from 0 or pi by rounding. [rad]"""
 _F11 = "above 0, and below 1e30"
+
+
+_GAUSS = ((0.5 - math.sqrt(0.15), 5 / 18), (0.5, 8 / 18), (0.5 + math.sqrt(0.15), 5 / 18))
 
 
 def _ratio(name: str) -> tuple[Column, ...]:
@@ -53,6 +59,7 @@ def measured_matrix(file: str, text: str) -> tuple[MeasuredMatrix, str]:
     angles = _angles(table)
     f11 = table.values["F11"]
     mean = mean_over_sphere(angles, f11)
+    _check_steps(table, angles, f11, mean)
     f12, f33, f34 = (_element(table, name, mean) for name in ("F12", "F33", "F34"))
     normal = tuple(value / mean for value in f11)
     have = [name for name, values in (("F12", f12), ("F33", f33), ("F34", f34)) if values is not None]
@@ -67,6 +74,24 @@ def mean_over_sphere(angles: tuple[float, ...], values: tuple[float, ...]) -> fl
     for (a, b), (p, q) in zip(pairwise(angles), pairwise(values), strict=True):
         parts += [p * math.cos(a), -q * math.cos(b), (q - p) / (b - a) * (math.sin(b) - math.sin(a))]
     return math.fsum(parts) / 2
+
+
+def _check_steps(table: Columns, angles: tuple[float, ...], f11: tuple[float, ...], mean: float) -> None:
+    """Refuse rows too far apart to be normalised: straight lines and exponentials between them must agree."""
+    found = []
+    for (a, b), (p, q) in zip(pairwise(angles), pairwise(f11), strict=True):
+        straight = mean_over_sphere((a, b), (p, q))
+        # Three-point Gauss: the exponential of an interval is smooth.
+        curved = sum(
+            weight * p ** (1 - share) * q**share * math.sin(a + share * (b - a)) for share, weight in _GAUSS
+        ) * (b - a) / 2  # fmt: skip
+        found.append(straight - curved)
+    off = math.fsum(found) / mean
+    if off > COARSEST:
+        worst = max(range(len(found)), key=lambda row: found[row])
+        raise TableError([(f"{table.place(worst + 1, 'F11')}: F11 falls so steeply above this row that its mean is "
+                           f"not known: it depends by {off * 100:.2g} % on how F11 runs between the rows",
+                           "Give angles closer together where F11 is steep, above all in the forward peak")])
 
 
 def _angles(table: Columns) -> tuple[float, ...]:

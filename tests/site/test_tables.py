@@ -87,7 +87,7 @@ def matrix_text(function, step=1.0, header="angle [deg],F11") -> str:
 def test_a_matrix_is_normalised_by_the_mean_of_the_straight_lines_between_its_angles():
     """Against adaptive quadrature, each straight piece by itself (scipy)."""
     forward = lambda theta: f"{5 + 4 * math.cos(theta) + 300 * math.exp(-theta / 0.05):.9g}"  # noqa: E731
-    matrix, told = measured_matrix("dust.csv", matrix_text(forward, 2.5))
+    matrix, told = measured_matrix("dust.csv", matrix_text(forward, 0.5))
     raw = [float(forward(angle)) for angle in matrix.angles]
     pieces = zip(matrix.angles[:-1], matrix.angles[1:], raw[:-1], raw[1:], strict=True)
     mean = sum(quad(lambda t, a=a, b=b, p=p, q=q: (p + (q - p) * (t - a) / (b - a)) * math.sin(t) / 2, a, b)[0]
@@ -96,6 +96,18 @@ def test_a_matrix_is_normalised_by_the_mean_of_the_straight_lines_between_its_an
     assert mean_over_sphere(matrix.angles, matrix.f11) == pytest.approx(1, rel=1e-13, abs=0)
     assert f"divided by {matrix.normalised_by:.9g}" in told and "without polarization" in told
     assert matrix.angles[0] == 0 and matrix.angles[-1] == math.pi and matrix.f12 is None
+
+
+@pytest.mark.parametrize(("step", "read"), [(5.0, False), (1.0, True), (0.25, True)])
+def test_a_forward_peak_that_the_rows_do_not_follow_is_refused(step, read):
+    """Henyey & Greenstein 1941 with g = 0.9, whose mean is 1: rows 5 degrees apart would make it too large."""
+    g = 0.9
+    text = matrix_text(lambda t: repr((1 - g * g) / (1 + g * g - 2 * g * math.cos(t)) ** 1.5), step)
+    if read:
+        assert measured_matrix("m.csv", text)[0].normalised_by == pytest.approx(1, rel=0.02 * step, abs=0)
+    else:
+        with pytest.raises(TableError, match=r'm\.csv, line 4, column "F11": F11 falls so steeply .* by 6\.3 %'):
+            measured_matrix("m.csv", text)
 
 
 def test_a_matrix_that_is_one_everywhere_has_mean_one():
