@@ -78,8 +78,9 @@ def draw_curves(curves: Sequence[Curve], title: str, hidden: int = 0) -> Figure:
         every = (place * len(angles) // 60, max(1, len(angles) // 9))
         look = {**_look(curve), "markevery": every}
         upper.plot(angles, np.where(f11 > 0, f11, np.nan), **look)
-        ratio = np.divide(-f12, f11, out=np.full_like(f11, np.nan), where=f11 > 0)
-        lower.plot(angles, ratio, **look)
+        if np.any(f12):
+            ratio = np.divide(-f12, f11, out=np.full_like(f11, np.nan), where=f11 > 0)
+            lower.plot(angles, ratio, **look)
     upper.set_yscale("log")
     floor, ceiling = upper.get_ylim()
     upper.set_ylim(10 ** math.floor(math.log10(floor)), 10 ** math.ceil(math.log10(ceiling)))

@@ -218,16 +218,22 @@ def _readings(load: Load, entries: list[ComponentSummary]) -> list[Any]:
     if not rows:
         return [paragraph(stated)]
     waves = list(dict.fromkeys(wave for row in rows for wave in row.cells if wave is not None))
-    story: list[Any] = [
-        paragraph(
-            f"<b>What instruments would read of this load.</b> {stated} The same load in other readings, for whatever "
-            "instrument is at hand: this load alone, air's share not included, carried to the wavelength over each "
-            "column through the load's own spectrum."
-        ),
+    from reportlab.platypus import KeepTogether
+
+    carried = (
+        "carried to the wavelength over each column through the load's own spectrum"
+        if load.stand_in is None
+        else "at the wavelength it was read at: without sizes it cannot be carried to another"
+    )
+    told = paragraph(
+        f"<b>What instruments would read of this load.</b> {stated} The same load in other readings, for whatever "
+        f"instrument is at hand: this load alone, air's share not included, {carried}."
+    )
+    first, *others = [
+        _reading_table(rows, waves[start : start + COLUMNS], start == 0)
+        for start in range(0, max(1, len(waves)), COLUMNS)
     ]
-    for first in range(0, max(1, len(waves)), COLUMNS):
-        story.append(_reading_table(rows, waves[first : first + COLUMNS], first == 0))
-    return story
+    return [KeepTogether([told, first]), *others]
 
 
 def _reading_table(rows: list[ReadingRow], waves: list[float], with_untied: bool) -> Any:

@@ -44,8 +44,8 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
     quality += [
         [
             words(entry.name, limit=NAME), wavelength(entry.wavelength),
-            "closed form" if entry.size_nodes is None else str(entry.size_nodes),
-            _relative(entry.error_f11), _relative(entry.error_extinction),
+            {None: "closed form", 0: "no sizes"}.get(entry.size_nodes, str(entry.size_nodes)),
+            _relative(entry.error_f11), "–" if entry.size_nodes == 0 else _relative(entry.error_extinction),
         ]
         for entry in assessment.components
     ]  # fmt: skip
@@ -56,7 +56,7 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
             "are the program's own estimates, relative to the value."
         ),
         *(
-            [paragraph("<b>Left out</b>, because no data reach it; nothing is below its limit then:")]
+            [paragraph("<b>Not complete</b>, because no data reach so far; nothing is below its limit then:")]
             + [paragraph(markup(gap, 600), "small item", bullet="•") for gap in assessment.gaps]
             if assessment.gaps
             else []
@@ -66,7 +66,8 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
         paragraph(
             "The curve, and the tables at the end of this section: F11/(4π) and F12/(4π) in 1/sr at the scattering "
             "angle theta, and their integrals over the angle from 0 to theta: B11, B12, and |B12| of the absolute "
-            "value of F12, which serves where the axis of polarization is unknown."
+            "value of F12, which serves where the axis of polarization is unknown. A component without polarization, "
+            "or whose F12 is not known, has no line in the lower panel."
         ),
         *([FigurePlace("phase", figure_size[0] * MM, figure_size[1] * MM)] if figure_size else []),
         *load_sections(assessment),

@@ -247,6 +247,16 @@ def test_drawn_values_are_those_of_the_kind() -> None:
         np.testing.assert_allclose(lower.lines[0].get_ydata(), expected, rtol=1e-12, atol=0)
 
 
+def test_an_unknown_f12_is_not_drawn_as_none() -> None:
+    entry = at(532e-9)
+    known = Curve("a", 0, 0, entry.angles, entry.phase, entry.phase_12)
+    with rc_context(RC):
+        figure = draw_curves([known, replace(known, label="b", phase_12=(0.0,) * len(entry.angles))], "t")
+    upper, lower, _ = figure.axes
+    # The axis itself is a line of the lower panel.
+    assert len(upper.lines) == 2 and len(lower.lines) == 2
+
+
 def test_curves_of_a_kind_differ_without_colour() -> None:
     entries = [at(wavelength * 1e-9) for wavelength in (405, 450, 532, 638, 905, 1064)]
     curves = [Curve(str(i), i % 4, i // 4, e.angles, e.phase, e.phase_12) for i, e in enumerate(entries)]

@@ -103,6 +103,15 @@ def test_size_is_asked_for_and_its_movement_is_printed(result: Assessment, text:
         assert joined(" ".join([*told, digits(movement.factor[place])])) in flat
 
 
+def test_a_stand_in_has_no_sizes_and_one_wavelength(result: Assessment) -> None:
+    load, entry = MORE_LOADS[0], result.components[1]
+    told = (LoadReading("extinction", 0.07, 650e-9),)
+    one = replace(entry, name=load.name, size_nodes=0, error_extinction=0.0, equivalents=told)
+    flat = printed(replace(result, scene=replace(result.scene, loads=(load,)), components=(one,), size_movements=()))
+    assert joined("stand-in 532 nm no sizes 4.2e-4 –") in flat
+    assert joined("at the wavelength it was read at: without sizes it cannot be carried to another") in flat
+
+
 def test_movement_of_many_observers_shows_those_that_move_most() -> None:
     made = many(20)
     flat = printed(replace(made, components=made.components[:1]))
