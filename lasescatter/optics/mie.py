@@ -7,7 +7,7 @@ Huffman, Absorption and Scattering of Light by Small Particles (1983), ch. 4.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 from itertools import pairwise
 from math import ceil
@@ -35,6 +35,7 @@ __all__ = [
     "SphereSum",
     "averaged",
     "block_edges",
+    "combined",
     "sphere",
     "sums",
     "work",
@@ -118,6 +119,14 @@ def sphere(index: complex, size_parameter: float) -> SphereOptics:
     )
 
 
+def combined(parts: Sequence[SphereSum]) -> SphereSum:
+    """The sum of sums."""
+    matrix = np.zeros((4, max((part.matrix.shape[1] for part in parts), default=1)))
+    for part in parts:
+        matrix[:, : part.matrix.shape[1]] += part.matrix
+    return SphereSum(sum(part.scattering for part in parts), sum(part.absorption for part in parts), matrix)
+
+
 class MieSpace:
     """What sums over spheres carry from call to call: tables and work arrays. Not for two threads."""
 
@@ -134,12 +143,6 @@ class SphereSum:
     absorption: float
     matrix: NDArray[np.float64]
     """Cosine series of S11, S12, S33, S34 (Bohren & Huffman eq. 4.77), shape (4, degree + 1)."""
-
-    def __add__(self, other: SphereSum) -> SphereSum:
-        short, long = sorted((self.matrix, other.matrix), key=lambda series: series.shape[1])
-        matrix = long.copy()
-        matrix[:, : short.shape[1]] += short
-        return SphereSum(self.scattering + other.scattering, self.absorption + other.absorption, matrix)
 
     def scaled(self, factor: float) -> SphereSum:
         return SphereSum(factor * self.scattering, factor * self.absorption, factor * self.matrix)
@@ -178,7 +181,8 @@ def averaged(
     check_size_parameter(float(size_parameter.min()), float(size_parameter.max()))
     order = np.argsort(-size_parameter)
     x, w = size_parameter[order], weight[order]
-    return sum(sums(index, x, w, _cuts(x), space or MieSpace()), SphereSum(0.0, 0.0, np.zeros((4, 1))))
+    (groups,) = sums(index, x, w[np.newaxis], _cuts(x), space or MieSpace())
+    return combined(groups)
 
 
 def _cuts(x: NDArray[np.float64]) -> list[int]:
@@ -201,36 +205,49 @@ def _cuts(x: NDArray[np.float64]) -> list[int]:
 def sums(
     index: complex,
     size_parameter: NDArray[np.float64],
-    weight: NDArray[np.float64],
+    weights: NDArray[np.float64],
     cuts: list[int],
     space: MieSpace,
-) -> list[SphereSum]:
-    """Sums over groups of spheres; unchecked.
+) -> list[list[SphereSum]]:
+    """Sums over groups of spheres, for each of a few sets of weights; unchecked.
 
     Parameters
     ----------
-    size_parameter, weight : (R,) arrays
-        Descending in size.
+    size_parameter : (R,) array
+        Descending.
+    weights : (W, R) array
     cuts : list of int
         Where the groups begin, and R.
+
+    Returns
+    -------
+    list
+        For each set of weights the sums of all groups.
     """
     lengths = series_length(size_parameter)
     rungs = [_LADDER[int(np.searchsorted(_LADDER, int(lengths[first])))] for first in cuts[:-1]]
-    samples = [np.zeros((4, 2 * rung + 1)) for rung in rungs]
-    absorbed = np.empty(size_parameter.size)
+    samples = [np.zeros((len(weights), 4, 2 * rung + 1)) for rung in rungs]
+    absorbed = np.empty((len(weights), size_parameter.size))
+    single = weights[0] if len(weights) == 1 else None
     for first, stop, parts in _batches(cuts, lengths):
-        waves = partial_waves(index, size_parameter[first:stop], weight[first:stop], space.work)
-        absorbed[first:stop] = waves.absorbed
+        here = slice(first, stop)
+        waves = partial_waves(index, size_parameter[here], None if single is None else single[here], space.work)
+        absorbed[:, here] = waves.absorbed if single is not None else weights[:, here] * waves.absorbed
         for group, begin, end in parts:
-            _add_samples(samples[group], waves, slice(begin - first, end - first), int(lengths[begin]), space)
-    totals = 2 * np.pi * np.add.reduceat(absorbed, cuts[:-1])
-    results = []
-    for values, absorption in zip(samples, totals.tolist(), strict=True):
-        series = cosines.from_samples(values)
-        if not (np.isfinite(absorption) and np.isfinite(series[0, 0])):
-            raise FloatingPointError(f"Mie sums of index {index} are not finite")
-        results.append(SphereSum(4 * np.pi * cosines.sphere_mean(series[0]), absorption, series))
-    return results
+            columns = slice(begin - first, end - first)
+            own = None if single is not None else weights[:, begin:end]
+            _add_samples(samples[group], waves, columns, int(lengths[begin]), own, space)
+    totals = 2 * np.pi * np.add.reduceat(absorbed, cuts[:-1], axis=1)
+    if not (np.isfinite(totals).all() and all(np.isfinite(values[:, 0]).all() for values in samples)):
+        raise FloatingPointError(f"Mie sums of index {index} are not finite")
+    series = [cosines.from_samples(values) for values in samples]
+    return [
+        [
+            SphereSum(4 * np.pi * cosines.sphere_mean(one[i, 0]), float(totals[i, group]), one[i])
+            for group, one in enumerate(series)
+        ]
+        for i in range(len(weights))
+    ]
 
 
 def _batches(cuts: list[int], lengths: NDArray[np.int64]) -> Iterator[tuple[int, int, list[tuple[int, int, int]]]]:
@@ -250,10 +267,15 @@ def _batches(cuts: list[int], lengths: NDArray[np.int64]) -> Iterator[tuple[int,
 
 
 def _add_samples(
-    samples: NDArray[np.float64], waves: PartialWaves, columns: slice, orders: int, space: MieSpace
+    samples: NDArray[np.float64],
+    waves: PartialWaves,
+    columns: slice,
+    orders: int,
+    weights: NDArray[np.float64] | None,
+    space: MieSpace,
 ) -> None:
-    """Add the weighted matrix of some spheres at theta_j = pi j/(2 rung)."""
-    rung = samples.shape[1] // 2
+    """Add the matrix of some spheres at theta_j = pi j/(2 rung); without weights these are in the waves."""
+    rung = samples.shape[-1] // 2
     total = waves.total[:orders].view(float)[:, 2 * columns.start : 2 * columns.stop]
     difference = waves.difference[:orders].view(float)[:, 2 * columns.start : 2 * columns.stop]
     height = max(_LEAST_HEIGHT, _CACHED // total.shape[1])
@@ -264,14 +286,25 @@ def _add_samples(
             right = space.work.array("right", *left.shape)
             np.matmul(plus[some, :orders], total, out=left)
             np.matmul(minus[some, :orders], difference, out=right)
-            samples[:, piece][:, some] += _matrix_rows(left, right)
+            samples[..., piece][..., some] += _matrix_rows(left, right, weights)
 
 
-def _matrix_rows(plus: NDArray[np.float64], minus: NDArray[np.float64]) -> NDArray[np.float64]:
-    """S11, S12, S33, S34 summed over spheres, (4, J), from S1 + S2 and S1 − S2, (J, 2R), real and imaginary in turn."""
-    pp, mm = np.vecdot(plus, plus), np.vecdot(minus, minus)
-    pm = np.vecdot(plus.view(complex), minus.view(complex))
-    return np.stack((pp + mm, -2 * pm.real, pp - mm, -2 * pm.imag)) / 4
+def _matrix_rows(
+    plus: NDArray[np.float64], minus: NDArray[np.float64], weights: NDArray[np.float64] | None
+) -> NDArray[np.float64]:
+    """S11, S12, S33, S34 summed over spheres, (W, 4, J), from S1 + S2 and S1 − S2, (J, 2R).
+
+    Real and imaginary parts stand in turn.
+    """
+    left, right = plus.view(complex), minus.view(complex)
+    if weights is None:
+        pp, mm = np.vecdot(plus, plus)[np.newaxis], np.vecdot(minus, minus)[np.newaxis]
+        pm = np.vecdot(left, right)[np.newaxis]
+    else:
+        pp = weights @ (left.real**2 + left.imag**2).T
+        mm = weights @ (right.real**2 + right.imag**2).T
+        pm = weights @ (left.conj() * right).T
+    return np.stack((pp + mm, -2 * pm.real, pp - mm, -2 * pm.imag), axis=1) / 4
 
 
 def work(size_parameter: NDArray[np.float64]) -> NDArray[np.float64]:

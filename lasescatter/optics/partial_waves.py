@@ -21,9 +21,10 @@ LARGEST_SIZE_PARAMETER = 2e4
 LARGEST_INDEX = 20.0
 SMALLEST_CONTRAST = 1e-6
 
-# Up to this k x the recurrence runs at the real part of m x and absorption enters by its derivative; what that
-# leaves out is of the order of the square.
+# Up to this k x, and this share of the real part of the index, the recurrence runs at the real part of m x and
+# absorption enters by its derivative; what that leaves out is of the order of the squares.
 _WEAK_ABSORPTION = 1e-5
+_WEAK_SHARE = 1e-6
 _TINY_SIZE_PARAMETER = 0.01
 
 
@@ -110,10 +111,7 @@ def partial_waves(
     groups = order_groups(x, lengths)
     psi_chi = psi_and_chi(x, groups, space)
     conductor = bool(np.isinf(index))
-    # For tiny spheres what the first order absorbs would cancel in the weak form.
-    weak = not conductor and (
-        index.imag == 0 or (index.imag * float(x[0]) <= _WEAK_ABSORPTION and float(x[-1]) >= _TINY_SIZE_PARAMETER)
-    )
+    weak = not conductor and (index.imag == 0 or _is_weak(index, float(x[0]), float(x[-1])))
     downward = None if conductor else Ratios((index.real if weak else index) * x, lengths, space)
     orders = int(lengths[0])
     total = space.complex_array("total", orders, x.size)
@@ -149,6 +147,12 @@ def partial_waves(
         total[beyond:, small:] = 0
         difference[beyond:, small:] = 0
     return PartialWaves(total, difference, absorbed * root)
+
+
+def _is_weak(index: complex, largest: float, smallest: float) -> bool:
+    """Whether absorption may be taken to first order. For tiny spheres what the lowest order absorbs would cancel."""
+    faint = index.imag <= _WEAK_SHARE * index.real and index.imag * largest <= _WEAK_ABSORPTION
+    return faint and smallest >= _TINY_SIZE_PARAMETER
 
 
 Parts = tuple[Floats, Floats]

@@ -19,17 +19,16 @@ from lasescatter.matter import SingleSize, SizeMode
 from lasescatter.optics import cosines, distributions
 from lasescatter.optics.distributions import SmoothShape
 from lasescatter.optics.matrix import SPLINE_ERROR, ScatteringMatrix, from_series
-from lasescatter.optics.mie import MieSpace, SphereSum, averaged, block_edges, sums, work
+from lasescatter.optics.mie import MieSpace, SphereSum, averaged, block_edges, combined, sums, work
 from lasescatter.optics.partial_waves import SizeRangeError, check_index, check_size_parameter
 
 # Error estimate = margin × the last change, or a third of the change before where this is more. The margin is
 # larger where steps in size parameter are so wide that all resonances of a panel may have been missed twice.
-_MARGIN_COARSE = 3.0
-_MARGIN_FINE = 2.0
+_MARGIN_COARSE = 1.5
+_MARGIN_FINE = 1.0
 _FINE_STEP = 0.02
 _FEWEST_INTERVALS = 16
 _WIDEST_INTERVAL = 0.05
-_FIRST_HALVINGS = 2
 # The two ends of a distribution.
 _TAILS = 2
 
@@ -87,6 +86,7 @@ def particle_optics(
     wavelength: float,
     medium_index: float = 1.0,
     accuracy: Accuracy | None = None,
+    space: MieSpace | None = None,
 ) -> ParticleOptics:
     """Optics of spheres with a distribution of sizes.
 
@@ -101,6 +101,8 @@ def particle_optics(
     medium_index : float
         Of what surrounds them.
     accuracy : Accuracy, optional
+    space : MieSpace, optional
+        Carried from call to call to save work.
 
     Returns
     -------
@@ -128,7 +130,7 @@ def particle_optics(
     for mode in modes:
         distributions.check_shape(mode.shape)
 
-    average = _Average(modes, relative, wavenumber, accuracy)
+    average = _Average(modes, relative, wavenumber, accuracy, space or MieSpace())
     average.refine()
     total_sum = average.total
     matrix, spline_error = from_series(total_sum.matrix)
@@ -166,17 +168,22 @@ class _Panel:
     error: NDArray[np.float64] = field(default_factory=lambda: np.zeros(1))
     """Estimate of the same for the sum as it is."""
 
-    def all_nodes(self) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-        """Descending ln r and the steps that belong to them."""
-        u = np.linspace(self.high, self.low, self.intervals + 1)
-        step = np.full(u.size, (self.high - self.low) / self.intervals)
-        step[[0, -1]] /= 2
-        return u, step
+    def first_nodes(self) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """Descending ln r of the trapezoid rule and of the nodes that its first two halvings add, and three sets of
+        steps: those of the rule, of the first middles and of the second ones, each a rule of its own."""
+        u = np.linspace(self.high, self.low, 4 * self.intervals + 1)
+        width = (self.high - self.low) / self.intervals
+        steps = np.zeros((3, u.size))
+        steps[0, ::4] = width
+        steps[0, [0, -1]] /= 2
+        steps[1, 2::4] = width
+        steps[2, 1::2] = width / 2
+        return u, steps
 
     def middles(self) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-        """The same for the nodes halfway between, as a rule of their own."""
+        """Descending ln r halfway between the nodes, and their steps as a rule of their own."""
         u = np.linspace(self.high, self.low, 2 * self.intervals + 1)[1::2]
-        return u, np.full(u.size, (self.high - self.low) / self.intervals)
+        return u, np.full((1, u.size), (self.high - self.low) / self.intervals)
 
 
 Nodes = Callable[[_Panel], tuple[NDArray[np.float64], NDArray[np.float64]]]
@@ -186,31 +193,41 @@ class _Average:
     """Sum over all modes, refined panel by panel."""
 
     def __init__(
-        self, modes: tuple[SizeMode, ...], indices: tuple[complex, ...], wavenumber: float, accuracy: Accuracy
+        self,
+        modes: tuple[SizeMode, ...],
+        indices: tuple[complex, ...],
+        wavenumber: float,
+        accuracy: Accuracy,
+        space: MieSpace,
     ) -> None:
         self._modes, self._indices = modes, indices
         self._wavenumber, self._accuracy = wavenumber, accuracy
-        self._space = MieSpace()
+        self._space = space
         self._done = 0.0
         self.nodes = 0
         self.error_f11 = self.error_extinction = 0.0
         self.panels: list[_Panel] = []
-        self._fixed = NOTHING
+        self._fixed: list[SphereSum] = []
+        self._smooth: dict[int, SmoothShape] = {}
         for number, (mode, index) in enumerate(zip(modes, indices, strict=True)):
             if isinstance(mode.shape, SingleSize):
                 x = wavenumber * mode.shape.radius
                 check_size_parameter(x, x)
-                self._fixed += averaged(index, np.array([x]), np.array([mode.weight]), self._space)
+                self._fixed.append(averaged(index, np.array([x]), np.array([mode.weight]), self._space))
                 self.nodes += 1
             else:
+                self._smooth[number] = mode.shape
                 self.panels += self._cut(number, mode.shape)
-        for panel, total in zip(self.panels, self._sums(self.panels, _Panel.all_nodes), strict=True):
+        first, *middles = self._sums(self.panels, _Panel.first_nodes) if self.panels else [[]]
+        for panel, total in zip(self.panels, first, strict=True):
             panel.sum = total
+        for between in middles:
+            self._halve(self.panels, between)
 
     @property
     def total(self) -> SphereSum:
         """Sum over everything so far."""
-        return sum((panel.sum for panel in self.panels), self._fixed)
+        return combined([*self._fixed, *(panel.sum for panel in self.panels)])
 
     def refine(self) -> None:
         """Halve panels until the estimates meet the accuracy, or the next round would exceed the work bound.
@@ -223,8 +240,6 @@ class _Average:
         allowed = np.full(2 * self.total.matrix.shape[1] + 1, self._accuracy.f11 - spline)
         allowed[-1] = self._accuracy.extinction
         allowed = (allowed - _TAILS * self._accuracy.tail) ** 2
-        for _ in range(_FIRST_HALVINGS):
-            self._halve(self.panels)
         chosen = self.panels
         while chosen:
             variance = np.sum([panel.error**2 for panel in self.panels], axis=0)
@@ -239,7 +254,7 @@ class _Average:
             chosen = [panel for panel, gain in zip(self.panels, gains, strict=True) if gain >= max(gains) / 4]
             if self._done + sum(panel.cost for panel in chosen) > self._accuracy.work:
                 return
-            self._halve(chosen)
+            self._halve(chosen, self._sums(chosen, _Panel.middles)[0])
 
     def _cut(self, number: int, shape: SmoothShape) -> list[_Panel]:
         """The panels of a mode, ascending: its radii cut where the series outgrow their tables, and at its corners."""
@@ -256,41 +271,45 @@ class _Average:
             for low, high in pairwise([limits[0], *inside.tolist(), limits[1]])
         ]
 
-    def _sums(self, panels: list[_Panel], nodes: Nodes) -> list[SphereSum]:
-        """Sums over some nodes of each panel; modes of one index and all their sizes share the work."""
-        results: dict[int, SphereSum] = {}
-        for number, mode in enumerate(self._modes):
+    def _sums(self, panels: list[_Panel], nodes: Nodes) -> list[list[SphereSum]]:
+        """Sums over some nodes of each panel, for each set of their steps; the panels of a mode share the work."""
+        results: list[dict[int, SphereSum]] = []
+        for number, shape in self._smooth.items():
             own = [panel for panel in reversed(panels) if panel.mode == number]
             if not own:
                 continue
             found = [nodes(panel) for panel in own]
-            log_radius, step = (np.concatenate([pair[i] for pair in found]) for i in (0, 1))
+            log_radius = np.concatenate([u for u, _ in found])
+            steps = np.concatenate([steps for _, steps in found], axis=1)
             x = self._wavenumber * np.exp(log_radius)
-            weight = mode.weight * distributions.density(mode.shape, log_radius) * step
-            cuts = np.concatenate(((0,), np.cumsum([pair[0].size for pair in found]))).tolist()
+            weights = self._modes[number].weight * distributions.density(shape, log_radius) * steps
+            cuts = np.concatenate(((0,), np.cumsum([u.size for u, _ in found]))).tolist()
             self.nodes += x.size
-            work_of = np.add.reduceat(work(x), cuts[:-1])
-            self._done += float(work_of.sum())
-            for panel, spent, total in zip(
-                own, work_of.tolist(), sums(self._indices[number], x, weight, cuts, self._space), strict=True
-            ):
-                panel.cost = 2 * spent
-                results[id(panel)] = total
-        return [results[id(panel)] for panel in panels]
+            spent = np.add.reduceat(work(x), cuts[:-1])
+            self._done += float(spent.sum())
+            for panel, cost in zip(own, spent.tolist(), strict=True):
+                panel.cost = 2 * cost if len(steps) == 1 else cost
+            for i, totals in enumerate(sums(self._indices[number], x, weights, cuts, self._space)):
+                if i == len(results):
+                    results.append({})
+                results[i].update((id(panel), total) for panel, total in zip(own, totals, strict=True))
+        return [[totals[id(panel)] for panel in panels] for totals in results]
 
-    def _halve(self, panels: list[_Panel]) -> None:
-        """Halve the intervals of some panels and note what that changed."""
+    def _halve(self, panels: list[_Panel], middles: list[SphereSum]) -> None:
+        """Halve the intervals of some panels, given the sums over the new nodes, and note what that changed."""
         total = self.total
         degree = total.matrix.shape[1] - 1
         s11, s12 = cosines.to_samples(total.matrix[:2], degree)
-        for panel, between in zip(panels, self._sums(panels, _Panel.middles), strict=True):
+        halved = [combined([panel.sum, between]).scaled(0.5) for panel, between in zip(panels, middles, strict=True)]
+        changes = np.zeros((len(panels), 2, degree + 1))
+        for change, panel, new in zip(changes, panels, halved, strict=True):
+            change[:, : new.matrix.shape[1]] = new.matrix[:2] - panel.sum.matrix[:2]
+        for (c11, c12), panel, new in zip(cosines.to_samples(changes, degree), panels, halved, strict=True):
             width = (panel.high - panel.low) / panel.intervals
-            halved = (panel.sum + between).scaled(0.5)
-            c11, c12 = cosines.to_samples(halved.matrix[:2] - panel.sum.matrix[:2], degree)
-            common = (halved.scattering - panel.sum.scattering) / total.scattering
-            extinction = (halved.extinction - panel.sum.extinction) / total.extinction
+            common = (new.scattering - panel.sum.scattering) / total.scattering
+            extinction = (new.extinction - panel.sum.extinction) / total.extinction
             change = np.abs(np.concatenate((c11 / s11 - common, (c12 - s12 * common) / s11, (extinction,))))
             coarse = self._wavenumber * np.exp(panel.high) * width / 2 > _FINE_STEP
             panel.error = (_MARGIN_COARSE if coarse else _MARGIN_FINE) * np.maximum(change, panel.change / 3)
-            panel.change, panel.sum = change, halved
+            panel.change, panel.sum = change, new
             panel.intervals *= 2

@@ -6,11 +6,12 @@ import numpy as np
 import pytest
 from published.printed import printed
 from scipy import stats
+from scipy.integrate import quad
 
-from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize
+from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeTable
 from lasescatter.optics import cosines
-from lasescatter.optics.distributions import check_shape, density, log_radius_limits, mean_power
-from lasescatter.optics.mie import SizeRangeError, averaged
+from lasescatter.optics.distributions import check_shape, corners, density, log_radius_limits, mean_power
+from lasescatter.optics.mie import SizeRangeError, averaged, combined
 
 SHAPES = [
     Lognormal(0.3e-6, 1.05),
@@ -64,6 +65,42 @@ def test_deirmendjian_effective_radii(shape, expected):
     assert mean_power(shape, 3) / mean_power(shape, 2) == printed(expected)
 
 
+@pytest.mark.parametrize("power", [0, 1, 2, 3, 6])
+@pytest.mark.parametrize(
+    "shape",
+    [
+        Lognormal(0.2e-6, 1.8, 0.1e-6, 0.5e-6),
+        Lognormal(0.2e-6, 2.2, None, 0.3e-6),
+        Lognormal(0.2e-6, 1.5, 0.25e-6, None),
+        SizeTable((0.1e-6, 0.15e-6, 0.3e-6, 0.9e-6), (0.0, 1.0, 0.8, 0.1)),
+    ],
+    ids=str,
+)
+def test_moments_of_cut_and_tabulated_sizes_against_quadrature(shape, power):
+    low, high = log_radius_limits(shape, 1e7, 0.5, 1e-12)
+    if isinstance(shape, Lognormal):
+        low = np.log(shape.smallest) if shape.smallest else low - 5
+        high = np.log(shape.largest) if shape.largest else high + 1
+    corners_inside = [c for c in corners(shape) if low < c < high]
+    found, _ = quad(lambda u: float(np.exp(power * u) * density(shape, np.array([u]))[0]) * 1e6**power, low, high,
+                    points=corners_inside or None, epsabs=0, epsrel=1e-10, limit=200)  # fmt: skip
+    assert mean_power(shape, power) * 1e6**power == pytest.approx(found, rel=1e-8, abs=0)
+
+
+@pytest.mark.parametrize(
+    ("shape", "words"),
+    [
+        (Lognormal(1e-6, 1.5, 2e-6, 1e-6), "smallest radius 2e-06"),
+        (SizeTable((1e-6,), (1.0,)), "number of rows 1"),
+        (SizeTable((1e-6, 2e-6), (0.0, 0.0)), "number of rows 2"),
+        (SizeTable((2e-6, 1e-6), (1.0, 1.0)), "step of the radii -1e-06"),
+    ],
+)
+def test_bad_cuts_and_tables_are_refused_by_name(shape, words):
+    with pytest.raises(SizeRangeError, match=words):
+        check_shape(shape)
+
+
 def test_single_size():
     assert mean_power(SingleSize(2e-6), 3) == pytest.approx(8e-18, rel=1e-12, abs=0)
 
@@ -87,7 +124,7 @@ def test_cut_tails_are_as_small_as_promised(shape, index, wavelength):
         return cosines.to_samples(part.matrix[0], degree)
 
     below, above = summed(lowest, low), summed(high, highest)
-    whole = below + summed(low, high) + above
+    whole = combined([below, summed(low, high), above])
     for part in (below, above):
         assert (intensity(part) / intensity(whole)).max() < 1.1 * tail
         assert part.extinction < 1.1 * tail * whole.extinction

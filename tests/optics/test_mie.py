@@ -10,7 +10,7 @@ from scipy.special import spherical_jn, spherical_yn
 from lasescatter.optics import cosines
 from lasescatter.optics import partial_waves as waves_module
 from lasescatter.optics.angular import AngularTables
-from lasescatter.optics.mie import MieSpace, SizeRangeError, averaged, block_edges, sphere
+from lasescatter.optics.mie import MieSpace, SizeRangeError, averaged, block_edges, combined, sphere
 from lasescatter.optics.partial_waves import partial_waves
 from lasescatter.optics.recurrences import series_length
 
@@ -21,7 +21,7 @@ def random_spheres(count, smallest, largest):
     """Index and size parameter: glass-like to metal-like, none to strong absorption."""
     for _ in range(count):
         absorption = RNG.choice([0.0, 10 ** RNG.uniform(-9, 0.7)])
-        yield complex(RNG.uniform(0.2, 4.0), absorption), 10 ** RNG.uniform(np.log10(smallest), np.log10(largest))
+        yield complex(RNG.uniform(0.2, 5.0), absorption), 10 ** RNG.uniform(np.log10(smallest), np.log10(largest))
 
 
 def literal(index, x, orders):
@@ -37,9 +37,25 @@ def literal(index, x, orders):
     return a, b
 
 
+def test_random_spheres_against_bessel_functions():
+    """Any index but that of the medium, where the direct formula cancels; the worst case is printed."""
+    worst = (0.0,)
+    for index, x in random_spheres(300, 0.3, 12):
+        if abs(index - 1) < 0.1:
+            continue
+        orders = int(series_length(x))
+        a, b = literal(index, x, orders)
+        found = sphere(index, x).waves
+        off = max(abs(found.a[:, 0] - a).max(), abs(found.b[:, 0] - b).max()) / max(abs(a).max(), abs(b).max())
+        if off > worst[0]:
+            worst = (float(off), index, x)
+    print("worst case against Bessel functions:", worst)
+    assert worst[0] < 1e-11
+
+
 def test_efficiencies_against_miepython():
     worst = {}
-    for index, x in random_spheres(150, 0.2, 500):
+    for index, x in random_spheres(400, 1, 1500):
         found, reference = sphere(index, x), miepython.efficiencies_mx(index.conjugate(), x)
         errors = {
             "extinction": abs(found.q_ext / reference[0] - 1),
@@ -219,9 +235,7 @@ def test_splits_of_the_radii_add_up():
         [[0], np.arange(1, 200)],
         [np.arange(0, 200, 2), np.arange(1, 200, 2)],
     ):
-        total = averaged(1.4 + 1e-5j, x[parts[0]], weight[parts[0]])
-        for part in parts[1:]:
-            total += averaged(1.4 + 1e-5j, x[part], weight[part])
+        total = combined([averaged(1.4 + 1e-5j, x[part], weight[part]) for part in parts])
         assert total.scattering == pytest.approx(whole.scattering, rel=1e-12, abs=0)
         assert total.absorption == pytest.approx(whole.absorption, rel=1e-12, abs=0)
         assert abs(total.matrix - whole.matrix).max() < 1e-12 * abs(whole.matrix).max()
