@@ -123,15 +123,26 @@ def _rows(
                 tau_sight=float(tau_sight[i]),
                 hand=float(hand[i]),
                 program=float(program[i]),
-                remark=_remark(float(hand[i]), float(program[i]), float(bare[i]), float(tau_beam[i] + tau_sight[i])),
+                remark=_remark(
+                    float(hand[i]),
+                    float(program[i]),
+                    float(bare[i]),
+                    float(tau_beam[i] + tau_sight[i]),
+                    component.profile.steepness() > 0,
+                ),
             )
         )
     return rows
 
 
-def _remark(hand: float, program: float, bare: float, tau: float) -> str:
+def _remark(hand: float, program: float, bare: float, tau: float, thins: bool) -> str:
     if program <= 0 or bare <= 0 or abs(hand / program - 1) <= AGREES_WITHIN:
         return ""
+    if thins:
+        return (
+            f"density changes along the leg: its elements send {program / bare:.4g} of what they would at the middle "
+            f"element's density without extinction; the transmittance there is {math.exp(-tau):.4g}"
+        )
     return (
         f"extinction changes along the leg: its mean transmittance is {program / bare:.4g}, "
         f"at the middle element {math.exp(-tau):.4g}"

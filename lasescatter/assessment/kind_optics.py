@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass, field
 from itertools import pairwise
 
 import numpy as np
 
 from lasescatter.assessment.components import SiteOptics
-from lasescatter.assessment.size_movement import scaled
+from lasescatter.assessment.size_movement import COARSE, scaled
 from lasescatter.assessment.summaries import CURVE_ANGLES, readings_of
 from lasescatter.matter import Index, IndexTable, Kind, Trust
 from lasescatter.optics.growth import Floating
@@ -140,9 +141,15 @@ def _unconfirmed(table: IndexTable) -> list[tuple[float, float]]:
 
 
 def kind_optics(
-    kind: Kind, wavelengths: tuple[float, ...], readings: tuple[LoadReading, ...] = (), air: Air | None = None
+    kind: Kind,
+    wavelengths: tuple[float, ...],
+    readings: tuple[LoadReading, ...] = (),
+    air: Air | None = None,
+    progress: Callable[[str], None] = lambda step: None,
 ) -> KindOptics:
     """A kind at vacuum wavelengths [m]; the same optics as in an assessment of a site with that air.
+
+    Its other sizes are averaged more coarsely: within 1e-2 of F11 at every angle.
 
     Raises
     ------
@@ -151,14 +158,20 @@ def kind_optics(
     """
     one = _load(kind, LoadReading("number", 1.0))
     loads = tuple(_load(kind, reading) for reading in readings)
-    optics = SiteOptics(_scene(wavelengths, loads, air or Air()))
+    scene = _scene(wavelengths, loads, air or Air())
+    optics, coarse = SiteOptics(scene), SiteOptics(scene, COARSE)
     floating = optics.floating(one)
     assert floating is not None  # a kind has sizes
+    found = []
+    for wavelength in wavelengths:
+        progress(f"{kind.name} at {wavelength * 1e9:g} nm")
+        found.append(_at(optics, coarse, one, floating, wavelength))
+    progress("loads")
     return KindOptics(
         kind=kind,
-        air=optics.scene.air,
+        air=scene.air,
         growth_factor=max(floating.factors, default=1.0),
-        wavelengths=tuple(_at(optics, one, floating, wavelength) for wavelength in wavelengths),
+        wavelengths=tuple(found),
         loads=tuple(_stated(optics, load) for load in loads),
     )
 
@@ -180,7 +193,7 @@ def _scene(wavelengths: tuple[float, ...], loads: tuple[Load, ...], air: Air) ->
     return Scene("", "", "", LengthUnit("m", 1.0), (), air, (beam,), loads, (), ())
 
 
-def _at(optics: SiteOptics, load: Load, floating: Floating, wavelength: float) -> KindAtWavelength:
+def _at(optics: SiteOptics, coarse: SiteOptics, load: Load, floating: Floating, wavelength: float) -> KindAtWavelength:
     try:
         usual = optics.of(load, wavelength)
     except IndexRangeError as fault:
@@ -191,23 +204,24 @@ def _at(optics: SiteOptics, load: Load, floating: Floating, wavelength: float) -
         gap="",
         trust=optics.trust(load, wavelength),
         usual=_values(floating, usual),
-        sizes=_over_sizes(optics, load, wavelength),
+        sizes=_over_sizes(coarse, load, wavelength, usual),
         angles=tuple(CURVE_ANGLES.tolist()),
         phase=tuple((f11 / (4 * math.pi)).tolist()),
         phase_12=tuple((f12 / (4 * math.pi)).tolist()),
     )
 
 
-def _over_sizes(optics: SiteOptics, load: Load, wavelength: float) -> tuple[SizeValues, ...]:
+def _over_sizes(coarse: SiteOptics, load: Load, wavelength: float, usual: ParticleOptics) -> tuple[SizeValues, ...]:
     span = load.size_span
     if span is None:
         return ()
     found = []
     for size in dict.fromkeys((span.low, span.usual, span.high)):
-        moved = scaled(load, size / span.usual)
-        floating = optics.floating(moved)
+        moved = load if size == span.usual else scaled(load, size / span.usual)
+        floating = coarse.floating(moved)
         assert floating is not None  # it has sizes
-        found.append(SizeValues(size, _values(floating, optics.of(moved, wavelength))))
+        optics = usual if moved is load else coarse.of(moved, wavelength)
+        found.append(SizeValues(size, _values(floating, optics)))
     return tuple(found)
 
 

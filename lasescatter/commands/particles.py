@@ -47,6 +47,7 @@ def show_kind(
 
     from lasescatter.assessment.kind_optics import kind_optics
     from lasescatter.commands.stated_load import load_reading
+    from lasescatter.commands.steps import Steps
     from lasescatter.report.kind_json import kind_in_full
     from lasescatter.report.kind_text import print_kind
     from lasescatter.scene import Air
@@ -57,8 +58,10 @@ def show_kind(
     kind = _named(read_catalogue(rules), name)
     grows = any((mode.material or kind.material).growth is not None for mode in kind.modes)
     readings = tuple(load_reading(text, waves[0] if len(waves) == 1 else None, grows) for text in loads)
+    air = Air(relative_humidity=_humidity(humidity))
     try:
-        found = kind_optics(kind, waves, readings, Air(relative_humidity=_humidity(humidity)))
+        with Steps(Console(stderr=True, highlight=False)) as steps:
+            found = kind_optics(kind, waves, readings, air, steps.begin)
     except SiteError as fault:
         raise _renamed(fault, "air.relative_humidity", "--humidity") from fault
     # The file first: where it cannot be written nothing is printed either.

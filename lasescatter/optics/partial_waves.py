@@ -24,7 +24,7 @@ SMALLEST_CONTRAST = 1e-6
 # Up to this k x, and this share of the real part of the index, the recurrence runs at the real part of m x and
 # absorption enters by its derivative; what that leaves out is of the order of the squares.
 _WEAK_ABSORPTION = 1e-5
-_WEAK_SHARE = 1e-6
+_WEAK_SHARE = 1e-7
 _TINY_SIZE_PARAMETER = 0.01
 
 

@@ -64,6 +64,7 @@ def test_every_radius_moves_with_the_size() -> None:
         (alone,) = kind_optics(kind(size.size / 2, 1.5 + 0j), (WAVELENGTH,)).wavelengths
         assert alone.usual is not None
         assert size.values.extinction == pytest.approx(alone.usual.extinction, rel=1e-9, abs=0)
+        assert size.values.phase == pytest.approx(alone.usual.phase, rel=1e-2, abs=0)
         assert size.values.effective_radius == pytest.approx(size.size / 2, rel=1e-9, abs=0)
 
 

@@ -270,3 +270,22 @@ def test_record_of_every_kind_of_load_is_finite_and_reasoned():
     assert salt["growth_factor"] > 1 and salt["equivalents"]["dry_mass_kg_m3"] == pytest.approx(1e-6, rel=1e-12)
     assert {reading["kind"] for reading in salt["equivalents"]["readings"]} >= {"mass", "number", "visual_range"}
     assert [a for a, b in pairwise(sorted(c["name"] for c in back["particles"])) if a == b] == []
+
+
+def test_hand_check_in_air_that_thins_agrees_or_says_why():
+    up = line(name="up", key="up", divergence=1e-4)
+    air = Air(288.15, 101_325.0, 0.0, "standard atmosphere", 0.0)
+    agreed = set()
+    for top, place in ((500.0, (40.0, 0.0, 0.0)), (30_000.0, (9_000.0, 0.0, 0.0))):
+        path = beam((0.0, 0.0, 0.0), (0.0, 0.0, top), lines=(up,), name="up", key="up")
+        (row,) = only(bay(beams=(path,), loads=(), observers=(observer(position=place),), air=air)).hand_checks
+        agrees = abs(row.hand / row.program - 1) <= 0.05
+        assert agrees == (row.remark == "")
+        assert agrees or row.remark.startswith("density")
+        agreed.add(agrees)
+    assert agreed == {True, False}
+
+
+def test_air_that_cannot_be_names_its_key():
+    with pytest.raises(SiteError, match=r"air: .*vapour"):
+        assess(bay(air=Air(372.0, 50_000.0, 1.0)))
