@@ -22,7 +22,7 @@ _DECADES = 120.0
 # Orders that are taken together.
 _FEWEST_TOGETHER, _MOST_TOGETHER = 8, 64
 # Elements that one step handles, so that its operands stay in the second-level cache.
-_CACHED = 12_000
+_CACHED = 18_000
 # Of chi, as a power of e: its square must stay finite.
 _MOST_GROWTH = 300.0
 # Where a downward recurrence starts: |z| + 7.4 |z|^(1/3), or the series length, and 8 more. By then the square of the

@@ -142,29 +142,30 @@ def test_opac_water_soluble_component():
     assert eighty.real == pytest.approx(1.3985, rel=0, abs=5e-5)
 
 
-def test_the_factor_of_a_mode_is_that_of_its_mass_median():
+def test_the_factor_of_a_mode_is_that_of_its_large_particles():
+    """Median weighted by r⁶."""
     shape = Lognormal(0.05e-6, 1.7)
-    median = 2 * 0.05e-6 * math.exp(3 * math.log(1.7) ** 2)
+    median = 2 * 0.05e-6 * math.exp(6 * math.log(1.7) ** 2)
     expected = growth_factor(median, 0.3, 0.9, 298.15)
     assert float_one(shape, grows(0.3), 0.9).factors[0] == pytest.approx(expected, rel=1e-12, abs=0)
 
 
 @pytest.mark.parametrize(("smallest", "largest"), [(None, 0.2e-6), (0.1e-6, None), (0.02e-6, 0.4e-6)])
-def test_the_mass_median_of_a_cut_mode(smallest, largest):
-    """Against the median of a fine sum of r³ between the cuts."""
+def test_the_typical_size_of_a_cut_mode(smallest, largest):
+    """Against the median of a fine sum of r⁶ between the cuts."""
     u = np.linspace(math.log(smallest or 1e-10), math.log(largest or 1e-3), 400_001)
-    mass = np.exp(3 * u - 0.5 * ((u - math.log(0.05e-6)) / math.log(1.7)) ** 2)
+    mass = np.exp(6 * u - 0.5 * ((u - math.log(0.05e-6)) / math.log(1.7)) ** 2)
     running = np.cumsum(mass)
     median = 2 * math.exp(u[np.searchsorted(running, running[-1] / 2)])
     (factor,) = float_one(Lognormal(0.05e-6, 1.7, smallest, largest), grows(0.3), 0.9).factors
     assert factor == pytest.approx(growth_factor(median, 0.3, 0.9, 298.15), rel=1e-6, abs=0)
 
 
-def test_other_shapes_take_the_diameter_of_mean_volume():
+def test_other_shapes_take_the_volume_weighted_mean_volume():
     expected = growth_factor(0.2e-6, 0.3, 0.9, 298.15)
     assert float_one(SingleSize(0.1e-6), grows(0.3), 0.9).factors[0] == pytest.approx(expected, rel=1e-12, abs=0)
-    # Alpha 2, gamma 1: <r³> = (5!/2!)(mode/2)³ = 60/8 mode³.
-    expected = growth_factor(2 * 7.5 ** (1 / 3) * 0.1e-6, 0.3, 0.9, 298.15)
+    # Alpha 2, gamma 1: <r⁶>/<r³> = (8!/5!)(mode/2)³ = 336/8 mode³.
+    expected = growth_factor(2 * 42 ** (1 / 3) * 0.1e-6, 0.3, 0.9, 298.15)
     found = float_one(ModifiedGamma(0.1e-6, 2, 1), grows(0.3), 0.9).factors[0]
     assert found == pytest.approx(expected, rel=1e-12, abs=0)
 
@@ -242,29 +243,43 @@ def test_a_mode_without_material_is_refused():
 
 
 @pytest.mark.parametrize(
-    ("mass_median", "relative_humidity", "lowest", "highest"),
-    [(0.2e-6, 0.8, 0.985, 1.015), (0.2e-6, 0.95, 0.94, 1.06), (0.2e-6, 0.99, 0.83, 1.17), (0.1e-6, 0.8, 0.95, 1.0),
-     (0.1e-6, 0.95, 0.85, 1.0), (0.1e-6, 0.99, 0.56, 1.0)],
-)  # fmt: skip
-def test_one_factor_for_a_mode_beside_growth_size_by_size(mass_median, relative_humidity, lowest, highest):
-    """The stated size of the assumption, at the worst of the modes it was taken from: light to 5–175° at 532 nm."""
-    width = math.log(2.2)
-    median = mass_median / 2 * math.exp(-3 * width**2)
+    ("relative_humidity", "high", "off"), [(0.8, 1.04, 0.01), (0.95, 1.17, 0.05), (0.99, 1.65, 0.13)]
+)
+@pytest.mark.parametrize("kappa", [0.1, 0.61])
+@pytest.mark.parametrize("sd", [1.4, 2.2])
+def test_one_factor_for_a_mode_beside_growth_size_by_size(sd, kappa, relative_humidity, high, off):
+    """The stated size of the assumption: light to 5–175° at 532 nm, given by number and by extinction."""
+    width = math.log(sd)
+    median = 0.1e-6 / 2 * math.exp(-3 * width**2)
     u = math.log(median) + width * np.linspace(-1.3, 5.7, 160)
     number = np.exp(-0.5 * ((u - math.log(median)) / width) ** 2)
     cosines = np.cos(np.radians([5, 30, 60, 90, 120, 150, 175]))
 
     def light(factors):
-        total = np.zeros(len(cosines))
+        total, extinction = np.zeros(len(cosines)), 0.0
         for radius, weight, factor in zip(np.exp(u), number, factors, strict=True):
             index = volume_mixed(1.53 + 0.005j, 1.333 + 0j, factor**-3).conjugate()
             x = 2 * math.pi * radius * factor / 532e-9
-            per_steradian = miepython.i_unpolarized(index, x, cosines, norm="qsca")
-            total += weight * (radius * factor) ** 2 * per_steradian
-        return total
+            area = weight * (radius * factor) ** 2
+            total += area * miepython.i_unpolarized(index, x, cosines, norm="qsca")
+            extinction += area * miepython.efficiencies_mx(index, x)[0]
+        return total, extinction
 
-    one = float_one(Lognormal(median, 2.2), grows(0.1), relative_humidity).factors * len(u)
-    each = [growth_factor(2 * radius, 0.1, relative_humidity, 298.15) for radius in np.exp(u)]
-    ratio = light(one) / light(each)
-    assert lowest < ratio.min() and ratio.max() < highest
-    assert ratio.min() < 1 - 0.4 * (1 - lowest)  # the stated size is not an empty phrase
+    one, each = (
+        light(
+            as_they_float((SizeMode(Lognormal(median, sd)),), grows(kappa), relative_humidity, 298.15).factors * len(u)
+        ),
+        light([growth_factor(2 * radius, kappa, relative_humidity, 298.15) for radius in np.exp(u)]),
+    )
+    by_number = one[0] / each[0]
+    by_extinction = by_number * each[1] / one[1]
+    assert by_number.min() > 0.99 and by_number.max() < high
+    assert abs(by_extinction - 1).max() < off
+
+
+def test_the_stated_size_of_one_factor_is_no_empty_phrase():
+    """Growth at the largest particles is well above that at the mass median."""
+    width = math.log(2.2)
+    median = 0.05e-6 * math.exp(-3 * width**2)
+    (factor,) = float_one(Lognormal(median, 2.2), grows(0.1), 0.99).factors
+    assert factor > 1.15 * growth_factor(0.1e-6, 0.1, 0.99, 298.15)
