@@ -67,12 +67,11 @@ def test_above_stands_whatever_the_factor():
 def test_each_load_has_its_own_factor():
     first, second = haze(name="first", key="1"), haze(name="second", key="2", reading=LoadReading("number", 1e9))
     both = only(bay(loads=(replace(first, trust=weak(1.5)), replace(second, trust=weak(5.0)))))
-    one, other = only(bay(loads=(replace(first, trust=weak(1.5)), second))), only(
-        bay(loads=(first, replace(second, trust=weak(5.0))))
+    one, other = (
+        only(bay(loads=(replace(first, trust=weak(1.5)), second))),
+        only(bay(loads=(first, replace(second, trust=weak(5.0))))),
     )
-    for limit_both, limit_one, limit_other in zip(
-        both.comparisons, one.comparisons, other.comparisons, strict=True
-    ):
+    for limit_both, limit_one, limit_other in zip(both.comparisons, one.comparisons, other.comparisons, strict=True):
         added, alone, apart = (dict(c.allowances) for c in (limit_both, limit_one, limit_other))
         assert added['trust in "first" (weak, ×1.5)'] == pytest.approx(alone['trust in "first" (weak, ×1.5)'], rel=1e-9)
         assert added['trust in "second" (weak, ×5)'] == pytest.approx(apart['trust in "second" (weak, ×5)'], rel=1e-9)

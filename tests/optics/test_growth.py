@@ -243,7 +243,7 @@ def test_a_mode_without_material_is_refused():
 
 
 @pytest.mark.parametrize(
-    ("relative_humidity", "high", "off"), [(0.8, 1.04, 0.01), (0.95, 1.17, 0.05), (0.99, 1.65, 0.13)]
+    ("relative_humidity", "high", "off"), [(0.8, 1.04, 0.015), (0.95, 1.17, 0.05), (0.99, 1.65, 0.13)]
 )
 @pytest.mark.parametrize("kappa", [0.1, 0.61])
 @pytest.mark.parametrize("sd", [1.4, 2.2])
