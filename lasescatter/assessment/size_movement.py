@@ -25,8 +25,9 @@ USUAL_SIZE = Assumption(
     name="Particles of a kind whose size is uncertain are of its usual size",
     direction="either",
     size="by the movement printed for each such load: five sizes over its range. The upper bounds carry the largest, "
-    "between sizes by a parabola: that is low by 10 % at most, for nearly equal sizes",
-    source="the catalogue's range of sizes",
+    "between sizes by a parabola; for ranges of a factor 12 that is low by up to 7 % at a geometric standard "
+    "deviation of 1.6, by up to 22 % at 1.3",
+    source="the catalogue's range of sizes; comparison with 33 sizes at 450 and 1064 nm, by mass and by extinction",
 )
 
 SIZES = 5
@@ -89,7 +90,9 @@ def peak_over(sizes: tuple[float, ...], values: Floats) -> Floats:
     top = log_value.argmax(axis=0)
     middle = np.clip(top, 1, len(sizes) - 2)
     observer = np.arange(values.shape[1])
-    (x0, y0), (x1, y1), (x2, y2) = ((log_size[middle + step], log_value[middle + step, observer]) for step in (-1, 0, 1))
+    (x0, y0), (x1, y1), (x2, y2) = (
+        (log_size[middle + step], log_value[middle + step, observer]) for step in (-1, 0, 1)
+    )
     left, right = (y1 - y0) / (x1 - x0), (y2 - y1) / (x2 - x1)
     curvature = (right - left) / (x2 - x0)
     # Slope of the parabola at its middle point; where that is no peak the largest value stands.

@@ -9,7 +9,7 @@ from numpy.testing import assert_allclose
 
 from lasescatter.assessment.assess import assess
 from lasescatter.assessment.record import record
-from lasescatter.assessment.size_movement import COARSE, scaled, sizes_over
+from lasescatter.assessment.size_movement import COARSE, peak_over, scaled, sizes_over
 from lasescatter.matter import (
     ENTERED,
     Lognormal,
@@ -71,6 +71,16 @@ def test_every_radius_moves_in_proportion(shape):
         assert after.weight == before.weight
         for power in (2, 3):
             assert_allclose(mean_power(after.shape, power), 1.7**power * mean_power(before.shape, power), rtol=1e-9)
+
+
+def test_a_peak_between_sizes_is_met():
+    """A parabola in logarithms is met exactly; what rises or falls to an end keeps its largest value."""
+    sizes = sizes_over(SPAN)
+    logs = np.log(np.array(sizes) / 0.41e-6)
+    peaked, rising, hollow = 3.0 * np.exp(-0.8 * logs**2), np.exp(logs), np.exp(logs**2)
+    found = peak_over(sizes, np.stack([peaked, rising, hollow, np.zeros(5)], axis=1))
+    assert_allclose(found, [3.0, rising.max(), hollow.max(), 0.0], rtol=1e-12, atol=0)
+    assert found[0] > peaked.max() * (1 + 1e-3)
 
 
 def test_light_at_each_size_is_that_of_a_load_of_that_size():
