@@ -7,13 +7,18 @@ Huffman, Absorption and Scattering of Light by Small Particles (1983), ch. 4.
 
 from __future__ import annotations
 
+import os
+import threading
 from collections.abc import Iterator, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field
+from functools import lru_cache
 from itertools import pairwise
 from math import ceil
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
+from threadpoolctl import ThreadpoolController
 
 from lasescatter.optics import cosines
 from lasescatter.optics.angular import AngularTables, angular_functions
@@ -27,6 +32,8 @@ from lasescatter.optics.partial_waves import (
 )
 from lasescatter.optics.recurrences import series_length
 from lasescatter.optics.workspace import Workspace
+
+Floats = NDArray[np.float64]
 
 __all__ = [
     "MieSpace",
@@ -44,8 +51,11 @@ __all__ = [
 # Bounds on the arrays of one step, in elements.
 _WAVES = 400_000
 _TABLE = 4_000_000
-_CACHED = 30_000
+_CACHED = 60_000
 _LEAST_HEIGHT = 32
+# Multiplications of a product from which on threads share it, and how many at most.
+_WORTH_THREADS = 50_000_000
+_MOST_THREADS = 8
 # Spheres whose coefficients are computed together.
 _TOGETHER = 750
 # What the calls of one more group are worth: spheres times orders squared.
@@ -119,29 +129,13 @@ def sphere(index: complex, size_parameter: float) -> SphereOptics:
     )
 
 
-def combined(parts: Sequence[SphereSum]) -> SphereSum:
-    """The sum of sums."""
-    matrix = np.zeros((4, max((part.matrix.shape[1] for part in parts), default=1)))
-    for part in parts:
-        matrix[:, : part.matrix.shape[1]] += part.matrix
-    return SphereSum(sum(part.scattering for part in parts), sum(part.absorption for part in parts), matrix)
-
-
-class MieSpace:
-    """What sums over spheres carry from call to call: tables and work arrays. Not for two threads."""
-
-    def __init__(self) -> None:
-        self.tables = AngularTables()
-        self.work = Workspace()
-
-
 @dataclass(frozen=True, eq=False)
 class SphereSum:
     """Weighted sum over spheres. Cross sections are in units of 1/k², k the wavenumber in the medium."""
 
     scattering: float
     absorption: float
-    matrix: NDArray[np.float64]
+    matrix: Floats
     """Cosine series of S11, S12, S33, S34 (Bohren & Huffman eq. 4.77), shape (4, degree + 1)."""
 
     def scaled(self, factor: float) -> SphereSum:
@@ -152,10 +146,44 @@ class SphereSum:
         return self.scattering + self.absorption
 
 
+def combined(parts: Sequence[SphereSum]) -> SphereSum:
+    """The sum of sums."""
+    matrix = np.zeros((4, max((part.matrix.shape[1] for part in parts), default=1)))
+    for part in parts:
+        matrix[:, : part.matrix.shape[1]] += part.matrix
+    return SphereSum(sum(part.scattering for part in parts), sum(part.absorption for part in parts), matrix)
+
+
+class MieSpace:
+    """What sums over spheres carry from call to call: tables and work arrays. Not for two callers at once."""
+
+    def __init__(self) -> None:
+        self.tables = AngularTables()
+        self.work = Workspace()
+        self._own = threading.local()
+
+    def own_work(self) -> Workspace:
+        """Work arrays of the thread that asks."""
+        if not hasattr(self._own, "work"):
+            self._own.work = Workspace()
+        return self._own.work
+
+
+@lru_cache(maxsize=1)
+def _matrix_library() -> ThreadpoolController:
+    return ThreadpoolController().select(user_api="blas")
+
+
+@lru_cache(maxsize=1)
+def _threads() -> ThreadPoolExecutor:
+    cores = len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
+    return ThreadPoolExecutor(max_workers=max(1, min(cores, _MOST_THREADS)))
+
+
 def averaged(
     index: complex,
-    size_parameter: NDArray[np.float64],
-    weight: NDArray[np.float64],
+    size_parameter: Floats,
+    weight: Floats,
     space: MieSpace | None = None,
 ) -> SphereSum:
     """Sum over spheres of one index, each with its weight.
@@ -185,7 +213,7 @@ def averaged(
     return combined(groups)
 
 
-def _cuts(x: NDArray[np.float64]) -> list[int]:
+def _cuts(x: Floats) -> list[int]:
     """Where to cut descending size parameters into groups that share a table.
 
     Wide groups save calls, narrow ones arithmetic: from rung to rung a group grows while that costs its new spheres
@@ -204,8 +232,8 @@ def _cuts(x: NDArray[np.float64]) -> list[int]:
 
 def sums(
     index: complex,
-    size_parameter: NDArray[np.float64],
-    weights: NDArray[np.float64],
+    size_parameter: Floats,
+    weights: Floats,
     cuts: list[int],
     space: MieSpace,
 ) -> list[list[SphereSum]]:
@@ -224,6 +252,15 @@ def sums(
     list
         For each set of weights the sums of all groups.
     """
+    # One thread for each product, and threads of our own for several: those of the matrix library wait for each other
+    # in a loop, which takes twenty times as long where other work has the machine.
+    with _matrix_library().limit(limits=1):
+        return _sums(index, size_parameter, weights, cuts, space)
+
+
+def _sums(
+    index: complex, size_parameter: Floats, weights: Floats, cuts: list[int], space: MieSpace
+) -> list[list[SphereSum]]:
     lengths = series_length(size_parameter)
     rungs = [_LADDER[int(np.searchsorted(_LADDER, int(lengths[first])))] for first in cuts[:-1]]
     samples = [np.zeros((len(weights), 4, 2 * rung + 1)) for rung in rungs]
@@ -267,11 +304,11 @@ def _batches(cuts: list[int], lengths: NDArray[np.int64]) -> Iterator[tuple[int,
 
 
 def _add_samples(
-    samples: NDArray[np.float64],
+    samples: Floats,
     waves: PartialWaves,
     columns: slice,
     orders: int,
-    weights: NDArray[np.float64] | None,
+    weights: Floats | None,
     space: MieSpace,
 ) -> None:
     """Add the matrix of some spheres at theta_j = pi j/(2 rung); without weights these are in the waves."""
@@ -280,18 +317,26 @@ def _add_samples(
     difference = waves.difference[:orders].view(float)[:, 2 * columns.start : 2 * columns.stop]
     height = max(_LEAST_HEIGHT, _CACHED // total.shape[1])
     for piece, (plus, minus) in space.tables.pieces(rung, max(64, _TABLE // rung)):
-        for start in range(0, len(plus), height):
+        target = samples[..., piece]
+
+        def add(start: int, plus: Floats = plus, minus: Floats = minus, target: Floats = target) -> None:
             some = slice(start, min(start + height, len(plus)))
-            left = space.work.array("left", some.stop - start, total.shape[1])
-            right = space.work.array("right", *left.shape)
+            work = space.own_work()
+            left = work.array("left", some.stop - start, total.shape[1])
+            right = work.array("right", *left.shape)
             np.matmul(plus[some, :orders], total, out=left)
             np.matmul(minus[some, :orders], difference, out=right)
-            samples[..., piece][..., some] += _matrix_rows(left, right, weights)
+            target[..., some] += _matrix_rows(left, right, weights)
+
+        starts = range(0, len(plus), height)
+        if len(plus) * total.size < _WORTH_THREADS:
+            for start in starts:
+                add(start)
+        else:
+            list(_threads().map(add, starts))
 
 
-def _matrix_rows(
-    plus: NDArray[np.float64], minus: NDArray[np.float64], weights: NDArray[np.float64] | None
-) -> NDArray[np.float64]:
+def _matrix_rows(plus: Floats, minus: Floats, weights: Floats | None) -> Floats:
     """S11, S12, S33, S34 summed over spheres, (W, 4, J), from S1 + S2 and S1 − S2, (J, 2R).
 
     Real and imaginary parts stand in turn.
@@ -307,7 +352,7 @@ def _matrix_rows(
     return np.stack((pp + mm, -2 * pm.real, pp - mm, -2 * pm.imag), axis=1) / 4
 
 
-def work(size_parameter: NDArray[np.float64]) -> NDArray[np.float64]:
+def work(size_parameter: Floats) -> Floats:
     """Multiplications that each sphere will take, near enough to bound a job before it starts."""
     orders = series_length(size_parameter).astype(float)
     return 16 * orders**2 + 1500 * orders
@@ -336,6 +381,6 @@ _LADDER = _ladder()
 _EDGES = (1.0, *(_outgrown(rung) * (1 - 1e-12) for rung in _LADDER[1:]))
 
 
-def block_edges() -> NDArray[np.float64]:
+def block_edges() -> Floats:
     """Size parameters at which the series outgrows a rung of the ladder, ascending; the first is 1."""
     return np.array(_EDGES)
