@@ -13,7 +13,7 @@ from lasescatter.optics.air import LONGEST_WAVELENGTH, SHORTEST_WAVELENGTH, AirR
 from lasescatter.optics.growth import Floating, HumidityError, as_they_float
 from lasescatter.optics.indices import IndexRangeError
 from lasescatter.optics.measured import stand_in_optics
-from lasescatter.optics.mie import SizeRangeError
+from lasescatter.optics.mie import MieSpace, SizeRangeError
 from lasescatter.optics.sizes import Accuracy, ParticleOptics, particle_optics
 from lasescatter.problems import Problem, SiteError
 from lasescatter.scene import Load, Scene
@@ -66,6 +66,7 @@ class SiteOptics:
     def __init__(self, scene: Scene, accuracy: Accuracy | None = None) -> None:
         self.scene = scene
         self._accuracy = accuracy
+        self._space = MieSpace()
         self._floating: dict[Load, Floating] = {}
         self._optics: dict[tuple[object, ...], ParticleOptics] = {}
         self._amounts: dict[Load, Concentration] = {}
@@ -134,7 +135,9 @@ class SiteOptics:
         if key not in self._optics:
             index = indices[0] if len(set(indices)) == 1 else indices
             try:
-                self._optics[key] = particle_optics(floating.modes, index, wavelength, accuracy=self._accuracy)
+                self._optics[key] = particle_optics(
+                    floating.modes, index, wavelength, accuracy=self._accuracy, space=self._space
+                )
             except SizeRangeError as fault:
                 raise SiteError([Problem(f"{load.key}.sizes", str(fault), "Give sizes within that range")]) from fault
         return self._optics[key]
