@@ -58,9 +58,7 @@ def equivalents(
     return tuple(found)
 
 
-def _extinction(
-    amount: Concentration, optics_at: Callable[[float], ParticleOptics], wavelength: float
-) -> float | None:
+def _extinction(amount: Concentration, optics_at: Callable[[float], ParticleOptics], wavelength: float) -> float | None:
     """Extinction coefficient [m⁻¹], or None where it is not known or there is none."""
     if amount.known_at is not None and abs(wavelength - amount.known_at) > SAME_WAVELENGTH * (1 + 1e-9):
         return None

@@ -17,7 +17,7 @@ from lasescatter.site.data_file import DataFile, read_data_file
 from lasescatter.site.faults import Place, quoted
 from lasescatter.site.index_file import IndexFileTable
 from lasescatter.site.kind_file import KindFileTable, source_lines
-from lasescatter.site.kind_sizes import modes_of
+from lasescatter.site.sizes import modes_of
 
 KINDS, INDICES = "particles", "indices"
 """Folders of the two sorts of files inside a rules folder."""

@@ -6,24 +6,22 @@ and key.
 
 from __future__ import annotations
 
-import json
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
-from functools import lru_cache
+from functools import partial
 from pathlib import Path
-from typing import Any, Generic, TypeVar, get_args
+from typing import Any, Generic, TypeVar
 
 from pydantic import ValidationError
-from pydantic.fields import FieldInfo
 
 from lasescatter.problems import Problem, SiteError
 from lasescatter.site.faults import Fault, Place, quoted, spelled
 from lasescatter.site.line_index import LineIndex
+from lasescatter.site.model_errors import Keys, TableName, as_toml, faults_of, keys_of, table_of
 from lasescatter.site.spelling import Placeholder, nearest
 from lasescatter.site.syntax import LARGEST_FILE, decoded, parsed
 from lasescatter.site.table import Table
 
-TableName = tuple[str, ...]
 Read = TypeVar("Read", bound=Table)
 
 
@@ -62,11 +60,11 @@ def read_data_file(path: Path, file: str, model: type[Read]) -> DataFile[Read]:
         document, lines = parsed(decoded(content, file), file)
     except SiteError as error:
         raise SiteError([replace(problem, file=file) for problem in error.problems], file) from None
-    known = _known_keys(model)
+    known = keys_of(model)
     try:
         return DataFile(file, document, lines, model.model_validate(_with_placeholders(document, known)))
     except ValidationError as error:
-        faults = _faults((), error.errors(include_url=False), known)
+        faults = faults_of((), error.errors(include_url=False), partial(_in_words, known))
         raise SiteError([_problem(fault, document, lines, file) for fault in faults], file) from None
 
 
@@ -74,29 +72,7 @@ def _problem(fault: Fault, document: Mapping[str, Any], lines: LineIndex, file: 
     return Problem(spelled(fault.place, document, quoted), fault.wrong, fault.mend, lines.line(fault.place), file)
 
 
-@lru_cache(maxsize=8)
-def _known_keys(model: type[Table]) -> Mapping[TableName, Mapping[str, FieldInfo]]:
-    """Every key that is read, by table and then by the name that the file uses."""
-    found: dict[TableName, dict[str, FieldInfo]] = {}
-    waiting: list[tuple[TableName, type[Table]]] = [((), model)]
-    for name, table in waiting:
-        found[name] = {field.alias or key: field for key, field in table.model_fields.items()}
-        waiting += [((*name, key), inner) for key, field in found[name].items() if (inner := _table_of(field))]
-    return found
-
-
-def _table_of(field: FieldInfo) -> type[Table] | None:
-    waiting = [field.annotation]
-    for annotation in waiting:
-        if isinstance(annotation, type) and issubclass(annotation, Table):
-            return annotation
-        waiting += get_args(annotation)
-    return None
-
-
-def _with_placeholders(
-    document: Mapping[str, Any], known: Mapping[TableName, Mapping[str, FieldInfo]], table: TableName = ()
-) -> dict[str, Any]:
+def _with_placeholders(document: Mapping[str, Any], known: Keys, table: TableName = ()) -> dict[str, Any]:
     """A copy in which a misspelt key stands where the right one would: it is then not reported missing as well."""
     result: dict[str, Any] = {}
     for key, value in document.items():
@@ -114,9 +90,7 @@ def _with_placeholders(
     return result
 
 
-def _unknown(
-    table: TableName, key: str, near: str | None, known: Mapping[TableName, Mapping[str, FieldInfo]]
-) -> tuple[str, str]:
+def _unknown(table: TableName, key: str, near: str | None, known: Keys) -> tuple[str, str]:
     wrong = f"this key is not known in [{'.'.join(table)}]" if table else "this key is not known"
     if near:
         return wrong, f'Perhaps "{near}" was meant'
@@ -126,43 +100,16 @@ def _unknown(
     return wrong, f"Known here are {', '.join(known[table])}"
 
 
-def _faults(
-    base: Place, errors: Sequence[Mapping[str, Any]], known: Mapping[TableName, Mapping[str, FieldInfo]]
-) -> Iterator[Fault]:
-    for error in errors:
-        place = (*base, *error["loc"])
-        met = error["input"]
-        if isinstance(met, Placeholder):
-            yield Fault((*place[:-1], met.key), met.wrong, met.mend)
-        elif error["type"] == "refused":
-            yield Fault(place, error["ctx"]["wrong"], error["ctx"]["mend"])
-        elif error["type"] == "several":
-            # Rules run with a table's last field; their places count from the table.
-            table = place[:-1]
-            yield from (Fault((*table, *fault.place), fault.wrong, fault.mend) for fault in error["ctx"]["faults"])
-            yield from _faults(place, error["ctx"]["own"], known)
-        else:
-            yield Fault(place, *_in_words(place, error, known))
-
-
-def _in_words(
-    place: Place, error: Mapping[str, Any], known: Mapping[TableName, Mapping[str, FieldInfo]]
-) -> tuple[str, str]:
+def _in_words(known: Keys, place: Place, error: Mapping[str, Any]) -> tuple[str, str]:
     """What is wrong and what would be right, for the errors that the model library itself finds."""
     *table, name = (step for step in place if isinstance(step, str))
     field = known.get(tuple(table), {}).get(name)
-    example = f"{name} = {_toml(field.examples[0])}" if field and field.examples else name
+    example = f"{name} = {as_toml(field.examples[0])}" if field and field.examples else name
     if error["type"] == "missing":
         return "the key is missing", f"Add it, for example {example}"
-    if field is not None and _table_of(field) is not None:
+    if field is not None and table_of(field) is not None:
         header = f"[[{name}]]" if error["type"] == "tuple_type" else f"[{name}]"
         return (f"{quoted(error['input'])} stands where {'a list of tables' if header[1] == '[' else 'a table'} is due",
                 f"Write {header}, with its keys on the lines below")  # fmt: skip
     due = "is not a list" if error["type"] == "tuple_type" else "cannot be used here"
     return f"{quoted(error['input'])} {due}", f"Write for example {example}"
-
-
-def _toml(value: Any) -> str:
-    if isinstance(value, Mapping):
-        return "{ " + ", ".join(f"{name} = {_toml(entry)}" for name, entry in value.items()) + " }"
-    return json.dumps(value, ensure_ascii=False)

@@ -13,7 +13,8 @@ from lasescatter.matter import TypicalLoad as Typical
 from lasescatter.site.faults import Fault, quoted, refusal
 from lasescatter.site.fields import Fraction, Number, Quantity, Text, Word
 from lasescatter.site.index_file import UNCONFIRMED, Mark
-from lasescatter.site.kind_sizes import Length, SizesOfKind, SizeSpanTable, usual_size_faults, weight_faults
+from lasescatter.site.kind_sizes import SizesOfKind, SizeSpanTable, usual_size_faults
+from lasescatter.site.sizes import Radius, weight_faults
 from lasescatter.site.table import Seen, Table, key
 
 FORMAT = "lasescatter kind 1"
@@ -44,7 +45,7 @@ class GrowthTable(Table):
     humidities: tuple[Annotated[float, Fraction("0.5")], ...] | None = key(
         "Relative humidities of the radii, ascending from 0", ["0 %", "50 %", "80 %"], default=None
     )
-    radii: tuple[Length, ...] | None = key(
+    radii: tuple[Radius, ...] | None = key(
         "Radius at each of them, of any one particle", ["0.1 um", "0.12 um", "0.15 um"], default=None
     )
     water: Name = key("Name of the index of what is taken up", "water", default="water")

@@ -153,8 +153,11 @@ class LoadTable(Table):
         if seen.stated("at") and reading in ("mass", "number"):
             yield Fault(("at",), f"a load by {reading} is not tied to a wavelength", "Leave at out")
         if seen.stated("at") and reading in _RANGES:
-            yield Fault(("at",), f"a load by {reading} stands for what an eye sees, at {RANGES_AT * 1e9:g} nm",
-                        "Leave at out; a measurement at another wavelength is an extinction or a transmittance")
+            yield Fault(
+                ("at",),
+                f"a load by {reading} stands for what an eye sees, at {RANGES_AT * 1e9:g} nm",
+                "Leave at out; a measurement at another wavelength is an extinction or a transmittance",
+            )
         if not seen.stated("at") and reading in _AT_DUE:
             yield Fault(("at",), "the key is missing",
                         f"A load by {reading} needs it: {_INSTRUMENT}, for example at = \"880 nm\"")  # fmt: skip

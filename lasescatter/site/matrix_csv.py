@@ -89,9 +89,15 @@ def _check_steps(table: Columns, angles: tuple[float, ...], f11: tuple[float, ..
     off = math.fsum(found) / mean
     if off > COARSEST:
         worst = max(range(len(found)), key=lambda row: found[row])
-        raise TableError([(f"{table.place(worst + 1, 'F11')}: F11 falls so steeply above this row that its mean is "
-                           f"not known: it depends by {off * 100:.2g} % on how F11 runs between the rows",
-                           "Give angles closer together where F11 is steep, above all in the forward peak")])
+        raise TableError(
+            [
+                (
+                    f"{table.place(worst + 1, 'F11')}: F11 falls so steeply above this row that its mean is "
+                    f"not known: it depends by {off * 100:.2g} % on how F11 runs between the rows",
+                    "Give angles closer together where F11 is steep, above all in the forward peak",
+                )
+            ]
+        )
 
 
 def _angles(table: Columns) -> tuple[float, ...]:

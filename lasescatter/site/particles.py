@@ -14,7 +14,6 @@ from lasescatter.matter import (
     Index,
     Material,
     MeasuredMatrix,
-    SizeMode,
     Trust,
 )
 from lasescatter.scene import Load
@@ -27,7 +26,7 @@ from lasescatter.site.ledger import Ledger
 from lasescatter.site.load import LoadTable
 from lasescatter.site.matrix_csv import measured_matrix
 from lasescatter.site.region import RegionTable
-from lasescatter.site.sizes import SizesTable, mode_rules
+from lasescatter.site.sizes import SizesTable, modes_of, weight_faults
 from lasescatter.site.table import Seen, Table, key
 
 MOST_MODES = 20
@@ -109,7 +108,7 @@ class ParticlesTable(Table):
             else:
                 yield from _sphere_rules(seen)
         if seen.get("sizes"):
-            yield from mode_rules(seen.get("sizes"))
+            yield from weight_faults(seen.get("sizes"))
 
     def to_scene(self, place: Place, ledger: Ledger, common_wavelength: float | None) -> Load:
         """The load in SI; `common_wavelength` is that of all beams, where they share one."""
@@ -131,14 +130,14 @@ class ParticlesTable(Table):
         if self.kind is not None:
             return self._of_kind(load, self.kind, place, ledger)
         index = cast(Index, self._own_index())
-        return replace(load, modes=self._own_modes(), material=Material(index, self._own_density()), trust=ENTERED)
+        return replace(load, modes=modes_of(self.sizes), material=Material(index, self._own_density()), trust=ENTERED)
 
     def _of_kind(self, load: Load, named: NamedKind, place: Place, ledger: Ledger) -> Load:
         """The load of a kind; what the entry states itself replaces what the kind says."""
         kind, index, density = named.kind, self._own_index(), self._own_density()
         trust, span, modes = kind.trust, kind.size_span, kind.modes
         if self.sizes:
-            trust, span, modes = kind.trust_with_own_sizes, None, self._own_modes()
+            trust, span, modes = kind.trust_with_own_sizes, None, modes_of(self.sizes)
         material = kind.material
         if index is not None:
             material = replace(material, index=index)
@@ -157,10 +156,6 @@ class ParticlesTable(Table):
         if density is None and material.density is not None and any(mode.material is None for mode in modes):
             ledger.took((*place, "density"), f"{material.density:.9g} kg/m³ (from the kind)")
         return replace(load, modes=modes, material=material, kind=kind.name, trust=trust, size_span=span)
-
-    def _own_modes(self) -> tuple[SizeMode, ...]:
-        total = sum(mode.weight or 1.0 for mode in self.sizes)
-        return tuple(SizeMode(mode.to_scene(), (mode.weight or 1.0) / total) for mode in self.sizes)
 
     def _own_index(self) -> Index | None:
         return cast(Index, self.index_file.content) if self.index_file is not None else self.index

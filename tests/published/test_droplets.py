@@ -9,7 +9,7 @@ from assessment.sites import LoadReading, bay, haze
 from published.printed import cases, of
 
 from lasescatter.assessment.assess import assess
-from lasescatter.matter import Lognormal, SizeMode
+from lasescatter.matter import Lognormal, Material, SizeMode
 
 
 @pytest.mark.parametrize("case", cases("droplets.toml"), ids=lambda c: c["quantity"])
@@ -18,10 +18,9 @@ def test_droplets(case):
     # Mass median to number median of a lognormal (textbook identity).
     median = given["mass_median_diameter"] / 2 * math.exp(-3 * math.log(given["geometric_sd"]) ** 2)
     load = haze(
-        sizes=(SizeMode(Lognormal(median, given["geometric_sd"])),),
-        index=complex(*given["index"]),
-        density=given["density"],
-        reading=LoadReading("mass", 1e-6),
+        modes=(SizeMode(Lognormal(median, given["geometric_sd"])),),
+        material=Material(complex(*given["index"]), given["density"]),
+        reading=LoadReading("mass", 1e-6, basis="dry"),
     )
     found = next(c for c in assess(bay(loads=(load,))).components if c.name == "test haze")
     ours = {"mass extinction": found.mass_extinction / 1e3, "asymmetry": found.asymmetry}

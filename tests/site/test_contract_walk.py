@@ -27,7 +27,8 @@ FORMAT = {
     "beam.line": "name wavelength power pulses diameter divergence polarization electric_field polarization_ratio",
     "beam.line.pulses": "energy duration rate count hot_spot",
     "particles": "name kind sizes index index_file density matrix_file henyey_greenstein albedo steady_by load region",
-    "particles.sizes": "shape median_radius geometric_sd mode_radius alpha gamma radius file weight",
+    "particles.sizes": "shape median_radius median_diameter mass_median_diameter geometric_sd smallest largest "
+    "mode_radius alpha gamma radius file weight",
     "particles.load": "meteorological_optical_range visual_range visibility mass number extinction at obscuration "
     "optical_density attenuation transmittance over as",
     "particles.region": "shape from to base radius height centre bottom top scale_height file",

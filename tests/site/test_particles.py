@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+import math
+
 import pytest
 from site_cases import AIR, CATALOGUE, FOG, GOOD, TABLES, changed, read_text
 
-from lasescatter.matter import ENTERED, HenyeyGreenstein, IndexTable, Material, MeasuredMatrix, SizeTable
+from lasescatter.matter import ENTERED, HenyeyGreenstein, IndexTable, Lognormal, Material, MeasuredMatrix, SizeTable
 from lasescatter.problems import SiteError
 from lasescatter.scene import LoadReading
 from lasescatter.site.reading import read_site, read_site_text
@@ -74,7 +76,16 @@ def test_every_reading_in_si():
         LoadReading("optical_density", 1e-4, 530e-9),
         LoadReading("attenuation", 3e-3, 633e-9),
         LoadReading("visual_range", 20e3, 550e-9),
+        LoadReading("number", 200e6),
     ]
+
+
+def test_medians_by_diameter_and_by_mass_and_cut_sizes():
+    """Mass median to number median of a lognormal: exp(−3 ln² s) (textbook identity)."""
+    first, second = (mode.shape for mode in LOADS["sieved drops"].modes)
+    assert first == Lognormal(0.3e-6, 1.4, smallest=0.1e-6)
+    assert second.median_radius == pytest.approx(1.5e-6 * math.exp(-3 * math.log(1.5) ** 2), rel=1e-12, abs=0)
+    assert (second.geometric_sd, second.smallest, second.largest) == (1.5, None, 4e-6)
 
 
 @pytest.mark.parametrize(
