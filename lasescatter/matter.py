@@ -186,6 +186,8 @@ class Kind:
     """What every number is from, with its evidence mark."""
     file: str
     """Where it was read from."""
+    origin: Literal["shipped", "added", "replacing"] = "shipped"
+    """Whether it comes with the program, or from the user's folder, beside the shipped kinds or in place of one."""
     data: dict = field(repr=False, compare=False, default_factory=dict)
     """The file as read, for the record."""
     indices: dict = field(repr=False, compare=False, default_factory=dict)

@@ -222,7 +222,8 @@ def _gates(fields: dict[str, LineField], index: int) -> tuple[str, ...]:
         if tau > NOTHING_BELOW_ABOVE:
             gates.append(
                 f"the load is too thick for single scattering at {field.line.wavelength * 1e9:g} nm: optical "
-                f"thickness {tau:.2g}, above {NOTHING_BELOW_ABOVE:g}"
+                f"thickness {tau:.2g}, above {NOTHING_BELOW_ABOVE:g}; a load or a path {tau / NOTHING_BELOW_ABOVE:.2g} times "
+                "smaller would do"
             )
         if field.line.divergence > WIDEST_DIVERGENCE:
             gates.append(

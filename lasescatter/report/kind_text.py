@@ -219,5 +219,5 @@ def _load(load: LoadOfKind, found: KindOptics, page: TextPage) -> None:
             for row in rows
             if any(wave in row.cells for wave in columns)
         ]
-        heads = ["at any" if wave is None else wavelength(wave) for wave in columns]
+        heads = ["any" if wave is None else wavelength(wave) for wave in columns]
         page.table(("Instruments would read", *heads), body, (_LABEL, *[_CELL] * len(heads)), numeric=1)

@@ -80,7 +80,8 @@ def _kind(assessment: Assessment, load: Load) -> str:
         return "described by the user: sizes and index"
     found = assessment.scene.rules.get("particles", {}).get(load.kind, {})
     what = found.get("what", "") if isinstance(found, dict) else ""
-    told = f"<b>{markup(load.kind, NAME)}</b>, from the catalogue"
+    origin = markup(load.kind_from, NAME) if load.kind_from else "the catalogue that comes with the program"
+    told = f"<b>{markup(load.kind, NAME)}</b>, from {origin}"
     return f"{told}: {markup(str(what), 600)}" if what else told
 
 
@@ -240,7 +241,12 @@ def _reading_table(rows: list[ReadingRow], waves: list[float], with_untied: bool
     untied = with_untied and any(None in row.cells for row in rows)
     columns: list[float | None] = [*([None] if untied else []), *waves]
     table: list[list[Any]] = [
-        heads("Reading", "Unit", *("at any" if wave is None else wavelength(wave) for wave in columns), numeric_from=2)
+        heads(
+            "Reading",
+            "Unit",
+            *("any wavelength" if wave is None else wavelength(wave) for wave in columns),
+            numeric_from=2,
+        )
     ]
     table += [
         [words(row.name), row.unit, *(row.cells.get(wave, "") for wave in columns)]

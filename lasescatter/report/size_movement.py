@@ -44,10 +44,12 @@ def size_warnings(assessment: Assessment) -> list[str]:
         name = _named(movement.load, movement.kind)
         found = extremes(movement)
         moves = (
-            "no light arrives" if found is None else f"light moves by {digits(found[0], 2)} to {digits(found[1], 2)}"
+            "no light arrives"
+            if found is None
+            else f"light is {digits(found[0], 2)} to {digits(found[1], 2)} times that"
         )
         span = size_range(movement.sizes[0], movement.sizes[-1], "um")
-        lines.append(f"{name}: size not stated; {moves} over {span}")
+        lines.append(f"{name}: size not stated; {moves} of the usual size over {span}, which the bounds carry")
     return lines
 
 
@@ -56,8 +58,8 @@ def size_request(load: Load, span: SizeSpan) -> str:
     sizes = size_range(span.low, span.high, "um")
     usual = trimmed(float(f"{span.usual * 1e6:.3g}"))
     return (
-        f"{_named(load.name, load.kind)}: size not stated: state it as [particles.sizes] ({plain(span.what)} is "
-        f"taken as {usual} um; it may be {sizes})"
+        f"{_named(load.name, load.kind)}: size not stated ({plain(span.what)} is taken as {usual} um; it may be {sizes}): "
+        "state it as [particles.sizes] with shape, mass_median_diameter and geometric_sd"
     )
 
 

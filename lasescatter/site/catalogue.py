@@ -94,11 +94,19 @@ def _joined(own: Path) -> Catalogue:
                                  f"Put files of kinds into {KINDS}/ and of refractive indices into {INDICES}/")],
                         shown)  # fmt: skip
     kinds, indices, problems = _files(own, shown)
+    if not kinds and not indices and not problems:
+        raise SiteError([Problem("", f"neither {KINDS}/ nor {INDICES}/ holds a file *.toml",
+                                 "Name each file of a kind or an index so that it ends in .toml")], shown)  # fmt: skip
     shipped_kinds, shipped_indices = _shipped_files()
     try:
-        return _catalogue(_in_front(kinds, shipped_kinds), _in_front(indices, shipped_indices), problems)
+        made = _catalogue(_in_front(kinds, shipped_kinds), _in_front(indices, shipped_indices), problems)
     except SiteError as error:
         raise SiteError(error.problems, shown) from None
+    taken = {plain_name(name) for name in shipped_kinds}
+    marked = {
+        name: replace(made.kinds[name], origin="replacing" if plain_name(name) in taken else "added") for name in kinds
+    }
+    return replace(made, kinds={**made.kinds, **marked})
 
 
 def _in_front(own: dict[str, DataFile[Read]], shipped: dict[str, DataFile[Read]]) -> dict[str, DataFile[Read]]:
@@ -168,10 +176,11 @@ def _catalogue(
             kind = maker.mixture(file, kinds, made)
             if kind is not None:
                 made[name] = kind
+    maker.check_other_names(kinds)
     if maker.problems:
         raise SiteError(maker.problems, "rules")
     ordered = {name: made[name] for name in sorted(made)}
-    # Names come before other names, and a user's other names before the shipped ones.
+    # Names come before other names.
     names = {plain_name(other): name for name in kinds if name in made for other in made[name].also_called}
     names |= {plain_name(name): name for name in made}
     return Catalogue(ordered, {name: file.table.to_index() for name, file in indices.items()}, names)
@@ -248,6 +257,16 @@ class _Maker:
             return None
         used[found.table.name] = dict(found.document)
         return self._tables[plain_name(name)]
+
+    def check_other_names(self, kinds: Mapping[str, DataFile[KindFileTable]]) -> None:
+        """Another name may stand for one kind only."""
+        taken = {plain_name(name): name for name in kinds}
+        for name, file in kinds.items():
+            for other in file.table.also_called:
+                whose = taken.setdefault(plain_name(other), name)
+                if whose != name:
+                    self.problems.append(file.problem(("also_called",), f"{quoted(other)} stands for {quoted(whose)}",
+                                                      "Leave it out, or replace that kind by its own name"))  # fmt: skip
 
     @staticmethod
     def _kind(
