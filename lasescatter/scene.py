@@ -176,14 +176,14 @@ class Load:
     key: str
     kind: str = ""
     """Name of the kind in the catalogue, or ""."""
-    kind_from: str = ""
-    """File of the user's folder that the kind is from, in words; "" for a shipped one."""
     trust: Trust = ENTERED
     size_span: SizeSpan | None = None
     """Set where a kind's size is uncertain and the user has not stated it."""
     stand_in: MeasuredMatrix | HenyeyGreenstein | None = None
     albedo: float | None = None
     """Scattered share of the extinction, with a stand-in."""
+    kind_from: str = ""
+    """File of the user's folder that the kind is from, in words; "" for a shipped one."""
 
 
 @dataclass(frozen=True)

@@ -160,8 +160,8 @@ class LoadTable(Table):
             )
         if not seen.stated("at") and reading in _AT_DUE:
             yield Fault(("at",), "the key is missing",
-                        f"A load by {reading} needs it: {_INSTRUMENT}, for example at = \"880 nm\"; where nobody knows, "
-                        "the longest wavelength that is plausible, since it mostly means the larger load")  # fmt: skip
+                        f"A load by {reading} needs it: {_INSTRUMENT}, for example at = \"880 nm\"; where "
+                        "nobody knows, the longest one that is plausible, since it mostly means the larger load")  # fmt: skip
         if reading == "transmittance" and not seen.stated("over"):
             yield Fault(("over",), "the key is missing",
                         'A transmittance needs the length that the light went, for example over = "3 m"')  # fmt: skip
