@@ -265,8 +265,9 @@ class _Maker:
             for other in file.table.also_called:
                 whose = taken.setdefault(plain_name(other), name)
                 if whose != name:
-                    self.problems.append(file.problem(("also_called",), f"{quoted(other)} stands for {quoted(whose)}",
-                                                      "Leave it out, or replace that kind by its own name"))  # fmt: skip
+                    wrong = f"{quoted(other)} stands for {quoted(whose)}"
+                    mend = "Leave it out, or replace that kind by its own name"
+                    self.problems.append(file.problem(("also_called",), wrong, mend))
 
     @staticmethod
     def _kind(

@@ -72,6 +72,7 @@ class SiteTable(Table):
             yield Fault(("beam",), "the file has no beam", "Add at least one [[beam]]")
         if not seen.stated("observer"):
             yield Fault(("observer",), "the file has no observer", "Add an [[observer]] for each place of people")
+        yield from _humidity_rules(seen)
         if not seen.get("beam"):
             return
         if common_wavelength(seen.get("beam")) is None:
@@ -128,6 +129,19 @@ def common_wavelength(beams: tuple[BeamTable, ...]) -> float | None:
     """The wavelength of all lines of all beams, where they share one. [m]"""
     found = {wavelength for beam in beams for _, _, wavelength in _wavelengths(beam)}
     return found.pop() if len(found) == 1 else None
+
+
+def _humidity_rules(seen: Seen) -> Iterator[Fault]:
+    """Moist particles are not computed in air more humid than their growth is known for."""
+    air = seen.get("air")
+    humidity = None if air is None else air.relative_humidity
+    for particles in seen.get("particles") or ():
+        if humidity is not None and particles.kind is not None and humidity > particles.kind.most_humidity:
+            most = 100 * particles.kind.most_humidity
+            yield Fault(("air", "relative_humidity"),
+                        f"{quoted(particles.name)} takes up water, and how much is known up to {most:g} % only",
+                        "Give a humidity within that range, or enter the load by its wet sizes and index")  # fmt: skip
+            return
 
 
 def _aversion_rules(seen: Seen) -> Iterator[Fault]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any, cast
 
@@ -25,6 +26,9 @@ from lasescatter.site.fields import Marker, Reading, read_text
 if TYPE_CHECKING:
     from lasescatter.site.catalogue import Catalogue
 
+MOST_HUMIDITY = 0.99
+"""Above it small errors of the humidity change the size of moist particles without bound."""
+
 
 @dataclass(frozen=True)
 class NamedKind:
@@ -46,6 +50,13 @@ class NamedKind:
     def grows(self) -> bool:
         """Whether it takes up water in moist air."""
         return any(material.growth is not None for material in self.materials)
+
+    @property
+    def most_humidity(self) -> float:
+        """Relative humidity up to which its growth is known; infinite where it does not grow."""
+        growths = [material.growth for material in self.materials if material.growth is not None]
+        listed = [growth.factors[-1][0] for growth in growths if growth.factors]
+        return min([MOST_HUMIDITY, *listed]) if growths else math.inf
 
     def __str__(self) -> str:
         return f"{self.kind.name}: {self.kind.what.rstrip('.')}"
@@ -78,9 +89,8 @@ def origin_text(kind: Kind) -> str:
     """Where a kind of the user's own is from; "" for a shipped one."""
     if kind.origin == "shipped":
         return ""
-    *_, sort, name = kind.file.split("/")
     beside = "in place of the shipped kind of that name" if kind.origin == "replacing" else "beside the shipped kinds"
-    return f"{sort}/{name} of the user's own rules folder, {beside}"
+    return f"{'/'.join(kind.file.split('/')[-2:])} of the user's own rules folder, {beside}"
 
 
 def shape_text(shape: SizeShape) -> str:

@@ -159,9 +159,12 @@ class LoadTable(Table):
                 "Leave at out; a measurement at another wavelength is an extinction or a transmittance",
             )
         if not seen.stated("at") and reading in _AT_DUE:
-            yield Fault(("at",), "the key is missing",
-                        f"A load by {reading} needs it: {_INSTRUMENT}, for example at = \"880 nm\"; where "
-                        "nobody knows, the longest one that is plausible, since it mostly means the larger load")  # fmt: skip
+            yield Fault(
+                ("at",),
+                "the key is missing",
+                f'A load by {reading} needs it: {_INSTRUMENT}, for example at = "880 nm"; where nobody knows, the '
+                "longest that is plausible: it mostly means the larger load",
+            )
         if reading == "transmittance" and not seen.stated("over"):
             yield Fault(("over",), "the key is missing",
                         'A transmittance needs the length that the light went, for example over = "3 m"')  # fmt: skip

@@ -273,11 +273,30 @@ def test_other_shapes_and_growth(tmp_path):
     assert growth.factors == ((0.0, 1.0), (0.8, pytest.approx(1.2, rel=1e-12)))
 
 
-def test_other_names_of_a_user_go_before_shipped_ones(tmp_path):
-    text = KIND.replace("flour dust", "fog machine")
-    catalogue = read_catalogue(folder_of(tmp_path, (text,), (INDEX,)))
-    assert catalogue.named("fog machine").name == "bakery flour"
-    assert read_catalogue().named("fog machine").name == "heated glycol fog"
+@pytest.mark.parametrize("other", ["fog machine", "heated glycol fog"])
+def test_another_name_of_a_user_cannot_take_over_that_of_a_shipped_kind(tmp_path, other):
+    error = told(folder_of(tmp_path, (KIND.replace("flour dust", other),), (INDEX,)))
+    (problem,) = error.problems
+    assert (problem.key, problem.line) == ("also_called", 3)
+    assert "heated glycol fog" in problem.wrong and "Leave it out" in problem.mend
+
+
+def test_kinds_of_a_user_are_marked(tmp_path):
+    replacing = KIND.replace('"bakery flour"', '"glycol haze"')
+    kinds = read_catalogue(
+        folder_of(tmp_path, (KIND.replace("flour dust", "dust of flour"), replacing), (INDEX,))
+    ).kinds
+    assert {name: kind.origin for name, kind in kinds.items() if kind.origin != "shipped"} == {
+        "bakery flour": "added",
+        "glycol haze": "replacing",
+    }
+
+
+def test_a_folder_without_files_is_told(tmp_path):
+    (tmp_path / "particles").mkdir()
+    (tmp_path / "particles" / "flour.tml").write_text(KIND, encoding="utf-8")
+    with pytest.raises(SiteError, match="holds a file"):
+        read_catalogue(tmp_path)
 
 
 def test_the_examples_of_the_readme_read(tmp_path):
@@ -396,6 +415,7 @@ def test_faults_of_all_files_are_told_at_once(tmp_path):
         ("own_3.toml", 5, "part[1].kind"),
         ("own_3.toml", 8, "part[2].kind"),
         ("own_4.toml", 2, "name"),
+        ("own_4.toml", 3, "also_called"),
     ]
 
 

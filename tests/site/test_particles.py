@@ -170,3 +170,12 @@ def test_dots_in_a_message_stay():
     with pytest.raises(SiteError) as caught:
         read_text(text)
     assert '"../sizes.csv" leads out' in str(caught.value)
+
+
+def test_air_too_humid_for_what_takes_up_water_is_told_at_reading():
+    with pytest.raises(SiteError) as caught:
+        scene_with(('relative_humidity = "80 %"', 'relative_humidity = "99.5 %"'))
+    (problem,) = caught.value.problems
+    assert problem.key == "air.relative_humidity"
+    assert problem.line is not None
+    assert "takes up water" in problem.wrong and "99 %" in problem.wrong
