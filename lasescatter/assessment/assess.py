@@ -10,7 +10,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 import lasescatter
-from lasescatter.assessment.components import DOUBTED_THICKNESS, SIZE_AVERAGE, UNIFORM_AIR, SiteOptics, is_vouched
+from lasescatter.assessment.components import (
+    DOUBTED_THICKNESS,
+    DRY_AIR,
+    SIZE_AVERAGE,
+    UNIFORM_AIR,
+    SiteOptics,
+    is_vouched,
+)
 from lasescatter.assessment.detector import received
 from lasescatter.assessment.field import LineField, distance_to, line_field
 from lasescatter.assessment.handcheck import hand_checks, stop_checks
@@ -36,10 +43,10 @@ from lasescatter.exposure import scattered as first_order
 from lasescatter.exposure import surfaces
 from lasescatter.exposure.direct import clearance
 from lasescatter.exposure.fraction import WORST_FRACTION
-from lasescatter.exposure.thickness import NOTHING_BELOW_ABOVE
+from lasescatter.exposure.thickness import FIGURES_UP_TO, NOTHING_BELOW_ABOVE
 from lasescatter.limits.compare import Received
 from lasescatter.limits.hazards import full_field, hazard_of
-from lasescatter.limits.judge import Judgement, judge
+from lasescatter.limits.judge import Gate, Judgement, judge
 from lasescatter.limits.verdict import worst
 from lasescatter.matter import MeasuredMatrix
 from lasescatter.medium import load as loads
@@ -104,11 +111,12 @@ def assess(
     movements, fields = size_movements(scene, optics, fields, powers, progress)
     progress("judgement")
     checks = {key: hand_checks(field, powers[key]) for key, field in fields.items()}
-    gaps = tuple(dict.fromkeys(gap for wavelength in components for gap in optics.gaps(wavelength)))
+    gaps = tuple(gap for wavelength in components for gap in optics.gaps(wavelength))
+    of_optics = _gates_of_optics(optics, fields)
     stops = {key: stop_checks(field, powers[key]) for key, field in fields.items()}
     walls = np.concatenate([points, *[np.array(beam.points) for beam in scene.beams]])
     observers = tuple(
-        _observer(scene, i, fields, powers, checks, stops, walls, gaps) for i in range(len(scene.observers))
+        _observer(scene, i, fields, powers, checks, stops, walls, of_optics) for i in range(len(scene.observers))
     )
     return Assessment(
         scene=scene,
@@ -120,7 +128,8 @@ def assess(
         assumptions=_assumptions(scene, optics, tuple(fields.values()), movements),
         cautions=cautions(),
         provenance=_provenance(made_at),
-        gaps=gaps,
+        gaps=tuple(dict.fromkeys(gap.reason for gap in gaps)),
+        gap_entries=gaps,
     )
 
 
@@ -147,12 +156,12 @@ def _observer(
     checks: dict[str, list[list[HandCheck]]],
     stops: dict[str, list[list[StopCheck]]],
     walls: Floats,
-    gaps: tuple[str, ...],
+    of_optics: list[Gate],
 ) -> ObserverOutcome:
     observer = scene.observers[index]
     point = np.asarray(observer.position, dtype=float)
     reached = _direct_within_reach(scene, fields, index)
-    judgement = _judged(scene, observer, index, fields, walls, reached, gaps)
+    judgement = _judged(scene, observer, index, fields, walls, [*reached.values(), *_gates(fields, index), *of_optics])
     nearest, beam_name = min(
         (float(np.linalg.norm(point - leg.origin - along * leg.direction)), beam.name)
         for beam in scene.beams
@@ -168,8 +177,10 @@ def _observer(
         governing=judgement.governing,
         nearest=nearest,
         nearest_beam=beam_name,
-        optical_thickness=max(float(field.thickness[index]) for field in fields.values()),
-        direct_reach=reached[0][0] if reached else "",
+        optical_thickness=max(float(field.thickness.total[index]) for field in fields.values()),
+        thickness_within_reach=max(float(field.thickness_within_reach.total[index]) for field in fields.values()),
+        thickness_doubted=max(float(field.thickness_doubted[index]) for field in fields.values()),
+        direct_reach=next(iter(reached), ""),
         lines=tuple(_line_exposure(field, index, float(powers[key][index])) for key, field in fields.items()),
         hand_checks=tuple(row for rows in checks.values() for row in rows[index]),
         stop_checks=tuple(row for rows in stops.values() for row in rows[index]),
@@ -184,29 +195,49 @@ def _judged(
     index: int,
     fields: dict[str, LineField],
     walls: Floats,
-    reached: list[tuple[str, str]],
-    gaps: tuple[str, ...],
+    gates: list[Gate],
 ) -> Judgement:
     def received_by(line: Line, limit: Limit) -> Received | str:
         return received(fields[line.key], index, limit, walls)
 
-    gates = tuple(sentence for _, sentence in reached) + _gates(fields, index) + gaps
-    return judge(observer, scene.beams, scene.limits, received_by, scene.not_judged, gates)
+    return judge(observer, scene.beams, scene.limits, received_by, scene.not_judged, _joined(gates))
 
 
-def _direct_within_reach(scene: Scene, fields: dict[str, LineField], index: int) -> list[tuple[str, str]]:
+def _joined(gates: list[Gate]) -> tuple[Gate, ...]:
+    """Each reason once, with all the lines that it holds for."""
+    lines: dict[str, set[str]] = {}
+    for gate in gates:
+        lines.setdefault(gate.reason, set()).update(gate.lines or ())
+    return tuple(Gate(reason, frozenset(held)) for reason, held in lines.items())
+
+
+def _gates_of_optics(optics: SiteOptics, fields: dict[str, LineField]) -> list[Gate]:
+    """What is not known of air and loads at the wavelengths of the lines."""
+    return [
+        Gate(reason, frozenset({key}))
+        for key, field in fields.items()
+        for reason in (
+            *(gap.reason for gap in optics.gaps(field.line.wavelength)),
+            *optics.dry_by_default(field.line.wavelength),
+        )
+    ]
+
+
+def _direct_within_reach(scene: Scene, fields: dict[str, LineField], index: int) -> dict[str, Gate]:
     """Beams whose direct light a head can get into: the reach, three beam radii and half an aperture added."""
     observer = scene.observers[index]
     aperture = max([limit.aperture for limit in scene.limits], default=PUPIL)
     passes: dict[str, dict[int, float]] = {}
-    for field in fields.values():
+    lines: dict[str, set[str]] = {}
+    for key, field in fields.items():
         for leg in field.legs:
             point = field.points[index : index + 1]
             distance = float(distance_to(leg, point)[0])
             cone = float(clearance(leg, field.line, point, REACHED_WITHIN_RADII, aperture)[0])
             if cone < observer.reach:
                 passes.setdefault(field.beam.name, {})[leg.number] = distance
-    return [(beam, _reached(beam, legs)) for beam, legs in passes.items()]
+                lines.setdefault(field.beam.name, set()).add(key)
+    return {beam: Gate(_reached(beam, legs), frozenset(lines[beam])) for beam, legs in passes.items()}
 
 
 def _reached(beam: str, legs: dict[int, float]) -> str:
@@ -214,27 +245,43 @@ def _reached(beam: str, legs: dict[int, float]) -> str:
     return f'direct light of "{beam}" is within reach: the axis of {listed}'
 
 
-def _gates(fields: dict[str, LineField], index: int) -> tuple[str, ...]:
+def _gates(fields: dict[str, LineField], index: int) -> list[Gate]:
     """Reasons outside the limits for which nothing may be called below."""
-    gates = []
-    for field in fields.values():
-        tau = float(field.thickness_within_reach[index])
-        if tau > NOTHING_BELOW_ABOVE:
-            gates.append(
-                f"the load is too thick for single scattering at {field.line.wavelength * 1e9:g} nm: optical "
-                f"thickness {tau:.2g}, above {NOTHING_BELOW_ABOVE:g}; a load or a path {tau / NOTHING_BELOW_ABOVE:.2g} times "
-                "smaller would do"
-            )
-        if field.line.divergence > WIDEST_DIVERGENCE:
-            gates.append(
-                f'"{field.line.name}" diverges by {field.line.divergence * 1e3:.3g} mrad: above 10 mrad the average '
-                "over its rays is not computed"
-            )
-        if field.beam.leaves_site and field.legs[-1].direction[2] < 0:
-            gates.append(f'"{field.beam.name}" leaves the site downwards: light from the ground there is not computed')
-        if field.sees_stop(index) and field.stop_gap(index) < surfaces.LEAST_SPOT_DISTANCES * field.spot_radius:
-            gates.append(f'the spot on the stop of "{field.beam.name}" is within reach nearer than ten of its radii')
-    return tuple(dict.fromkeys(gates))
+    return [Gate(reason, frozenset({key})) for key, field in fields.items() for reason in _open_questions(field, index)]
+
+
+def _open_questions(field: LineField, index: int) -> list[str]:
+    """What keeps one line's light at an observer from being below."""
+    found = _too_thick(field, index)
+    if field.line.divergence > WIDEST_DIVERGENCE:
+        found.append(
+            f'"{field.line.name}" diverges by {field.line.divergence * 1e3:.3g} mrad: above 10 mrad the average '
+            "over its rays is not computed"
+        )
+    if field.beam.leaves_site and field.legs[-1].direction[2] < 0:
+        found.append(f'"{field.beam.name}" leaves the site downwards: light from the ground there is not computed')
+    if field.sees_stop(index) and field.stop_gap(index) < surfaces.LEAST_SPOT_DISTANCES * field.spot_radius:
+        found.append(f'the spot on the stop of "{field.beam.name}" is within reach nearer than ten of its radii')
+    return found
+
+
+def _too_thick(field: LineField, index: int) -> list[str]:
+    """The load as stated is too thick, or it may be by the doubt in its extinction."""
+    tau, doubted = float(field.thickness_within_reach.total[index]), float(field.thickness_doubted[index])
+    at = f"{field.line.wavelength * 1e9:g} nm"
+    if tau > NOTHING_BELOW_ABOVE:
+        return [
+            f"the load is too thick for single scattering at {at}: optical thickness {tau:.2g}, above "
+            f"{NOTHING_BELOW_ABOVE:g}; a load or a path {tau / NOTHING_BELOW_ABOVE:.2g} times smaller would do"
+        ]
+    if doubted > FIGURES_UP_TO:
+        whose = ", ".join(f'"{name}" (×{factor:.3g})' for name, factor in field.doubters(index))
+        return [
+            f"the load may be too thick for single scattering at {at}: optical thickness {tau:.2g}, which by the doubt "
+            f"in the extinction of {whose} may be {doubted:.2g}; above {FIGURES_UP_TO:g} there are no figures for the "
+            f"orders that are not computed; an optical reading at {at} would settle it"
+        ]
+    return []
 
 
 def _powers(observers: tuple[Observer, ...], line: Line) -> Floats:
@@ -268,6 +315,9 @@ def _line_exposure(field: LineField, index: int, power: float) -> LineExposure:
         pulse_compared=None if energy is None else energy * (compared + diffuse_compared),
         pulse_direct=None if energy is None else energy * direct,
         pulse_diffuse=None if energy is None else energy * diffuse,
+        optical_thickness=float(field.thickness.total[index]),
+        thickness_within_reach=float(field.thickness_within_reach.total[index]),
+        thickness_doubted=float(field.thickness_doubted[index]),
     )
 
 
@@ -286,6 +336,8 @@ def _assumptions(
     found.append(STANDARD_AIR if scene.air.model == "standard atmosphere" else UNIFORM_AIR)
     if any(optics.grows_by_kappa(load) for load in scene.loads):
         found.append(growth.ONE_FACTOR)
+    if any(optics.humidity_missing(load) for load in scene.loads):
+        found.append(DRY_AIR)
     if any(isinstance(load.stand_in, MeasuredMatrix) for load in scene.loads):
         found.append(measured.STRAIGHT_LINES)
     if any(component.extinction_trust > 1 for field in fields for component in field.mixture.components):

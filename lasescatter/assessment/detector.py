@@ -56,8 +56,8 @@ def received(field: LineField, observer: int, limit: Limit, wall_points: Floats)
         taken = _full(field, observer, limit.aperture)
     if isinstance(taken, str):
         return taken
-    raised = float(allowance(field.thickness[observer]))
-    raised_within_reach = float(allowance(field.thickness_within_reach[observer]))
+    raised = float(allowance(field.thickness.total[observer]))
+    raised_within_reach = float(allowance(field.thickness_within_reach.total[observer]))
     # Near a polarization null the light without polarization is the measure of relative errors.
     error = taken.error + field.mixture.error * max(taken.light, _plain(field, observer, taken.light))
     orders = taken.light * (raised - 1)
@@ -71,18 +71,20 @@ def received(field: LineField, observer: int, limit: Limit, wall_points: Floats)
         ("reach, stop", taken.stop_reach - taken.stop),
     ]
     doubts = _doubts(field, observer, taken, error)
-    doubted = field.extinction_factor
-    if doubted > 1:
+    doubters = field.doubters(observer)
+    named = ", ".join(f'"{name}" (×{factor:.3g})' for name, factor in doubters)
+    whose = f"{TRUST}the optical thickness of {named}"
+    if doubters:
         # More extinction than stated: also more of the orders that are not computed.
-        further = float(allowance(doubted * field.thickness_within_reach[observer])) - raised_within_reach
+        further = float(allowance(field.thickness_doubted[observer])) - raised_within_reach
         bound = taken.light_reach + error + sum(extra for _, extra in doubts)
-        allowed.append((f"{TRUST}the optical thickness (×{doubted:.3g}), higher orders", bound * further))
+        allowed.append((f"{whose}, higher orders", bound * further))
     allowed += [(cause, extra * raised_within_reach) for cause, extra in doubts]
     if full_field(hazard_of(limit)) and not radiance:
         area = tight_room_area(wall_points)
         returned, most = field.set_free(), field.set_free(field.extinction_factors)
         allowed.append((f"walls of a room of {area:.0f} m²", wall_return(area, returned)))
-        allowed.append((f"{TRUST}the optical thickness (×{doubted:.3g}), walls", wall_return(area, most - returned)))
+        allowed.append((f"{whose}, walls", wall_return(area, most - returned)))
     low = max(0.0, taken.light - error) + taken.stop + taken.direct
     return Received(tuple(by_origin), low, tuple(part for part in allowed if part[1] > 0), taken.window)
 

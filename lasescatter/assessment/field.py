@@ -16,7 +16,7 @@ from lasescatter.exposure.line import BrightLine, Peak, Window, bright_line, bri
 from lasescatter.exposure.scattered import LEAST_GAP, LegLight, PanelEdges, scattered
 from lasescatter.exposure.sightline import Sightlines
 from lasescatter.exposure.surfaces import stop_light
-from lasescatter.exposure.thickness import optical_thickness
+from lasescatter.exposure.thickness import Thickness, optical_thickness
 from lasescatter.medium.mixture import Mixture
 from lasescatter.scene import Beam, Line
 
@@ -43,7 +43,7 @@ class LineField:
     reaches: Floats
     lights: tuple[LegLight, ...]
     greatest: Greatest
-    thickness: Floats
+    thickness: Thickness
     stop_stated: Floats
     """With extinction. [m⁻²]"""
     stop_compared: Floats
@@ -124,7 +124,7 @@ class LineField:
         )
 
     @property
-    def thickness_within_reach(self) -> Floats:
+    def thickness_within_reach(self) -> Thickness:
         """Optical thickness that no place within reach exceeds by more than a sight line's new chord.
 
         A sight line grows by the reach at most, twice the farthest distance by twice the reach; where the medium
@@ -132,21 +132,33 @@ class LineField:
         """
         return self._once("thickness", 0, self._thickness_within_reach)
 
-    def _thickness_within_reach(self) -> Floats:
+    def _thickness_within_reach(self) -> Thickness:
         shift = np.exp(self.mixture.steepness * self.reaches)
-        return self.thickness * shift + 2 * self.mixture.greatest_extinction(self.points, self.reaches) * self.reaches
+        added = 2 * self.mixture.greatest_extinctions(self.points, self.reaches) * self.reaches
+        return Thickness(
+            total=self.thickness.total * shift + added.sum(axis=0),
+            by_component=self.thickness.by_component * shift + added,
+        )
+
+    @property
+    def thickness_doubted(self) -> Floats:
+        """The same where every extinction may be larger by its factor, (observers,)."""
+        return self.thickness_within_reach.doubted(self.extinction_factors)
+
+    def doubters(self, observer: int) -> list[tuple[str, float]]:
+        """Components whose extinction is in doubt where it matters to an observer, with their factors."""
+        own = self.thickness_within_reach.by_component[:, observer]
+        return [
+            (component.name, float(factor))
+            for component, factor, tau in zip(self.mixture.components, self.extinction_factors, own, strict=True)
+            if factor > 1 and tau > 0
+        ]
 
     @property
     def within_reach(self) -> Floats:
         """Scattered irradiance of each component that no place within reach exceeds, at any load fraction,
         (components, observers). [m⁻²]"""
         return self._once("within reach", 0, lambda: np.sum([light.within_reach for light in self.lights], axis=0))
-
-    @property
-    def extinction_factor(self) -> float:
-        """Largest factor by which the optical thickness may be off."""
-        lit = [c.extinction > 0 for c in self.mixture.components]
-        return float(np.max(self.extinction_factors, where=lit, initial=1.0))
 
     @property
     def _thicknesses_along(self) -> list[Floats]:
@@ -215,6 +227,7 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
         _scattered_part(line, legs, swings, mixture, points[some], reaches[some])
         for some in groups(len(legs), len(points))
     ]
+    thicknesses = [part[2] for part in parts]
     lights = tuple(_joined([part[0][i] for part in parts]) for i in range(len(legs)))
     spot, spot_radius, stop_tau, compared = _stop(beam, line, legs, mixture, points, lights[-1].tau_before)
     hot = 1.0 if line.pulses is None else line.pulses.hot_spot
@@ -237,7 +250,10 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
             fraction=np.concatenate([part[1].fraction for part in parts]),
             error=np.concatenate([part[1].error for part in parts]),
         ),
-        thickness=np.concatenate([part[2] for part in parts]),
+        thickness=Thickness(
+            total=np.concatenate([thickness.total for thickness in thicknesses]),
+            by_component=np.concatenate([thickness.by_component for thickness in thicknesses], axis=1),
+        ),
         stop_stated=compared * np.exp(-stop_tau),
         stop_compared=compared,
         stop_tau=stop_tau,
@@ -252,7 +268,7 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
 
 def _scattered_part(
     line: Line, legs: tuple[Leg, ...], swings: tuple[Swing, ...], mixture: Mixture, points: Floats, reaches: Floats
-) -> tuple[list[LegLight], Greatest, Floats]:
+) -> tuple[list[LegLight], Greatest, Thickness]:
     """Scattered light of some observers; the nodes are let go with it."""
     integrated = scattered(legs, swings, mixture, points, beam_radii(line, legs, points), reaches)
     return (

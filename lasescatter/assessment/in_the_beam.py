@@ -65,7 +65,7 @@ def _one(scene: Scene, beam: Beam, line: Line) -> InTheBeam:
         )
     first = cases[0].comparison
     reach = {case.limit.name: _hazard_distance(beam, line, hot, case) for case in _for_the_eye(cases)}
-    farthest = max(reach, key=lambda name: reach[name])
+    farthest = max(reach, key=lambda name: _without_rounding(reach[name]))
     return InTheBeam(
         beam=beam.name,
         line=line.name,
@@ -91,7 +91,8 @@ def _hazard_distance(beam: Beam, line: Line, hot: float, case: _Case) -> float:
 
 
 def _cases(scene: Scene, beam: Beam, line: Line, hot: float) -> list[_Case]:
-    """Every limit with the observers' time that gives it the largest multiple; the largest at the start first."""
+    """Every limit with the observers' time that gives it the largest multiple; the largest at the start first, of
+    equal ones those for the eye, then in the order of the site file."""
     best: dict[str, _Case] = {}
     for limit in scene.limits:
         if limit.quantity not in ("irradiance", "radiant exposure"):
@@ -105,7 +106,14 @@ def _cases(scene: Scene, beam: Beam, line: Line, hot: float) -> list[_Case]:
                 limit.name not in best or result.ratio > best[limit.name].comparison.ratio
             ):
                 best[limit.name] = _Case(limit, result, mean)
-    return sorted(best.values(), key=lambda case: -case.comparison.ratio)
+    return sorted(
+        best.values(), key=lambda case: (-_without_rounding(case.comparison.ratio), case.limit.tissue == "skin")
+    )
+
+
+def _without_rounding(value: float) -> float:
+    """A value to ten digits: those of two limits that differ by rounding alone are equal, and the first one stands."""
+    return float(f"{value:.9e}")
 
 
 def _times(observers: tuple[Observer, ...]) -> set[tuple[float, float | None]]:
@@ -147,7 +155,9 @@ def _spot(beam: Beam, line: Line, hot: float, where: tuple[str, Leg, float], cas
             float(aperture_mean(beam.profile, radius, 0.0, case.limit.aperture)) * hot * leg.reflected for case in cases
         ]
         direct = means[0] * cases[0].exposure
-        multiple, limit = max((mean * case.multiple, case.limit.name) for mean, case in zip(means, cases, strict=True))
+        multiples = [mean * case.multiple for mean, case in zip(means, cases, strict=True)]
+        top = max(range(len(cases)), key=lambda i: _without_rounding(multiples[i]))
+        multiple, limit = multiples[top], cases[top].limit.name
         card_multiple = leg.reflected * white_card(CARD_DISTANCE) * max(case.multiple for case in cases)
         card_distance = CARD_DISTANCE * math.sqrt(card_multiple)
     return BeamSpot(

@@ -69,7 +69,11 @@ class ComponentSummary:
 
 @dataclass(frozen=True)
 class SizeMovement:
-    """How scattered light moves over the sizes that a load's kind may have."""
+    """How the light of one load moves over the sizes that its kind may have, air and the other loads aside.
+
+    For each observer that of one line: the line where the load's light goes farthest from what it is at the usual
+    size, up or down.
+    """
 
     load: str
     kind: str
@@ -80,11 +84,15 @@ class SizeMovement:
     sizes: tuple[float, ...]
     """Ascending, the usual one among them. [m]"""
     scattered: tuple[tuple[float, ...], ...]
-    """Per observer, per size: scattered light as compared, all lines together. [W m⁻²]"""
+    """Per observer, per size: the load's own share of the scattered light as compared, of the line in `line`.
+    [W m⁻²]"""
     source: str
     factor: tuple[float, ...] = ()
     """Per observer: times which the upper bounds take the scattered light of the load, the largest over the lines.
-    At least the factor of trust."""
+    At least the factor of trust. It multiplies a bound for the worst angle and axis within reach, and so may be less
+    than the movement of the light itself, as at right angles to a polarized beam."""
+    line: tuple[str, ...] = ()
+    """Per observer: name of the line whose light `scattered` holds."""
 
 
 @dataclass(frozen=True)
@@ -190,6 +198,12 @@ class LineExposure:
     """[J m⁻²]"""
     pulse_diffuse: float | None = None
     """From the stop, per pulse, at the stated load. [J m⁻²]"""
+    optical_thickness: float = 0.0
+    """The tau of physics section 8, at the observer's place."""
+    thickness_within_reach: float = 0.0
+    """That no place within reach exceeds: it makes the upper bound, times 1 + 1.5 of it above 0.1."""
+    thickness_doubted: float = 0.0
+    """The same with every load's extinction as much larger as it is in doubt: Σ over components of factor × tau."""
 
 
 @dataclass(frozen=True)
@@ -218,6 +232,10 @@ class ObserverOutcome:
     stop_checks: tuple[StopCheck, ...]
     comparisons: tuple[Comparison, ...]
     hazards: tuple[HazardJudgement, ...]
+    thickness_within_reach: float = 0.0
+    """Largest of the lines' `thickness_within_reach`."""
+    thickness_doubted: float = 0.0
+    """Largest of the lines' `thickness_doubted`."""
 
     def total(self, field_name: str) -> float:
         """Sum of one field of `lines`."""
@@ -284,6 +302,19 @@ class Provenance:
 
 
 @dataclass(frozen=True)
+class Gap:
+    """One scatterer that is not computed at a wavelength, or not from data at that wavelength."""
+
+    component: str
+    """Name of the load, or "air"."""
+    wavelength: float
+    """[m]"""
+    reason: str
+    left_out: bool
+    """True: its light is missing from every sum at that wavelength; False: a reading is used unchanged there."""
+
+
+@dataclass(frozen=True)
 class Assessment:
     """The whole result."""
 
@@ -300,3 +331,5 @@ class Assessment:
     provenance: Provenance
     gaps: tuple[str, ...] = ()
     """What is left out of the sums because no data reach it; with any, nothing is below its limit."""
+    gap_entries: tuple[Gap, ...] = ()
+    """The same by component and wavelength, each pair once."""

@@ -116,8 +116,10 @@ def _size_movement(movement: SizeMovement, observers: tuple[ObserverOutcome, ...
         "usual_m": movement.usual,
         "sizes_m": list(movement.sizes),
         "observers": [
-            {"name": observer.name, "scattered_compared_w_m2": list(light), "factor": factor}
-            for observer, light, factor in zip(observers, movement.scattered, movement.factor, strict=True)
+            {"name": observer.name, "line": line, "own_scattered_w_m2": list(light), "factor": factor}
+            for observer, line, light, factor in zip(
+                observers, movement.line, movement.scattered, movement.factor, strict=True
+            )
         ],
         "source": movement.source,
     }
@@ -171,6 +173,8 @@ def _observer(observer: ObserverOutcome) -> dict[str, Any]:
         "diffuse_w_m2": observer.total("diffuse"),
         "direct_w_m2": observer.total("direct"),
         "optical_thickness": observer.optical_thickness,
+        "optical_thickness_within_reach": observer.thickness_within_reach,
+        "optical_thickness_doubted": observer.thickness_doubted,
         "direct_within_reach": observer.direct_reach,
         "lines": [_line(line) for line in observer.lines],
         "legs": [_leg(row) for row in observer.hand_checks],
@@ -199,6 +203,9 @@ def _line(line: LineExposure) -> dict[str, Any]:
         "diffuse_w_m2": line.diffuse,
         "diffuse_compared_w_m2": line.diffuse_compared,
         "direct_w_m2": line.direct,
+        "optical_thickness": line.optical_thickness,
+        "optical_thickness_within_reach": line.thickness_within_reach,
+        "optical_thickness_doubted": line.thickness_doubted,
     }
     if line.pulse_scattered is not None:
         body |= {

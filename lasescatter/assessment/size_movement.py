@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -118,6 +118,25 @@ def _scaled_shape(shape: SizeShape, factor: float) -> SizeShape:
     return SizeTable(tuple(radius * factor for radius in shape.radii), shape.density)
 
 
+@dataclass(frozen=True)
+class _AtSizes:
+    """One line's light at every size of a load, per watt, each (sizes, observers). [m⁻²]"""
+
+    sizes: tuple[float, ...]
+    """[m]"""
+    compared: Floats
+    """Of all components."""
+    own: Floats
+    """Share of the load in it."""
+    bound: Floats
+    """Of the load alone, within reach."""
+
+    def factors(self, usual: int) -> Floats:
+        """Times which the light of the load may be that at the usual size, for its upper bound, (observers,)."""
+        compared, bound = (_peak_over_usual(self.sizes, values, usual) for values in (self.compared, self.bound))
+        return np.maximum(compared, bound)
+
+
 def _of_load(
     load: Load,
     span: SizeSpan,
@@ -127,43 +146,64 @@ def _of_load(
     powers: dict[str, Floats],
 ) -> tuple[SizeMovement, dict[str, LineField]]:
     sizes = sizes_over(span)
-    column = sizes.index(span.usual)
-    light_at = np.zeros((len(sizes), len(next(iter(powers.values())))))
+    usual = sizes.index(span.usual)
     raised = dict(fields)
-    bounds: dict[str, Floats] = {}
+    largest = np.ones(len(next(iter(powers.values()))))
+    own: dict[str, Floats] = {}
     for key, field in fields.items():
-        compared = np.repeat(field.greatest.irradiance[None], len(sizes), axis=0)
-        if not optics.fault(load, field.line.wavelength):
-            index = 1 + optics.present(field.line.wavelength).index(load)
-            others = [coarse.component(scaled(load, size / span.usual), field.line.wavelength) for size in sizes]
-            found, bounds[key] = _at_sizes(field, index, others)
-            # The usual size is the load as it is, computed with full care.
-            compared[np.arange(len(sizes)) != column] = found[np.arange(len(sizes)) != column]
-            extinction = np.array([[other.extinction] for other in others])
-            raised[key] = _with_extinction(field, index, float(peak_over(sizes, extinction)[0]))
-        light_at += powers[key] * compared
-    usual = light_at[column]
-    moved = peak_over(sizes, light_at) / np.where(usual > 0, usual, np.inf)
-    largest = np.ones(len(usual))
-    for key, bound in bounds.items():
-        index = 1 + optics.present(fields[key].line.wavelength).index(load)
-        raised[key] = _raised(raised[key], index, np.maximum(moved, peak_over(sizes, bound) / bound[column]))
+        wavelength = field.line.wavelength
+        own[key] = np.zeros((len(sizes), len(largest)))
+        if optics.fault(load, wavelength):
+            continue
+        index = 1 + optics.present(wavelength).index(load)
+        # The usual size is the load as it is, computed with full care.
+        components = [
+            field.mixture.components[index]
+            if size == span.usual
+            else coarse.component(scaled(load, size / span.usual), wavelength)
+            for size in sizes
+        ]
+        found = _at_sizes(field, index, components, sizes)
+        own[key] = powers[key] * found.own
+        extinction = np.array([[component.extinction] for component in components])
+        raised[key] = _raised(field, index, found.factors(usual), float(peak_over(sizes, extinction)[0]))
         largest = np.maximum(largest, raised[key].factors[index])
+    scattered, lines = _farthest([(fields[key].line.name, light) for key, light in own.items()], usual)
     movement = SizeMovement(
         load=load.name,
         kind=load.kind,
         what=span.what,
         usual=span.usual,
         sizes=sizes,
-        scattered=tuple(tuple(row) for row in light_at.T.tolist()),
+        scattered=scattered,
         source=span.source,
         factor=tuple(largest.tolist()),
+        line=lines,
     )
     return movement, raised
 
 
-def _at_sizes(field: LineField, index: int, others: list[Component]) -> tuple[Floats, Floats]:
-    """Light as compared and the bound within reach of the load alone, per watt, each (sizes, observers). [m⁻²]"""
+def _peak_over_usual(sizes: tuple[float, ...], values: Floats, usual: int) -> Floats:
+    """Largest value over the sizes, relative to that at the usual one, (observers,)."""
+    return np.asarray(peak_over(sizes, values) / np.where(values[usual] > 0, values[usual], np.inf))
+
+
+def _farthest(own: list[tuple[str, Floats]], usual: int) -> tuple[tuple[tuple[float, ...], ...], tuple[str, ...]]:
+    """Per observer the light of the line that goes farthest from its value at the usual size, and the line's name.
+
+    Parameters
+    ----------
+    own : list of (name, ndarray (sizes, observers))
+    """
+    light = np.stack([values for _, values in own])
+    log = np.log(np.maximum(light, np.finfo(float).tiny))
+    line = np.abs(log - log[:, usual, None]).max(axis=1).argmax(axis=0)
+    chosen = light[line, :, np.arange(light.shape[-1])]
+    return tuple(tuple(row) for row in chosen.tolist()), tuple(own[i][0] for i in line)
+
+
+def _at_sizes(field: LineField, index: int, others: list[Component], sizes: tuple[float, ...]) -> _AtSizes:
+    """The light of one line with the component at every size."""
     components = list(field.mixture.components)
     # The largest particles have the matrix that changes fastest with angle: their nodes serve all sizes.
     components[index] = others[-1]
@@ -175,24 +215,20 @@ def _at_sizes(field: LineField, index: int, others: list[Component]) -> tuple[Fl
         lights = scattered(field.legs, field.swings, mixture, points, radii, reaches, COARSE_TOLERANCE)
         exchanged = exchange(lights, mixture, index, points, reaches)
         found = [exchanged.light(other) for other in others]
-        parts.append(([light.compared for light in found], [light.within_reach for light in found]))
-    compared, bound = (np.concatenate([part[i] for part in parts], axis=1) for i in (0, 1))
-    return compared, bound
+        parts.append(
+            [np.stack([getattr(light, name) for light in found]) for name in ("compared", "own", "within_reach")]
+        )
+    return _AtSizes(sizes, *(np.concatenate([part[i] for part in parts], axis=1) for i in range(3)))
 
 
-def _with_extinction(field: LineField, index: int, extinction: float) -> LineField:
-    """A field whose optical thickness may be that of an extinction of one component [m⁻¹]."""
-    factors = field.extinction_factors.copy()
-    factors[index] = max(factors[index], extinction / field.mixture.components[index].extinction)
-    return replace(field, extinction_factors=factors)
-
-
-def _raised(field: LineField, index: int, moved: Floats) -> LineField:
-    """A field whose light of one component may be as much more as it moves over the sizes.
+def _raised(field: LineField, index: int, moved: Floats, extinction: float) -> LineField:
+    """A field whose light of one component may be as much more as it moves over the sizes, and whose optical
+    thickness may be that of an extinction of the component [m⁻¹].
 
     The factor multiplies the bound within reach, so it also covers that bound's own movement: near a null of
     polarization and for forward light the two differ.
     """
-    factors = field.factors.copy()
+    factors, extinction_factors = field.factors.copy(), field.extinction_factors.copy()
     factors[index] = np.maximum(factors[index], moved)
-    return replace(field, factors=factors)
+    extinction_factors[index] = max(extinction_factors[index], extinction / field.mixture.components[index].extinction)
+    return replace(field, factors=factors, extinction_factors=extinction_factors)

@@ -48,6 +48,8 @@ class Exchanged:
 
     compared: Floats
     """Of all components, the greatest over the load fraction. [m⁻²]"""
+    own: Floats
+    """Share of the exchanged component in it. [m⁻²]"""
     within_reach: Floats
     """Of the exchanged component alone, bound for every place within the reach, at any load fraction. [m⁻²]"""
 
@@ -64,14 +66,16 @@ class Exchange:
         """Light with the extinction, scattering and matrix of another component in the place of the one."""
         parts = [self._of_leg(leg, other) for leg in self.legs]
         owner = np.concatenate([leg.integrated.nodes.owner for leg in self.legs])
-        own, load, tau = (np.concatenate([part[i] for part in parts]) for i in range(3))
-        f = worst_fraction(owner, own, load, tau, self.count)[owner]
+        steady, load, tau, bright = (np.concatenate([part[i] for part in parts]) for i in range(4))
+        f = worst_fraction(owner, steady, load, tau, self.count)[owner]
+        shielded = np.exp(-f * tau)
         return Exchanged(
-            compared=sums_by_owner(owner, (own + f * load) * np.exp(-f * tau), self.count),
-            within_reach=np.sum([part[3] for part in parts], axis=0),
+            compared=sums_by_owner(owner, (steady + f * load) * shielded, self.count),
+            own=sums_by_owner(owner, (bright if self.component.steady else f * bright) * shielded, self.count),
+            within_reach=np.sum([part[4] for part in parts], axis=0),
         )
 
-    def _of_leg(self, leg: _Leg, other: Component) -> tuple[Floats, Floats, Floats, Floats]:
+    def _of_leg(self, leg: _Leg, other: Component) -> tuple[Floats, Floats, Floats, Floats, Floats]:
         nodes = leg.integrated.nodes
         f11, f12 = other.matrix.at(nodes.theta)
         bright = other.scattering * leg.value * (f11 + polarised_part(f12, leg.integrated.light.swing, leg.turn))
@@ -83,7 +87,8 @@ class Exchange:
             load, tau_load = load + bright, tau_load + thickness
         passed = nodes.weight * np.exp(-tau_steady)
         near = other.scattering * leg.value * other.matrix.greatest_near(nodes.theta, leg.turned) * leg.nearer
-        return passed * steady, passed * load, tau_load, sums_by_owner(nodes.owner, nodes.weight * near, self.count)
+        bound = sums_by_owner(nodes.owner, nodes.weight * near, self.count)
+        return passed * steady, passed * load, tau_load, passed * bright, bound
 
 
 def exchange(

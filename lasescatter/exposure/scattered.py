@@ -92,7 +92,7 @@ class Nodes:
     tau_load: Floats
     """The rest of it."""
     tau_sight: Floats
-    """Share of both that lies between element and observer."""
+    """Share of both that lies between element and observer, (components, nodes)."""
     panels: Panels
 
 
@@ -263,7 +263,7 @@ def _nodes(
         unpolarised=plain.ravel(),
         tau_steady=tau[steady].sum(axis=0).ravel(),
         tau_load=tau[~steady].sum(axis=0).ravel(),
-        tau_sight=tau_sight.sum(axis=0).ravel(),
+        tau_sight=tau_sight.reshape(components, -1),
         panels=panels,
     )
 

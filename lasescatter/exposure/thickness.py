@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -16,11 +18,34 @@ COUNTED_SHARE = 0.99
 
 SINGLE_SCATTERING_UP_TO = 0.1
 NOTHING_BELOW_ABOVE = 0.5
+# Up to here there are figures for orders two and up: one to two times the first (trials for an open bay).
+FIGURES_UP_TO = 2.0
 HIGHER_ORDERS_PER_THICKNESS = 1.5
 
 
-def optical_thickness(lights: tuple[IntegratedLeg, ...], mixture: Mixture, points: Floats) -> Floats:
-    """Largest extinction optical thickness that an observer's scattered light meets, (observers,).
+@dataclass(frozen=True)
+class Thickness:
+    """Largest optical thickness that an observer's scattered light meets."""
+
+    total: Floats
+    """Of all components together, (observers,)."""
+    by_component: Floats
+    """Of each component by itself, each where it is largest: they sum to `total` or more, (components, observers)."""
+
+    def doubted(self, factors: Floats) -> Floats:
+        """Largest thickness where each component's extinction may be so many times larger, (observers,).
+
+        total + Σ (factor − 1) × component: no path exceeds it, as none exceeds the total nor any component's own.
+
+        Parameters
+        ----------
+        factors : ndarray (components,)
+        """
+        return np.asarray(self.total + (factors - 1) @ self.by_component)
+
+
+def optical_thickness(lights: tuple[IntegratedLeg, ...], mixture: Mixture, points: Floats) -> Thickness:
+    """Largest extinction optical thickness that an observer's scattered light meets.
 
     The largest of: along the beam; along any sight line to it; and across the load by its shortest dimension,
     or by twice the distance from observer to the farthest part of the beam where that is shorter. Across, a load is
@@ -32,33 +57,41 @@ def optical_thickness(lights: tuple[IntegratedLeg, ...], mixture: Mixture, point
         [m]
     """
     count = len(points)
-    along = np.zeros(count)
-    sight = np.zeros(count)
+    parts = len(mixture.components)
+    # The last row is that of all components together.
+    along, sight = np.zeros((parts + 1, count)), np.zeros((parts + 1, count))
     farthest = np.zeros(count)
-    crossed = np.zeros(len(mixture.components), dtype=bool)
-    densest = np.ones((len(mixture.components), count))
+    crossed = np.zeros(parts, dtype=bool)
+    densest = np.ones((parts, count))
     for light in lights:
         leg = light.light.leg
         end = _counted_end(light, count) if np.isinf(leg.length) else np.full(count, leg.length)
         tip = leg.origin + end[:, None] * leg.direction
-        along = np.maximum(along, light.light.tau_before.sum() + mixture.thicknesses(leg.origin, tip).sum(axis=0))
+        before = light.light.tau_before[:, None]
+        along = np.maximum(along, _with_total(before + mixture.thicknesses(leg.origin, tip)))
         for place in (np.broadcast_to(leg.origin, points.shape), tip):
-            sight = np.maximum(sight, mixture.thicknesses(place, points).sum(axis=0))
+            sight = np.maximum(sight, _with_total(mixture.thicknesses(place, points)))
             farthest = np.maximum(farthest, np.linalg.norm(place - points, axis=-1))
             for i, component in enumerate(mixture.components):
                 here = np.maximum(component.profile.value(place), component.profile.value(points))
                 densest[i] = np.maximum(densest[i], here)
         nodes = light.nodes
         counted = nodes.theta <= light.light.sight.angle_at(end)[nodes.owner]
-        np.maximum.at(sight, nodes.owner[counted], nodes.tau_sight[counted])
+        for row, tau in zip(sight, _with_total(nodes.tau_sight[:, counted]), strict=True):
+            np.maximum.at(row, nodes.owner[counted], tau)
         crossed |= np.array(
             [c.profile.span(leg.origin, leg.direction, leg.length) is not None for c in mixture.components]
         )
-    across = np.zeros(count)
-    for component, meets, most in zip(mixture.components, crossed, densest, strict=True):
-        if meets:
-            across += component.extinction * most * np.minimum(component.profile.shortest_dimension(), 2 * farthest)
-    return np.maximum.reduce([along, sight, across])
+    across = np.zeros((parts, count))
+    for i, (component, most) in enumerate(zip(mixture.components, densest, strict=True)):
+        if crossed[i]:
+            across[i] = component.extinction * most * np.minimum(component.profile.shortest_dimension(), 2 * farthest)
+    largest = np.maximum.reduce([along, sight, _with_total(across)])
+    return Thickness(total=largest[-1], by_component=largest[:-1])
+
+
+def _with_total(by_component: Floats) -> Floats:
+    return np.concatenate([by_component, by_component.sum(axis=0, keepdims=True)])
 
 
 def _counted_end(light: IntegratedLeg, count: int) -> Floats:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from lasescatter.limits.compare import TRUST, Comparison, HazardJudgement, Received, compare, covers_time, verdict_of
 from lasescatter.limits.hazards import (
@@ -15,7 +15,7 @@ from lasescatter.limits.hazards import (
     hazards_due,
     within,
 )
-from lasescatter.limits.verdict import ABOVE, NOT_ESTABLISHED, Verdict, worst
+from lasescatter.limits.verdict import ABOVE, BELOW, NOT_ESTABLISHED, Verdict, worst
 from lasescatter.scene import Beam, Hazard, Limit, Line, Observer
 
 HAZARDS: tuple[Hazard, ...] = ("retina thermal", "retina photochemical", "cornea and lens", "skin")
@@ -25,6 +25,19 @@ PLACEHOLDERS = ("EXAMPLE", "TODO", "TBD", "REPLACE", "XXX", "?")
 
 # Gives what a limit's detector takes in of a line, or why that cannot be told.
 ReceivedBy = Callable[[Line, Limit], Received | str]
+
+
+@dataclass(frozen=True)
+class Gate:
+    """Something outside the limits for which nothing that some lines act on may be called below."""
+
+    reason: str
+    lines: frozenset[str] | None = None
+    """Keys of the lines; None: all."""
+
+    def holds(self, line: Line) -> bool:
+        """Whether it keeps a line's light from being below."""
+        return self.lines is None or line.key in self.lines
 
 
 @dataclass(frozen=True)
@@ -45,26 +58,29 @@ def judge(
     limits: tuple[Limit, ...],
     received_by: ReceivedBy,
     not_judged: tuple[tuple[Hazard, str], ...],
-    gates: tuple[str, ...],
+    gates: tuple[Gate, ...],
 ) -> Judgement:
     """Judge every hazard that is due for one observer.
 
     Parameters
     ----------
-    gates : tuple of str
-        Reasons outside the limits for which nothing may be called below: direct light within reach and the like.
+    gates : tuple of Gate
+        Reasons outside the limits for which nothing may be called below: direct light within reach and the like. A
+        gate of some lines touches the comparisons of those and the hazards that they act on.
     """
     not_judged = tuple((hazard, reason) for hazard, reason in not_judged if not is_placeholder(reason))
     left_out = dict(not_judged)
+    held = _held(gates, observer, beams, limits, left_out)
     comparisons: list[Comparison] = []
     judged: dict[Hazard, list[HazardJudgement]] = {}
     for duration in observer.durations:
         made, due, missing = _over_lines(observer, beams, limits, received_by, duration)
+        made = [_gated(comparison, gates, beams) for comparison in made]
         comparisons.extend(made)
         for hazard in HAZARDS:
             if hazard in left_out or (hazard not in due and not any(c.hazard == hazard for c in made)):
                 continue
-            judged.setdefault(hazard, []).append(_hazard(hazard, made, missing.get(hazard, ())))
+            judged.setdefault(hazard, []).append(_hazard(hazard, made, missing.get(hazard, ()), held[hazard]))
     hazards = [_worst_duration(found) for found in judged.values()]
     hazards += [
         HazardJudgement(hazard, None, None, None, NOT_ESTABLISHED, (), (), reason)
@@ -82,7 +98,7 @@ def judge(
     verdict = worst([hazard.verdict for hazard in counted])
     if gates and verdict != ABOVE:
         verdict = NOT_ESTABLISHED
-    reasons = gates + tuple(reason for hazard in counted for reason in hazard.reasons)
+    reasons = tuple(gate.reason for gate in gates) + tuple(reason for hazard in counted for reason in hazard.reasons)
     if not counted:
         reasons += ("every hazard that is due is listed as not judged",)
     return Judgement(
@@ -93,6 +109,36 @@ def judge(
         comparisons=tuple(comparisons),
         hazards=tuple(hazards),
     )
+
+
+def _held(
+    gates: tuple[Gate, ...],
+    observer: Observer,
+    beams: tuple[Beam, ...],
+    limits: tuple[Limit, ...],
+    left_out: dict[Hazard, str],
+) -> dict[Hazard, tuple[str, ...]]:
+    """Per hazard the reasons of the gates of those lines that act on it; of lines that act on none: for each."""
+    acting: dict[Hazard, list[Line]] = {hazard: [] for hazard in HAZARDS}
+    for line in (line for beam in beams for line in beam.lines):
+        hazards = {hazard for duration in observer.durations for hazard in hazards_due(line, duration, observer.daily)}
+        hazards |= {hazard_of(limit) for limit in limits if within(line.wavelength, limit.wavelengths)}
+        for hazard in hazards.difference(left_out):
+            acting[hazard].append(line)
+    held: dict[Hazard, tuple[str, ...]] = dict.fromkeys(HAZARDS, ())
+    for gate in gates:
+        touched = [hazard for hazard in HAZARDS if any(gate.holds(line) for line in acting[hazard])]
+        for hazard in touched or HAZARDS:
+            held[hazard] += (gate.reason,)
+    return held
+
+
+def _gated(comparison: Comparison, gates: tuple[Gate, ...], beams: tuple[Beam, ...]) -> Comparison:
+    """A comparison that a gate keeps from being below."""
+    line = next(line for b in beams if b.name == comparison.beam for line in b.lines if line.name == comparison.line)
+    if comparison.verdict == BELOW and any(gate.holds(line) for gate in gates):
+        return replace(comparison, verdict=NOT_ESTABLISHED)
+    return comparison
 
 
 def is_placeholder(text: str) -> bool:
@@ -137,7 +183,8 @@ def _against(
         if hazard_of(limit) != hazard or not within(line.wavelength, limit.wavelengths):
             continue
         received = received_by(line, limit)
-        if is_placeholder(limit.source) or is_placeholder(limit.entered_by):
+        example = is_placeholder(limit.source) or is_placeholder(limit.entered_by)
+        if example:
             faults.append(f'limit "{limit.name}" is still an example of the starter file: enter your own, with source')
         if isinstance(received, str):
             faults.append(f'limit "{limit.name}": {received}')
@@ -146,7 +193,8 @@ def _against(
         if isinstance(result, str):
             faults.append(result)
         elif result is not None:
-            made.append(result)
+            # Against a limit that is nobody's yet nothing is below.
+            made.append(replace(result, verdict=NOT_ESTABLISHED) if example and result.verdict == BELOW else result)
     return made, faults
 
 
@@ -180,8 +228,13 @@ def _time_faults(line: Line, hazard: Hazard, duration: float) -> list[str]:
     return faults
 
 
-def _hazard(hazard: Hazard, made: list[Comparison], missing: tuple[str, ...]) -> HazardJudgement:
-    """Per line the limit with the largest ratio; then the lines are added."""
+def _hazard(hazard: Hazard, made: list[Comparison], missing: tuple[str, ...], held: tuple[str, ...]) -> HazardJudgement:
+    """Per line the limit with the largest ratio; then the lines are added.
+
+    What is missing and what holds the hazard back from outside the limits keep it from being below, never from being
+    above.
+    """
+    open_for = held + missing
     governing: dict[tuple[str, str], Comparison] = {}
     for comparison in made:
         if comparison.hazard != hazard:
@@ -198,17 +251,17 @@ def _hazard(hazard: Hazard, made: list[Comparison], missing: tuple[str, ...]) ->
     }
     parts = tuple((line, c.limit, c.ratio) for (_, line), c in governing.items())
     if not parts:
-        return HazardJudgement(hazard, None, None, None, NOT_ESTABLISHED, missing, (), "")
+        return HazardJudgement(hazard, None, None, None, NOT_ESTABLISHED, open_for, (), "")
     ratio = sum(part[2] for part in parts)
     low, high = (sum(bound[i] for bound in bounds.values()) for i in (0, 1))
     verdict = verdict_of(low, high)
-    reasons = missing
+    reasons = open_for
     if verdict == NOT_ESTABLISHED:
         reasons += (
             f"{hazard}: the bounds {low:.3g} and {high:.3g} of the limit lie on both sides of it"
             f"{_held_back([c for c in made if c.hazard == hazard]) or _widest(list(governing.values()))}",
         )
-    elif verdict != ABOVE and missing:
+    elif verdict != ABOVE and open_for:
         verdict = NOT_ESTABLISHED
     return HazardJudgement(hazard, ratio, low, high, verdict, reasons, parts, "")
 
@@ -223,7 +276,8 @@ def _held_back(made: list[Comparison]) -> str:
     if total > 1:
         return ""
     causes = dict.fromkeys(cause for c in made for cause, _ in c.allowances if cause.startswith(TRUST))
-    return f" (held back by {', '.join(causes)}; without it the upper bound is {total:.3g})"
+    without = "it" if len(causes) == 1 else "all of these"
+    return f" (held back by {', '.join(causes)}; without {without} the upper bound is {total:.3g})"
 
 
 def _widest(governing: list[Comparison]) -> str:

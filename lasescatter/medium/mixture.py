@@ -65,7 +65,7 @@ class Mixture:
         """Greatest relative change of any component per metre inside its shape [m⁻¹]."""
         return max(component.profile.steepness() for component in self.components)
 
-    def greatest_extinction(self, points: Floats, within: Floats | float) -> Floats:
-        """Extinction that no place within a distance [m] of points (..., 3) exceeds [m⁻¹], shape (...)."""
-        most = [c.extinction * c.profile.greatest_near(points, within) for c in self.components]
-        return np.sum(most, axis=0)
+    def greatest_extinctions(self, points: Floats, within: Floats | float) -> Floats:
+        """Extinction of each component that no place within a distance [m] of points (..., 3) exceeds [m⁻¹], shape
+        (components, ...)."""
+        return np.stack([c.extinction * c.profile.greatest_near(points, within) for c in self.components])

@@ -522,3 +522,16 @@ def test_thickness_allows_for_the_reach():
     there = only(replace(scene, observers=(observer(position=(0.5, 39.68, 1.2), reach=0.0),)))
     assert home.optical_thickness < 0.1 < there.optical_thickness
     assert home.comparisons[0].ratio_high >= there.comparisons[0].ratio
+
+
+@pytest.mark.parametrize("order", [1, -1])
+def test_of_equal_multiples_the_eye_stands_everywhere(order):
+    """Limits of the same height for cornea and skin: one name, whichever comes first in the site file."""
+    infrared = replace(bay().beams[0].lines[0], wavelength=10.6e-6, divergence=3e-3)
+    both = (
+        skin(name="skin far", wavelengths=(1.4e-6, 1e-3), value=1000.0, aperture=3.5e-3),
+        limit(name="cornea", tissue="cornea and lens", wavelengths=(1.4e-6, 1e-3), value=1000.0, aperture=3.5e-3),
+    )
+    scene = bay(beams=(replace(bay().beams[0], lines=(infrared,)),), limits=both[::order], loads=())
+    (entry,) = assess(scene).in_the_beam
+    assert {entry.limit, entry.hazard_limit, *(spot.limit for spot in entry.spots)} == {"cornea"}

@@ -7,7 +7,7 @@ from assessment.sites import LoadReading, bay, haze, limit, line, observer, repl
 
 from lasescatter.assessment.assess import assess
 from lasescatter.assessment.record import record
-from lasescatter.matter import IndexTable, Material, Trust
+from lasescatter.matter import HenyeyGreenstein, IndexTable, Material, Trust
 
 VISIBLE = IndexTable((355e-9, 1064e-9), (1.43, 1.42), (1e-7, 1e-6), (False, False), "invented glycol", "nowhere")
 
@@ -81,3 +81,23 @@ def test_within_the_data_there_is_no_gap():
     share = (532 - 355) / (1064 - 355)
     assert haze_summary.index.real == pytest.approx(1.43 - 0.01 * share, rel=1e-12)
     assert haze_summary.kind == "glycol haze"
+
+
+def test_rows_say_what_the_observer_is_told_and_gaps_name_component_and_wavelength():
+    found = infrared(kind())
+    (person,) = found.observers
+    assert {h.verdict for h in person.hazards} == {c.verdict for c in person.comparisons} == {"not established"}
+    body = record(found)["observers"][0]
+    assert {row["verdict"] for row in (*body["hazards"], *body["comparisons"])} == {"not established"}
+    entries = {(gap.component, gap.wavelength): gap for gap in found.gap_entries}
+    assert set(entries) == {("air", 10.6e-6), ("test haze", 10.6e-6)}
+    assert all(gap.left_out and gap.reason in found.gaps for gap in found.gap_entries)
+
+
+def test_a_stand_in_read_elsewhere_is_a_gap_that_is_not_left_out():
+    cloud = haze(
+        modes=(), material=None, stand_in=HenyeyGreenstein(0.7), albedo=0.9,
+        reading=LoadReading("extinction", 0.01, 550e-9),
+    )  # fmt: skip
+    (gap,) = assess(bay(loads=(cloud,))).gap_entries
+    assert (gap.component, gap.wavelength, gap.left_out) == ("test haze", 532e-9, False)

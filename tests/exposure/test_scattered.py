@@ -255,7 +255,19 @@ def test_optical_thickness_of_a_box_and_of_all_space():
     path = leg([0, 0, 0], [4, 0, 0])
     box = mixture(component(isotropic(), 0.1, 0.1, BOX))
     lights = scattered((path,), (PLAIN,), box, points, np.zeros((1, 1)))
-    assert_allclose(optical_thickness(lights, box, points), 0.1 * 2.0, rtol=1e-9)
+    assert_allclose(optical_thickness(lights, box, points).total, 0.1 * 2.0, rtol=1e-9)
     everywhere = mixture(component(isotropic(), 0.01, 0.01))
     lights = scattered((path,), (PLAIN,), everywhere, points, np.zeros((1, 1)))
-    assert_allclose(optical_thickness(lights, everywhere, points), 0.01 * 2 * np.hypot(2, 5), rtol=1e-9)
+    assert_allclose(optical_thickness(lights, everywhere, points).total, 0.01 * 2 * np.hypot(2, 5), rtol=1e-9)
+
+
+def test_doubted_thickness_of_parts():
+    """Two unbounded media: each its own share of twice the farthest distance, and each its own factor."""
+    points = np.array([[2.0, 5.0, 0.0]])
+    two = mixture(component(isotropic(), 0.01, 0.01), component(isotropic(), 0.002, 0.002, name="other"))
+    lights = scattered((leg([0, 0, 0], [4, 0, 0]),), (PLAIN,), two, points, np.zeros((1, 1)))
+    found = optical_thickness(lights, two, points)
+    across = 2 * np.hypot(2, 5)
+    assert_allclose(found.total, 0.012 * across, rtol=1e-9)
+    assert_allclose(found.by_component[:, 0], [0.01 * across, 0.002 * across], rtol=1e-9)
+    assert_allclose(found.doubted(np.array([1.0, 3.0])), (0.01 + 3 * 0.002) * across, rtol=1e-9)

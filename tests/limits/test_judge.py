@@ -8,7 +8,7 @@ from limits.entries import blue, limit, observer, skin
 
 from lasescatter.limits.compare import Received
 from lasescatter.limits.hazards import hazards_due
-from lasescatter.limits.judge import judge
+from lasescatter.limits.judge import Gate, judge
 
 EYE_BLUE_SKIN = (limit(), blue(), skin())
 
@@ -86,8 +86,8 @@ def test_time_not_covered():
 
 
 def test_gates_hold_back_below_but_never_above():
-    assert judged(gates=("direct light within reach",)).verdict == "not established"
-    assert judged(value=11.0, gates=("direct light within reach",)).verdict == "above limit"
+    assert judged(gates=(Gate("direct light within reach"),)).verdict == "not established"
+    assert judged(value=11.0, gates=(Gate("direct light within reach"),)).verdict == "above limit"
 
 
 def test_ratios_add_over_beams_whichever_limit_judged_them():
@@ -199,3 +199,57 @@ def test_bounds_on_both_sides_name_what_widens_them():
     found = judge(observer(), (beam(),), EYE_BLUE_SKIN, received(9.0, 8.9, 12.0), (), ())
     assert found.verdict == "not established"
     assert any("0.89 and 1.2 of the limit" in reason and "numerical error" in reason for reason in found.reasons)
+
+
+def test_a_gate_stands_in_the_rows_of_its_hazards_and_comparisons():
+    """Rows say what the observer's verdict says; a gate of one line leaves the hazards of another alone."""
+    green, far = line(name="green", key="g"), line(name="far", wavelength=1550e-9, key="f")
+    beams = (beam(lines=(green, far)),)
+    limits = (
+        limit(),
+        blue(),
+        skin(wavelengths=(400e-9, 1e-3)),
+        limit(name="front", tissue="cornea and lens", wavelengths=(1400e-9, 1e-3)),
+    )
+    gate = Gate("a load is left out at 1550 nm", frozenset({"f"}))
+    found = judged(limits, beams=beams, gates=(gate,))
+    verdicts = {h.hazard: h.verdict for h in found.hazards}
+    assert verdicts == {
+        "retina thermal": "below limit",
+        "retina photochemical": "below limit",
+        "cornea and lens": "not established",
+        "skin": "not established",
+    }
+    assert all((gate.reason in h.reasons) == (h.verdict == "not established") for h in found.hazards)
+    assert {c.line: c.verdict for c in found.comparisons} == {"green": "below limit", "far": "not established"}
+    assert found.reasons == (gate.reason,)
+    everywhere = judged(limits, beams=beams, gates=(Gate("for all"),))
+    assert {h.verdict for h in everywhere.hazards} == {c.verdict for c in everywhere.comparisons} == {"not established"}
+
+
+def test_a_gate_leaves_what_is_above_above():
+    found = judged(value=11.0, gates=(Gate("direct light within reach"),))
+    verdicts = {h.hazard: h.verdict for h in found.hazards}
+    assert verdicts == {
+        "retina thermal": "above limit", "retina photochemical": "above limit", "skin": "not established",
+    }  # fmt: skip
+    assert all("direct light within reach" in h.reasons for h in found.hazards)
+    assert {c.limit: c.verdict for c in found.comparisons} == {
+        "eye": "above limit", "blue": "above limit", "skin": "not established",
+    }  # fmt: skip
+
+
+def test_a_gate_of_a_line_that_acts_on_nothing_judged_still_holds_the_observer():
+    far = line(name="far", wavelength=1550e-9, key="f")
+    beams = (beam(lines=(line(key="g"), far)),)
+    left = (("skin", "covered by the clothing rule"), ("cornea and lens", "goggles by rule"))
+    found = judged((limit(), blue()), beams=beams, not_judged=left, gates=(Gate("left out", frozenset({"f"})),))
+    assert found.verdict == "not established"
+    assert {h.verdict for h in found.hazards} == {"not established"}
+
+
+def test_against_an_example_no_comparison_is_below():
+    found = judged((limit(source="EXAMPLE: edition"), blue(), skin()))
+    assert {c.limit: c.verdict for c in found.comparisons} == {
+        "eye": "not established", "blue": "below limit", "skin": "below limit",
+    }  # fmt: skip

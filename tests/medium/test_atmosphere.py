@@ -195,14 +195,14 @@ def test_across_takes_the_densest_air_of_beam_and_observer():
     lights = scattered((down,), (PLAIN,), Mixture((air,)), observer, np.zeros((1, 1)))
     farthest = np.hypot(2_000.0, 150.0)
     dense = 1 / float(model.at_altitude(2_000.0)[2])
-    assert optical_thickness(lights, Mixture((air,)), observer)[0] == pytest.approx(
+    assert optical_thickness(lights, Mixture((air,)), observer).total[0] == pytest.approx(
         1e-6 * dense * 2 * farthest, rel=1e-9
     )
 
 
-def test_greatest_extinction_within_a_distance():
+def test_greatest_extinctions_within_a_distance():
     air = Component("air", 1e-5, 1e-5, isotropic(), SEA, True)
     haze = Component("haze", 1e-3, 1e-3, isotropic(), Unbounded(), False)
     mixture = Mixture((air, haze))
-    assert mixture.greatest_extinction(np.array([at(100.0)]), 100.0) == pytest.approx([1.01e-3], rel=1e-12)
+    assert mixture.greatest_extinctions(np.array([at(100.0)]), 100.0)[:, 0] == pytest.approx([1e-5, 1e-3], rel=1e-12)
     assert mixture.steepness == SEA.steepness() == pytest.approx(1 / 5812, rel=1e-3)
