@@ -129,8 +129,11 @@ def particles_list_command(rules: Rules = None, as_json: AsJson = False) -> None
 def particles_show_command(
     kind: Annotated[str, typer.Argument(metavar="KIND", help='Name of a kind, for example "glycol haze".')],
     wavelength: Annotated[
-        list[str], typer.Option("--wavelength", "-w", metavar="W", help='"532 nm"; may be given several times.')
-    ],
+        list[str] | None,
+        typer.Option(
+            "--wavelength", "-w", metavar="W", help='"532 nm"; may be given several times; 532 nm if left out.'
+        ),
+    ] = None,
     load: Annotated[
         list[str] | None,
         typer.Option(
@@ -151,7 +154,7 @@ def particles_show_command(
     """Show a kind's optics at wavelengths, over its sizes, and what instruments would read of a load."""
     from lasescatter.commands.particles import show_kind
 
-    show_kind(kind, wavelength, load or [], humidity, plot, rules, as_json)
+    show_kind(kind, wavelength or [], load or [], humidity, plot, rules, as_json)
 
 
 @app.command("schema")

@@ -14,7 +14,9 @@ from lasescatter.commands.sources import STANDARD_INPUT, site_from
 from lasescatter.commands.steps import Steps
 from lasescatter.limits.verdict import ABOVE, NOT_ESTABLISHED
 from lasescatter.problems import Problem, SiteError
+from lasescatter.report.own_kinds import own_kinds
 from lasescatter.report.size_movement import size_warnings
+from lasescatter.report.text_page import TextPage
 from lasescatter.report.typography import plain
 
 PAGE_SIZES = ("A4", "Letter")
@@ -56,8 +58,9 @@ def assess_site(
         for path in written:
             typer.echo(f"wrote {plain(str(path))}{' (replaced)' if path in replaced else ''}")
     if not quiet:
-        for line in size_warnings(assessment):
-            typer.echo(line, err=True)
+        hints = TextPage(Console(stderr=True, highlight=False, markup=False))
+        for line in (*own_kinds(scene.loads), *size_warnings(assessment)):
+            hints.say(line, indent=2)
     if replaced and (as_json or quiet):
         files = "1 file" if len(replaced) == 1 else f"{len(replaced)} files"
         typer.echo(f"replaced {files} of an earlier run in {plain(str(out))}", err=True)

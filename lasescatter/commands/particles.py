@@ -21,6 +21,7 @@ if TYPE_CHECKING:
 SHORTEST, LONGEST = 180e-9, 1e-3
 """Wavelengths that a site file takes. [m]"""
 MOST_WAVELENGTHS = 30
+DEFAULT_WAVELENGTH = "532 nm"
 
 
 def list_kinds(rules: Path | None, as_json: bool) -> None:
@@ -54,7 +55,7 @@ def show_kind(
     from lasescatter.site.catalogue import read_catalogue
 
     _check_plot(plot)
-    waves = _wavelengths(wavelengths)
+    waves = _wavelengths(wavelengths or [DEFAULT_WAVELENGTH])
     kind = _named(read_catalogue(rules), name)
     grows = any((mode.material or kind.material).growth is not None for mode in kind.modes)
     readings = tuple(load_reading(text, waves[0] if len(waves) == 1 else None, grows) for text in loads)
@@ -70,6 +71,8 @@ def show_kind(
         typer.echo(json.dumps(kind_in_full(found), indent=1, ensure_ascii=False, allow_nan=False))
     else:
         print_kind(found, Console(highlight=False, markup=False))
+    if not wavelengths:
+        told.insert(0, f"no --wavelength was given: {DEFAULT_WAVELENGTH} is shown")
     for line in told:
         typer.echo(line, err=True)
 

@@ -8,6 +8,7 @@ from lasescatter.assessment.outcome import Assessment, ObserverOutcome
 from lasescatter.limits.compare import Comparison, HazardJudgement
 from lasescatter.limits.verdict import few_digits
 from lasescatter.report.front import NAME
+from lasescatter.report.left_out import lacking
 from lasescatter.report.naming import named_line
 from lasescatter.report.quantities import ABSENT, counted, degrees, digits, duration, long_time, optical_density
 from lasescatter.report.results import observer_head
@@ -40,7 +41,7 @@ def comparison_section(assessment: Assessment) -> list[Any]:
         ),
     ]
     for number, observer in enumerate(assessment.observers, start=1):
-        story += _judged(number, observer, assessment.scene)
+        story += _judged(number, observer, assessment)
     return story
 
 
@@ -65,15 +66,18 @@ def _unprefixed(hazard: HazardJudgement) -> list[str]:
     return [reason.removeprefix(f"{hazard.hazard}: ") for reason in grouped(hazard.reasons)]
 
 
-def _judged(number: int, observer: ObserverOutcome, scene: Scene) -> list[Any]:
+def _judged(number: int, observer: ObserverOutcome, assessment: Assessment) -> list[Any]:
     from reportlab.platypus import CondPageBreak
+
+    scene = assessment.scene
+    waves = {(line.beam, line.line): line.wavelength for line in observer.lines}
 
     in_rows = {reason for hazard in observer.hazards for reason in hazard.reasons}
     story: list[Any] = [
         CondPageBreak(_LEAST_BLOCK),
         observer_head(number, observer, f" – {verdict_words(observer.verdict)}"),
         paragraph(
-            f"{markup(standing(observer))}{'; ' + markup(observer.governing, 300) if observer.governing else ''}.",
+            f"{markup(standing(observer, lacking(assessment)))}{'; ' + markup(observer.governing, 300) if observer.governing else ''}.",
             "note",
         ),
     ]
@@ -94,7 +98,9 @@ def _judged(number: int, observer: ObserverOutcome, scene: Scene) -> list[Any]:
         ]
     ]
     for entry in observer.comparisons:
-        rows += [_comparison_row(entry, scene), [paragraph(markup(_made_of(entry)), "cell"), *[""] * 8]]
+        missing = lacking(assessment, waves[entry.beam, entry.line]) if (entry.beam, entry.line) in waves else ""
+        made_of = paragraph(markup(_made_of(entry, missing)), "cell")
+        rows += [_comparison_row(entry, scene), [made_of, *[""] * 8]]
     below = range(2, len(rows), 2)
     table = ruled(
         rows,
@@ -150,10 +156,15 @@ def _comparison_row(entry: Comparison, scene: Scene) -> list[Any]:
     ]
 
 
-def _made_of(entry: Comparison) -> str:
-    """What the exposure is made of and what the upper bound adds to it."""
+def _made_of(entry: Comparison, missing: str) -> str:
+    """What the exposure is made of and what the upper bound adds to it; `missing`: whose light is not computed."""
     parts = " + ".join(f"{origin} {digits(amount)}" for origin, amount in entry.by_origin if amount > 0)
     added = ", ".join(f"{cause}: {digits(amount)}" for cause, amount in entry.allowances)
+    if missing:
+        return (
+            f"Exposure, as far as computed: {parts or 'nothing'}. Upper bound adds {added or 'nothing'}. Not computed, "
+            f"and in neither: light of {missing}."
+        )
     return f"Exposure: {parts or 'nothing arrives'}. Upper bound adds {added or 'nothing'}."
 
 
@@ -170,7 +181,11 @@ def contribution_section(assessment: Assessment) -> list[Any]:
         ]
     ]
     for number, observer in enumerate(assessment.observers, start=1):
-        rows += [[str(number), *_shares(entry, assessment.scene)] for entry in _governing(observer)]
+        waves = {(line.beam, line.line): line.wavelength for line in observer.lines}
+        for entry in _governing(observer):
+            at = waves.get((entry.beam, entry.line))
+            missing = "" if at is None else lacking(assessment, at)
+            rows.append([str(number), *_shares(entry, assessment.scene, missing)])
     text = paragraph(
         "For each observer, hazard and beam line: the comparison with the greatest ratio and what its exposure is "
         "made of. The numbers of the observers are those of the first page."
@@ -190,15 +205,22 @@ def _governing(observer: ObserverOutcome) -> list[Comparison]:
     return list(found.values())
 
 
-def _shares(entry: Comparison, scene: Scene) -> list[Any]:
+def _of_what_is_computed(shares: list[str], missing: str) -> str:
+    told = ", ".join(shares)
+    if missing:
+        return f"{told + ' of what is computed' if told else 'nothing computed'}; not computed: light of {missing}"
+    return told or "nothing arrives"
+
+
+def _shares(entry: Comparison, scene: Scene, missing: str) -> list[Any]:
     whole = sum(amount for _, amount in entry.by_origin)
     shares = [
-        f"{origin} {100 * amount / whole:.1f} %" for origin, amount in entry.by_origin if whole > 0 and amount > 0
+        f"{origin} {100 * amount / whole:.1f}\u00a0%" for origin, amount in entry.by_origin if whole > 0 and amount > 0
     ]
     return [
         words(entry.hazard),
         paragraph(markup(named_line(scene, entry.beam, entry.line)), "cell"),
         words(entry.limit, limit=NAME),
         few_digits(entry.ratio),
-        words(", ".join(shares) or "nothing arrives"),
+        words(_of_what_is_computed(shares, missing)),
     ]

@@ -57,16 +57,17 @@ def draw_phase(assessment: Assessment) -> Figure:
     return draw_curves(curves, "Scattering by direction, and its polarization", hidden)
 
 
-def draw_curves(curves: Sequence[Curve], title: str, hidden: int = 0) -> Figure:
+def draw_curves(curves: Sequence[Curve], title: str, hidden: int = 0, note: str = "") -> Figure:
     """F11/(4π) on a logarithmic axis, and below it −F12/F11, over the scattering angle; at least one curve.
 
-    `hidden` curves more are said to be in the tables only.
+    `hidden` curves more are said to be in the tables only; `note` stands below the curves' names.
     """
     import math
 
     import numpy as np
 
-    rows = math.ceil(len(curves) / _COLUMNS) + (hidden > 0)
+    notes = [f"{hidden} more in the tables only"] * (hidden > 0) + [note] * bool(note)
+    rows = math.ceil(len(curves) / _COLUMNS) + len(notes)
     below = 12.0 + rows * _ROW
     total = 6.5 + _UPPER + 5.0 + _LOWER + below
     figure = sheet(SHEET, total)
@@ -93,7 +94,7 @@ def draw_curves(curves: Sequence[Curve], title: str, hidden: int = 0) -> Figure:
     lower.axhline(0, color=DARK, linewidth=0.4)
     upper.set_title(cut(title, 7.6, 0.9 * _WIDTH), fontsize=7.6, fontweight="bold", loc="left", pad=4,
                     parse_math=False)  # fmt: skip
-    _key(figure, curves, hidden, below - 12.0)
+    _key(figure, curves, notes, below - 12.0)
     return figure
 
 
@@ -125,7 +126,7 @@ def _dress(axes: Axes, label: str, labelled: bool) -> None:
     axes.set_ylabel(label, fontsize=7, color=DARK)
 
 
-def _key(figure: Figure, curves: Sequence[Curve], hidden: int, top: float) -> None:
+def _key(figure: Figure, curves: Sequence[Curve], notes: Sequence[str], top: float) -> None:
     axes = panel(figure, 0, 0, SHEET, top)
     axes.set_axis_off()
     axes.set_xlim(0, SHEET)
@@ -137,5 +138,6 @@ def _key(figure: Figure, curves: Sequence[Curve], hidden: int, top: float) -> No
         x, y = _LEFT + across * column, top - (down + 0.5) * _ROW
         axes.plot([x, x + 5, x + 10], [y] * 3, markevery=[1], **_look(curve))
         write(axes, x + 12, y, cut(curve.label, 6.3, column - 14), fontsize=6.3, va="center")
-    if hidden:
-        write(axes, _LEFT, top - (rows + 0.5) * _ROW, f"{hidden} more in the tables only", fontsize=6.3, va="center")
+    for place, note in enumerate(notes):
+        y = top - (rows + place + 0.5) * _ROW
+        write(axes, _LEFT, y, cut(note, 6.3, _WIDTH), fontsize=6.3, va="center")

@@ -8,7 +8,9 @@ from typing import Any
 from lasescatter.assessment.outcome import Assessment, BeamSpot, InTheBeam, ObserverOutcome
 from lasescatter.cautions import not_covered
 from lasescatter.limits.verdict import ABOVE, BELOW
+from lasescatter.report.left_out import lacking
 from lasescatter.report.naming import named_line
+from lasescatter.report.own_kinds import own_kinds
 from lasescatter.report.page_frame import COLUMN
 from lasescatter.report.quantities import counted as count_of
 from lasescatter.report.quantities import digits, duration, length
@@ -70,6 +72,7 @@ def _title(assessment: Assessment, made_at: datetime) -> list[Any]:
         words(scene.title, "title", 300),
         table,
         paragraph(f"<b>Question answered.</b> {question}"),
+        *(paragraph(f"<b>Own kind of particles.</b> {markup(told)}.", "note") for told in own_kinds(scene.loads)),
     ]
 
 
@@ -198,7 +201,7 @@ def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
         )
         numbered = worst_first(assessment)[:FRONT_OBSERVERS]
     story += [
-        _verdict_table(numbered),
+        _verdict_table(numbered, lacking(assessment)),
         paragraph(
             "A verdict holds for somebody at that place, beside the beam, and for the stated inputs, limits and "
             f"assumptions only (sections {sections['inputs']} to {sections['cautions']}); reasons in full are in "
@@ -209,7 +212,7 @@ def _verdicts(assessment: Assessment, sections: dict[str, int]) -> list[Any]:
     return story
 
 
-def _verdict_table(numbered: list[tuple[int, ObserverOutcome]]) -> Any:
+def _verdict_table(numbered: list[tuple[int, ObserverOutcome]], missing: str) -> Any:
     rows: list[list[Any]] = [
         heads("No.", "Observer", "Verdict", "Greatest summed ratio to its limit", "Reasons in brief")
     ]
@@ -220,7 +223,7 @@ def _verdict_table(numbered: list[tuple[int, ObserverOutcome]]) -> Any:
                 str(number),
                 paragraph(markup(fitted(printable(observer.name), SANS, 7.3, (_NAME_WIDTH - 2) * MM)), "cell"),
                 paragraph(verdict_words(observer.verdict), "cell"),
-                paragraph(markup(standing(observer)), "cell"),
+                paragraph(markup(standing(observer, missing)), "cell"),
                 paragraph(_because(observer, room), "cell"),
             ]
         )
@@ -236,7 +239,7 @@ def _every_verdict(assessment: Assessment) -> list[Any]:
     return [
         PageBreak(),
         paragraph("Verdict of every observer", "section"),
-        _verdict_table(list(enumerate(assessment.observers, start=1))),
+        _verdict_table(list(enumerate(assessment.observers, start=1)), lacking(assessment)),
     ]
 
 

@@ -13,11 +13,12 @@ from typing import Any
 from reportlab.platypus import Flowable
 
 from lasescatter.assessment.outcome import Assessment, HandCheck, ObserverOutcome, StopCheck
+from lasescatter.report.left_out import NOT_COMPUTED, all_left_out, lacking, left_out_at
 from lasescatter.report.naming import leg_sign, line_sign
 from lasescatter.report.quantities import degrees, digits, line_label
 from lasescatter.report.results import observer_head
 from lasescatter.report.styles import MM, heads, paragraph, paragraph_styles, ruled
-from lasescatter.report.typography import BOLD, fitted, printable, shortened
+from lasescatter.report.typography import BOLD, fitted, markup, printable, shortened
 from lasescatter.scene import Scene, Vector
 
 DIGITS = 5
@@ -111,11 +112,19 @@ def blocks(assessment: Assessment) -> list[Any]:
                 "scattered and stop light of their observer; their numbers count all."
             )
         )
+    missing = lacking(assessment)
+    if missing:
+        story.append(
+            paragraph(
+                f"<b>Not computed</b>, so in no block and in no tau of this section: {markup(missing)}."
+            )
+        )
     scattered = stops = 0
     for number, observer in enumerate(assessment.observers, start=1):
         story.append(observer_head(number, observer))
         if not observer.hand_checks:
-            story.append(paragraph("No leg sends scattered light here.", "note"))
+            none = f"No scattered light is computed: {markup(missing)} left out." if missing else ""
+            story.append(paragraph(none or "No leg sends scattered light here.", "note"))
         least = _least(observer) if total > MOST_BLOCKS else -1.0
         hidden = []
         for check in observer.hand_checks:
@@ -129,7 +138,8 @@ def blocks(assessment: Assessment) -> list[Any]:
             stops += 1
             if stop.stated > least:
                 title = f"Stop check {stops}: observer {number}, stop of {line_sign(scene, stop.beam, stop.line)}"
-                story.append(CheckBlock(f"{title} – {line_label(stop.beam, stop.line)}", _item_lines(stop_items(stop))))
+                lines = _stop_lines(stop, assessment)
+                story.append(CheckBlock(f"{title} – {line_label(stop.beam, stop.line)}", lines))
             else:
                 hidden.append(stop.stated)
         if hidden:
@@ -195,8 +205,8 @@ def items(check: HandCheck) -> list[tuple[str, str, str]]:
     ]
 
 
-def stop_items(check: StopCheck) -> list[tuple[str, str, str]]:
-    """The same of a stop."""
+def stop_items(check: StopCheck, known: bool = True) -> list[tuple[str, str, str]]:
+    """The same of a stop; `known` is false where no optical thickness is computed."""
 
     def number(value: float) -> str:
         return digits(value, DIGITS)
@@ -206,11 +216,23 @@ def stop_items(check: StopCheck) -> list[tuple[str, str, str]]:
         ("rho", number(check.reflectance), ""),
         ("r", number(check.r), "m"),
         ("cos", number(check.cosine), ""),
-        ("tau", number(check.tau), ""),
-        ("T", number(math.exp(-check.tau)), ""),
+        ("tau", number(check.tau) if known else NOT_COMPUTED, ""),
+        ("T", number(math.exp(-check.tau)) if known else "taken as 1", ""),
         ("E_stated", number(check.stated), "W/m²"),
         ("E_compared", number(check.compared), "W/m²"),
     ]
+
+
+def _stop_lines(check: StopCheck, assessment: Assessment) -> list[str]:
+    wavelength = next(
+        (line.wavelength for beam in assessment.scene.beams if beam.name == check.beam for line in beam.lines
+         if line.name == check.line), None,
+    )  # fmt: skip
+    if wavelength is None or not left_out_at(assessment, wavelength):
+        return _item_lines(stop_items(check))
+    remark = f"remark: no extinction is computed for {lacking(assessment, wavelength)}"
+    lines = _item_lines(stop_items(check, not all_left_out(assessment, wavelength)))
+    return lines + textwrap.wrap(printable(remark), _COLUMNS * _CELL - 4)
 
 
 def _item_lines(found: list[tuple[str, str, str]]) -> list[str]:

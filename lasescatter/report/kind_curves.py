@@ -38,8 +38,10 @@ def write_curves(found: KindOptics, path: Path) -> None:
               entry.phase_12)
         for place, entry in enumerate(known)
     ]  # fmt: skip
+    outside = [wavelength(entry.wavelength) for entry in found.wavelengths if entry.usual is None]
+    note = f"not established, outside the data: {', '.join(outside)}" if outside else ""
     with rc_context(RC), path.open("wb") as target:
-        figure = draw_curves(curves, f"{found.kind.name}: scattering by direction, and its polarization")
+        figure = draw_curves(curves, f"{found.kind.name}: scattering by direction, and its polarization", note=note)
         # Dates and program names would differ from run to run.
         if suffix == ".svg":
             FigureCanvasSVG(figure).print_svg(target, metadata={"Date": None, "Creator": None})

@@ -29,6 +29,7 @@ def kind_summary(kind: Kind) -> dict[str, Any]:
         if span is None
         else {"what": span.what, "usual_m": span.usual, "low_m": span.low, "high_m": span.high, "source": span.source},
         "file": kind.file,
+        "origin": kind.origin,
     }
 
 

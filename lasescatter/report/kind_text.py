@@ -16,11 +16,14 @@ from lasescatter.assessment.kind_optics import (
 )
 from lasescatter.matter import Kind
 from lasescatter.report.loads import air_words
+from lasescatter.report.modes import mode_names, mode_rows
+from lasescatter.report.own_kinds import ORIGIN_WORDS
 from lasescatter.report.quantities import digits, trimmed, wavelength
 from lasescatter.report.readings import reading_rows, reading_words
 from lasescatter.report.text_page import TextPage
 from lasescatter.report.trust_words import trust_effect, trust_word
 from lasescatter.report.typography import plain
+from lasescatter.site.kinds import origin_text
 
 if TYPE_CHECKING:
     from rich.console import Console
@@ -35,8 +38,8 @@ Row = tuple[str, Callable[[KindValues], str]]
 def print_list(kinds: Sequence[Kind], console: Console) -> None:
     """All kinds as a table: how far each is trusted, where its data answer, whether its size must be stated."""
     page = TextPage(console)
-    rows = [[plain(kind.name), kind.trust.mark, *_answers(reach_of(kind)), _asked(kind)] for kind in kinds]
-    page.table(("Kind", "Trust", "Answers [nm]", "of these weak [nm]", "Size to state [µm]"), rows, (23, 11, 9, 19, 10))
+    rows = [[_called(kind), kind.trust.mark, *_answers(reach_of(kind)), _asked(kind)] for kind in kinds]
+    page.table(("Kind", "Trust", "Answers [nm]", "of these weak [nm]", "Size to state: median diameter [µm]"), rows, (22, 11, 9, 15, 15))
     page.gap()
     factors: dict[str, set[float]] = {}
     for kind in kinds:
@@ -63,7 +66,14 @@ def _answers(reach: Reach | None) -> tuple[str, str]:
 
 
 def _asked(kind: Kind) -> str:
-    return "" if kind.size_span is None else _sizes(kind, "-")
+    if kind.size_span is None:
+        return ""
+    return f"{_sizes(kind, '-')} {plain(kind.size_span.what).removeprefix('median diameter').strip()}".strip()
+
+
+def _called(kind: Kind) -> str:
+    origin = ORIGIN_WORDS[kind.origin]
+    return plain(kind.name) + (f" ({origin})" if origin else "")
 
 
 def reach_words(reach: Reach | None) -> str:
@@ -99,6 +109,7 @@ def print_kind(found: KindOptics, console: Console) -> None:
     for first in range(0, len(known), _COLUMNS):
         page.gap()
         _values(known[first : first + _COLUMNS], found, page)
+        _modes(known[first : first + _COLUMNS], found, page)
     _gaps(found, page)
     for entry in known:
         if entry.sizes:
@@ -117,6 +128,8 @@ def _about(found: KindOptics, page: TextPage) -> None:
     kind = found.kind
     page.say(plain(kind.name), style="bold")
     page.say(plain(kind.what))
+    if kind.origin != "shipped":
+        page.say(f"From: {plain(origin_text(kind))}", indent=2)
     if kind.also_called:
         page.say(f"Also called: {plain(', '.join(kind.also_called))}", indent=2)
     page.say(f"Wavelengths: {reach_words(reach_of(kind))}", indent=2)
@@ -136,7 +149,9 @@ def _about(found: KindOptics, page: TextPage) -> None:
             f"({plain(kind.size_span.source)})", indent=2,
         )  # fmt: skip
     for load in kind.typical:
-        page.say(f"Typical: {plain(load.what)}: {load.reading} = {plain(load.written)}", indent=2)
+        # A limit for breathing stands beside the loads that are met; it is none of them.
+        label = "For comparison" if "limit" in load.what.lower() else "Typical"
+        page.say(f"{label}: {plain(load.what)}: {load.reading} = {plain(load.written)}", indent=2)
     grown = (
         f"radii up to {digits(found.growth_factor, 4)} times the dry ones"
         if found.growth_factor > 1
@@ -172,10 +187,12 @@ def _per_gram(value: float | None) -> str:
 def _values(entries: Sequence[KindAtWavelength], found: KindOptics, page: TextPage) -> None:
     values = [entry.usual for entry in entries if entry.usual is not None]
     several = len(found.kind.modes) > 1
-    first = " (first mode)" if several else ""
+    index_rows: list[Row] = [
+        ("index n", lambda v: digits(v.index.real, 5)),
+        ("index k", lambda v: digits(v.index.imag)),
+    ]
     rows: list[Row] = [
-        (f"index n{first}", lambda v: digits(v.index.real, 5)),
-        (f"index k{first}", lambda v: digits(v.index.imag)),
+        *([] if several else index_rows),
         *_main_rows(found.growth_factor > 1, any(v.mass_extinction_dry is not None for v in values)),
         ("error of F11 at worst angle", lambda v: digits(v.error_f11, 2)),
         ("error of extinction", lambda v: digits(v.error_extinction, 2)),
@@ -185,6 +202,25 @@ def _values(entries: Sequence[KindAtWavelength], found: KindOptics, page: TextPa
     page.table(
         ("", *(wavelength(entry.wavelength) for entry in entries)), body, (_LABEL, *[_CELL] * len(values)), numeric=1
     )
+
+
+def _modes(entries: Sequence[KindAtWavelength], found: KindOptics, page: TextPage) -> None:
+    """Share, growth and index of each mode, where there are several."""
+    kind, waves = found.kind, [entry.wavelength for entry in entries]
+    if len(kind.modes) == 1:
+        return
+    names = mode_names(len(kind.modes), kind.data)
+    rows = mode_rows(kind.modes, kind.material, found.air, waves, names)
+    body = []
+    for row in rows:
+        grown = f", radii times {digits(row.growth, 4)}" if row.growth > 1 else ""
+        indices = [index for index in row.indices if index is not None]
+        share = f"{digits(100 * row.share)} % by number{grown}"
+        body.append([f"{plain(row.name)}: {share}; index n", *(digits(index.real, 5) for index in indices)])
+        body.append(["  its index k", *(digits(index.imag) for index in indices)])
+    page.gap()
+    page.say("Modes as they float:", style="bold")
+    page.table(("", *(wavelength(at) for at in waves)), body, (_LABEL, *[_CELL] * len(waves)), numeric=1)
 
 
 def _gaps(found: KindOptics, page: TextPage) -> None:
@@ -210,6 +246,12 @@ def _load(load: LoadOfKind, found: KindOptics, page: TextPage) -> None:
     if load.gap:
         page.say(f"not established: {plain(load.gap)}", indent=2)
         return
+    span = found.kind.size_span
+    if span is not None:
+        page.say(
+            f"At the usual size, {_short(span.usual * 1e6)} µm; at another size the same reading stands for other values: "
+            "extinction per mass and per particle over the sizes are in the tables above.", indent=2,
+        )  # fmt: skip
     rows = reading_rows(load.equivalents)
     waves = list(dict.fromkeys(wave for row in rows for wave in row.cells if wave is not None))
     for first in range(0, max(1, len(waves)), _LOAD_COLUMNS):
@@ -219,5 +261,5 @@ def _load(load: LoadOfKind, found: KindOptics, page: TextPage) -> None:
             for row in rows
             if any(wave in row.cells for wave in columns)
         ]
-        heads = ["any" if wave is None else wavelength(wave) for wave in columns]
+        heads = ["any wavelength" if wave is None else wavelength(wave) for wave in columns]
         page.table(("Instruments would read", *heads), body, (_LABEL, *[_CELL] * len(heads)), numeric=1)

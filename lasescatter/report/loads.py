@@ -49,14 +49,13 @@ def air_words(air: Air) -> str:
 def load_sections(assessment: Assessment) -> list[Any]:
     """Every load of the site."""
     story: list[Any] = []
-    observers = tuple(observer.name for observer in assessment.observers)
     for load in assessment.scene.loads:
         entries = [entry for entry in assessment.components if entry.name == load.name]
         story.append(paragraph(f"Load: {markup(load.name, NAME)}", "subsection"))
         story.append(_facts(assessment, load, entries))
         for movement in assessment.size_movements:
             if movement.load == load.name:
-                story += movement_section(movement, observers)
+                story += movement_section(movement, assessment)
         story += _readings(load, entries)
     return story
 

@@ -8,6 +8,7 @@ from typing import Any
 
 from lasescatter.assessment.outcome import Assessment, ComponentSummary
 from lasescatter.report.front import NAME
+from lasescatter.report.left_out import lacking
 from lasescatter.report.loads import air_words, load_sections
 from lasescatter.report.page_frame import FigurePlace
 from lasescatter.report.quantities import digits, small_length, wavelength
@@ -22,6 +23,13 @@ WANTED_DEGREES = (
 
 def component_section(assessment: Assessment, figure_size: tuple[float, float] | None) -> list[Any]:
     """What each component does to the light, how well that is known, and the curves."""
+    if not assessment.components:
+        return [
+            _air(assessment),
+            *_gaps(assessment),
+            paragraph(f"<b>No scattered light is computed</b>{_of_whom(assessment)}: there are no values and no curves."),
+            *load_sections(assessment),
+        ]
     rows: list[list[Any]] = [
         heads(
             "Component", "Wavelength", "Extinction [1/m]", "Scattering [1/m]", "Albedo", "Asymmetry", "Number [1/m³]",
@@ -50,17 +58,12 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
         for entry in assessment.components
     ]  # fmt: skip
     return [
-        paragraph(f"<b>Air</b>: {air_words(assessment.scene.air)}."),
+        _air(assessment),
         paragraph(
             "Values where the component is; number, mass and radius as the particles float, water included. Errors "
             "are the program's own estimates, relative to the value."
         ),
-        *(
-            [paragraph("<b>Not complete</b>, because no data reach so far; nothing is below its limit then:")]
-            + [paragraph(markup(gap, 600), "small item", bullet="•") for gap in assessment.gaps]
-            if assessment.gaps
-            else []
-        ),
+        *_gaps(assessment),
         ruled(rows, [26, 19, 18, 18, 15, 18, 15, 15, 15, 15], numeric=tuple(range(1, 10))),
         ruled(quality, [60, 22, 27, 39, 26], numeric=(1, 2, 3, 4)),
         paragraph(
@@ -72,6 +75,24 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
         *([FigurePlace("phase", figure_size[0] * MM, figure_size[1] * MM)] if figure_size else []),
         *load_sections(assessment),
     ]
+
+
+def _air(assessment: Assessment) -> Any:
+    return paragraph(f"<b>Air</b>: {air_words(assessment.scene.air)}.")
+
+
+def _gaps(assessment: Assessment) -> list[Any]:
+    if not assessment.gaps:
+        return []
+    return [
+        paragraph("<b>Not complete</b>, because no data reach so far; nothing is below its limit then:"),
+        *(paragraph(markup(gap, 600), "small item", bullet="•") for gap in assessment.gaps),
+    ]
+
+
+def _of_whom(assessment: Assessment) -> str:
+    missing = lacking(assessment)
+    return f", neither stated nor compared, of {markup(missing)}" if missing else ""
 
 
 def _relative(value: float | None) -> str:

@@ -28,8 +28,19 @@ def digits(value: float | None, count: int = 3) -> str:
 
 
 def signed_interval(value: float, error: float, count: int = 3) -> str:
-    """A value with its error: "1.23e-6 ± 2e-9"."""
-    return f"{digits(value, count)} ± {digits(error, 1)}"
+    """A value with its error, to the digits that the error leaves: "1.23e-6 ± 2e-8", "1.2e-6 ± 3e-7".
+
+    An error below the last digit printed is told as that: "1.23e-6 ± <1e-8".
+    """
+    if not value or not math.isfinite(value) or not math.isfinite(error) or error <= 0:
+        return f"{digits(value, count)} ± {digits(error, 1)}"
+    first = math.floor(math.log10(abs(value)))
+    last = math.floor(math.log10(error))
+    kept = min(count, max(1, first - last + 1))
+    unit = first - count + 1
+    # An estimate of the error is good for its size, not for digits that are not printed.
+    shown = digits(error, 1) if last >= unit else f"<{digits(10.0**unit, 1)}"
+    return f"{digits(value, kept)} ± {shown}"
 
 
 def trimmed(value: float) -> str:

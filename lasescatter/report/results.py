@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import Any
 
 from lasescatter.assessment.outcome import Assessment, BeamSpot, InTheBeam, LineExposure, ObserverOutcome
 from lasescatter.report.csv_table import ORIGINS
 from lasescatter.report.front import NAME, leaves_site, multiple
+from lasescatter.report.left_out import NOT_COMPUTED, all_left_out, lacking, left_out_at
 from lasescatter.report.naming import named_beam, named_line
 from lasescatter.report.quantities import digits, duration, length, point, signed_interval, small_length, trimmed
 from lasescatter.report.styles import heads, number_cell, paragraph, ruled, words
@@ -140,14 +142,16 @@ def exposure_section(assessment: Assessment) -> list[Any]:
         ),
     ]
     for number, observer in enumerate(assessment.observers, start=1):
-        story += _exposures(number, observer, assessment.scene)
+        story += _exposures(number, observer, assessment)
     return story
 
 
-def _exposures(number: int, observer: ObserverOutcome, scene: Scene) -> list[Any]:
+def _exposures(number: int, observer: ObserverOutcome, assessment: Assessment) -> list[Any]:
     from reportlab.platypus import KeepTogether
 
-    unit = scene.length_unit
+    scene, unit = assessment.scene, assessment.scene.length_unit
+    missing = lacking(assessment)
+    none_at_all = all(all_left_out(assessment, line.wavelength) for line in observer.lines)
     rows: list[list[Any]] = [
         heads(
             "Beam line", "Scattered, stated", "F12 left out", "Scattered, compared", "at load fraction",
@@ -155,23 +159,30 @@ def _exposures(number: int, observer: ObserverOutcome, scene: Scene) -> list[Any
         )
     ]  # fmt: skip
     for line in observer.lines:
-        rows.append(_line_row(line, scene))
+        told = _computed(assessment, line.wavelength)
+        rows.append(_line_row(line, scene, told))
         if line.pulse_rate is not None or line.pulse_scattered is not None:
-            rows.append(_pulse_row(line))
+            rows.append(_pulse_row(line, told))
     if len(observer.lines) > 1:
         total = observer.total
         rows.append(
             [
-                paragraph("All lines", "cell bold"), digits(total("scattered")), digits(total("scattered_unpolarised")),
-                digits(total("scattered_compared")), "", digits(total("diffuse")), digits(total("diffuse_compared")),
+                paragraph("All lines", "cell bold"),
+                *(
+                    NOT_COMPUTED if none_at_all else f"{digits(total(name))}{PART if missing else ''}"
+                    for name in ("scattered", "scattered_unpolarised", "scattered_compared")
+                ),
+                "", digits(total("diffuse")), digits(total("diffuse_compared")),
                 digits(total("direct")),
             ]
         )  # fmt: skip
     facts = [
         f"at {point(observer.position, unit)}",
         f"{length(observer.nearest, unit)} from the axis of {markup(named_beam(scene, observer.nearest_beam))}",
-        f"tau = {digits(observer.optical_thickness)}",
+        _thickness(observer, missing, none_at_all),
     ]
+    if missing:
+        facts.append(f"<b>not computed: light of {markup(missing)}</b>")
     raised = _raised(observer)
     if raised:
         facts.append(f"allowance for higher orders: {digits(100 * raised)} % of the compared scattered light")
@@ -194,21 +205,44 @@ def _raised(observer: ObserverOutcome) -> float:
     return max((p[ORIGINS[1]] / p["scattered"] for p in found if p.get(ORIGINS[1]) and p["scattered"]), default=0.0)
 
 
-def _line_row(line: LineExposure, scene: Scene) -> list[Any]:
+PART = " (part)"
+"""Beside a value that lacks some of the light."""
+
+
+def _thickness(observer: ObserverOutcome, missing: str, none_at_all: bool) -> str:
+    if none_at_all:
+        return f"tau {NOT_COMPUTED}"
+    return f"tau = {digits(observer.optical_thickness)}{' without what is not computed' if missing else ''}"
+
+
+def _computed(assessment: Assessment, wavelength: float) -> Callable[[str], str]:
+    """How a number of scattered light at a wavelength is told: as it is, marked as a part, or as not computed."""
+    if all_left_out(assessment, wavelength):
+        return lambda text: NOT_COMPUTED
+    return (lambda text: f"{text}{PART}") if left_out_at(assessment, wavelength) else (lambda text: text)
+
+
+def _line_row(line: LineExposure, scene: Scene, told: Callable[[str], str]) -> list[Any]:
     return [
         paragraph(markup(named_line(scene, line.beam, line.line)), "cell"),
-        signed_interval(line.scattered, line.scattered_error),
-        digits(line.scattered_unpolarised),
-        digits(line.scattered_compared),
-        digits(line.load_fraction),
+        number_cell(told(signed_interval(line.scattered, line.scattered_error))),
+        number_cell(told(digits(line.scattered_unpolarised))),
+        number_cell(told(digits(line.scattered_compared))),
+        "" if told("") == NOT_COMPUTED else digits(line.load_fraction),
         digits(line.diffuse),
         digits(line.diffuse_compared),
         digits(line.direct),
     ]
 
 
-def _pulse_row(line: LineExposure) -> list[Any]:
+def _pulse_row(line: LineExposure, told: Callable[[str], str]) -> list[Any]:
     return [
-        paragraph("– per pulse, in J/m²; compared with stop light included", "cell"), digits(line.pulse_scattered), "",
-        digits(line.pulse_compared), "", digits(line.pulse_diffuse), "", digits(line.pulse_direct),
+        paragraph("– per pulse, in J/m²; compared with stop light included", "cell"),
+        number_cell(told(digits(line.pulse_scattered))), "", number_cell(_with_stop(line, told)), "", digits(line.pulse_diffuse), "", digits(line.pulse_direct),
     ]  # fmt: skip
+
+
+def _with_stop(line: LineExposure, told: Callable[[str], str]) -> str:
+    """Compared light per pulse; stop light alone where no scattered light is computed."""
+    shown = digits(line.pulse_compared)
+    return f"{shown}{PART}" if told("") == NOT_COMPUTED else told(shown)

@@ -5,7 +5,8 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from lasescatter.matter import SizeSpan
-from lasescatter.report.quantities import digits, small_length, trimmed
+from lasescatter.report.left_out import wavelengths, where_left_out
+from lasescatter.report.quantities import digits, small_length, trimmed, wavelength
 from lasescatter.report.styles import heads, paragraph, ruled, words
 from lasescatter.report.typography import abridged, markup, plain
 from lasescatter.scene import Load
@@ -43,13 +44,19 @@ def size_warnings(assessment: Assessment) -> list[str]:
     for movement in assessment.size_movements:
         name = _named(movement.load, movement.kind)
         found = extremes(movement)
+        missing = where_left_out(assessment, movement.load)
+        not_computed = f"its light at {_waves(missing)} is not computed" if missing else ""
+        over = f"a {plain(movement.what)} of {size_range(movement.sizes[0], movement.sizes[-1], 'um')}"
+        if len(missing) == len(wavelengths(assessment.scene)):
+            lines.append(f"{name}: size not stated ({over}); {not_computed}, so how it moves is not known")
+            continue
         moves = (
-            "no light arrives"
+            f"no light of it arrives over {over}"
             if found is None
-            else f"light is {digits(found[0], 2)} to {digits(found[1], 2)} times that"
+            else f"light is {digits(found[0], 2)} to {digits(found[1], 2)} times that of the usual size over {over}, "
+            "which the bounds carry"
         )
-        span = size_range(movement.sizes[0], movement.sizes[-1], "um")
-        lines.append(f"{name}: size not stated; {moves} of the usual size over {span}, which the bounds carry")
+        lines.append(f"{name}: size not stated; {moves}{f'; {not_computed}' if not_computed else ''}")
     return lines
 
 
@@ -59,8 +66,12 @@ def size_request(load: Load, span: SizeSpan) -> str:
     usual = trimmed(float(f"{span.usual * 1e6:.3g}"))
     return (
         f"{_named(load.name, load.kind)}: size not stated ({plain(span.what)} is taken as {usual} um; it may be {sizes}): "
-        "state it as [particles.sizes] with shape, mass_median_diameter and geometric_sd"
+        "state it as [particles.sizes], for example with mass_median_diameter and geometric_sd"
     )
+
+
+def _waves(found: tuple[float, ...]) -> str:
+    return ", ".join(wavelength(at) for at in found)
 
 
 def _named(load: str, kind: str) -> str:
@@ -69,9 +80,20 @@ def _named(load: str, kind: str) -> str:
     return shown if kind in ("", load) else f"{shown} ({abridged(plain(kind), NAME)})"
 
 
-def movement_section(movement: SizeMovement, observers: tuple[str, ...]) -> list[Any]:
+def movement_section(movement: SizeMovement, assessment: Assessment) -> list[Any]:
     """The sentence that asks for the size, and the table of observers by sizes."""
+    observers = tuple(observer.name for observer in assessment.observers)
+    missing = where_left_out(assessment, movement.load)
     found = extremes(movement)
+    if len(missing) == len(wavelengths(assessment.scene)):
+        return [
+            paragraph(
+                f"<b>State the size</b>, for when the load can be computed. The size of {markup(movement.kind, NAME)} is "
+                f"uncertain ({markup(movement.what)} of {size_range(movement.sizes[0], movement.sizes[-1])}) and the "
+                f"site file does not state it. The light of this load is <b>not computed</b> at {_waves(missing)}, so how "
+                f"it moves with the size is not known. Sizes from: {markup(movement.source, 300)}."
+            )
+        ]
     moved = (
         "no scattered light of it arrives"
         if found is None
@@ -82,7 +104,8 @@ def movement_section(movement: SizeMovement, observers: tuple[str, ...]) -> list
             f"<b>State the size.</b> The size of {markup(movement.kind, NAME)} is uncertain and the site file does "
             f"not state it. Over a {markup(movement.what)} of {size_range(movement.sizes[0], movement.sizes[-1])}, "
             f"the load's reading kept, {moved} ({small_length(movement.usual)}), which the rest of this report "
-            f"uses. Sizes from: {markup(movement.source, 300)}."
+            f"uses. {f'At {_waves(missing)} its light is not computed. ' if missing else ''}"
+            f"Sizes from: {markup(movement.source, 300)}."
         )
     ]
     if found is None:

@@ -19,9 +19,16 @@ ANSWERS: dict[Verdict, str] = {BELOW: "yes", ABOVE: "no", NOT_ESTABLISHED: "open
 """Whether a ratio is at most 1, its bounds considered: a row of a table is no verdict of its own."""
 
 
-def standing(observer: ObserverOutcome) -> str:
-    """The greatest summed ratio in words: with its margin where the verdict is settled, else as a number alone."""
-    if observer.verdict != NOT_ESTABLISHED or observer.ratio is None:
+def standing(observer: ObserverOutcome, lacking: str = "") -> str:
+    """The greatest summed ratio in words: with its margin where the verdict is settled, else as a number alone.
+
+    `lacking` says whose light is not computed; a ratio then counts only what is.
+    """
+    if observer.ratio is None:
+        return margin(None)
+    if lacking:
+        return f"what is computed: {few_digits(observer.ratio)} of the limit; not computed: light of {lacking}"
+    if observer.verdict != NOT_ESTABLISHED:
         return margin(observer.ratio)
     alone = "light at the stated point" if observer.total("direct") > 0 else "light beside the beam alone"
     told = f"{alone}: {few_digits(observer.ratio)} of the limit"

@@ -7,8 +7,9 @@ from typing import TYPE_CHECKING
 from lasescatter.assessment.outcome import Assessment, InTheBeam
 from lasescatter.cautions import foremost
 from lasescatter.limits.verdict import BELOW
+from lasescatter.report.left_out import lacking
 from lasescatter.report.naming import named_line
-from lasescatter.report.quantities import digits, duration, length
+from lasescatter.report.quantities import digits, duration, length, trimmed
 from lasescatter.report.ranking import counted, greatest, worst_first
 from lasescatter.report.standing import (
     beam_headline,
@@ -25,6 +26,8 @@ if TYPE_CHECKING:
     from rich.console import Console
 
 NAME = 100
+TRUSTED, TRUSTS = 40, 6
+"""Characters of a load's name, and loads, in the line on trust."""
 OBSERVERS = 20
 """More than so many are counted by verdict and only the worst are listed."""
 
@@ -43,6 +46,7 @@ def print_summary(assessment: Assessment, console: Console) -> None:
     page.say(plain(beam_headline(assessment)), style="bold")
     beside = f"{beside_headline(assessment)}: {assessment.verdict}"
     page.say(f"{beside} {plain(left_out_words(assessment))}".rstrip(), style="bold")
+    _trusts(assessment, page)
     _observers(assessment, page)
     for hazard, reason in scene.not_judged:
         page.item(abridged(f"{hazard}: not judged, {plain(left_out_reason(reason))}", 300))
@@ -51,6 +55,23 @@ def print_summary(assessment: Assessment, console: Console) -> None:
     for text in foremost():
         page.item(plain(text))
     page.say("All cautions, assumptions and the hand check are in the PDF report; see also SAFETY.md.")
+
+
+def _trusts(assessment: Assessment, page: TextPage) -> None:
+    """Factors of trust that the upper bounds hold, the largest of each load."""
+    largest = {}
+    for entry in sorted(assessment.components, key=lambda entry: entry.trust.factor):
+        if entry.trust.factor > 1:
+            largest[entry.name] = entry.trust
+    told = [
+        f"factor {trimmed(largest[load.name].factor)} for {abridged(plain(load.name), TRUSTED)} "
+        f"({largest[load.name].mark})"
+        for load in assessment.scene.loads
+        if load.name in largest
+    ]
+    if told:
+        shown = told[:TRUSTS] + ([f"{len(told) - TRUSTS} more"] if len(told) > TRUSTS else [])
+        page.item(f"bounds include {', '.join(shown)}")
 
 
 def _in_the_beam(line: InTheBeam, assessment: Assessment) -> str:
@@ -88,7 +109,7 @@ def _observers(assessment: Assessment, page: TextPage) -> None:
         page.say(f"The {OBSERVERS} to look at first:")
     for number, outcome in shown:
         page.say(f"{number:>3}  {outcome.verdict}: {abridged(plain(outcome.name), NAME)}", indent=5)
-        told = [standing(outcome)]
+        told = [standing(outcome, lacking(assessment))]
         if outcome.governing:
             told.append(plain(outcome.governing))
         page.say("     " + "; ".join(told), indent=5)

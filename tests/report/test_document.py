@@ -25,7 +25,7 @@ from lasescatter.assessment.outcome import Assessment
 from lasescatter.cautions import cautions, not_covered
 from lasescatter.limits.verdict import margin
 from lasescatter.report.document import SECTIONS, pdf_bytes, write_pdf
-from lasescatter.report.quantities import digits
+from lasescatter.report.quantities import digits, signed_interval
 from lasescatter.report.typography import printable
 
 from .conftest import MADE_AT
@@ -115,7 +115,7 @@ def test_rows_answer_and_only_headings_judge(result: Assessment, text: str) -> N
 def test_every_exposure_is_printed(result: Assessment, text: str) -> None:
     for observer in result.observers:
         for line in observer.lines:
-            assert f"{digits(line.scattered)} ± {digits(line.scattered_error, 1)}" in text
+            assert signed_interval(line.scattered, line.scattered_error) in text
             for value in (line.scattered_compared, line.diffuse_compared, line.direct, line.pulse_scattered):
                 assert value is None or digits(value) in text
 

@@ -129,14 +129,16 @@ def test_light_that_does_not_arrive_moves_nowhere(result: Assessment) -> None:
     assert extremes(dark) is None
     made = replace(result, size_movements=(dark,), components=(), observers=result.observers[:1])
     assert joined("no scattered light of it arrives") in printed(made)
-    assert size_warnings(made) == ["test haze (glycol & <haze>): size not stated; no light arrives over 0.5 to 1.5 um"]
+    assert size_warnings(made) == ["test haze (glycol & <haze>): size not stated; no light of it arrives over a mass median "
+                                   "diameter of 0.5 to 1.5 um"]  # fmt: skip
 
 
 def test_warning_of_one_line(result: Assessment) -> None:
     (movement,) = result.size_movements
     named = replace(movement, load="glycol haze", kind="glycol haze", scattered=((0.4, 0.7, 1.0, 1.1, 1.3),))
     told = size_warnings(replace(result, size_movements=(named,)))
-    assert told == ["glycol haze: size not stated; light moves by 0.40 to 1.3 over 0.5 to 1.5 um"]
+    assert told == ["glycol haze: size not stated; light is 0.40 to 1.3 times that of the usual size over a "
+                    "mass median diameter of 0.5 to 1.5 um, which the bounds carry"]  # fmt: skip
     steering = replace(movement, load="a\x1b[31m\u202eb")
     assert size_warnings(replace(result, size_movements=(steering,)))[0].startswith("a[U+001B][31m[U+202E]b (glycol")
 
@@ -144,8 +146,8 @@ def test_warning_of_one_line(result: Assessment) -> None:
 def test_request_for_the_size() -> None:
     told = size_request(LOADS[0], SPAN)
     assert told == (
-        "test haze (glycol & <haze>): size not stated: state it as [particles.sizes] (mass median diameter is taken "
-        "as 1 um; it may be 0.5 to 1.5 um)"
+        "test haze (glycol & <haze>): size not stated (mass median diameter is taken as 1 um; it may be 0.5 to "
+        "1.5 um): state it as [particles.sizes], for example with mass_median_diameter and geometric_sd"
     )
 
 

@@ -112,6 +112,23 @@ def test_digits_are_as_many_as_asked(value: float, count: int) -> None:
     assert float(quantities.digits(-value, count)) == -float(quantities.digits(value, count))
 
 
+@pytest.mark.parametrize(
+    ("value", "error", "shown"),
+    [
+        (1.2345e-6, 2.1e-8, "1.23e-6 ± 2e-8"),
+        (1.2345e-6, 3.1e-7, "1.2e-6 ± 3e-7"),
+        (1.2345e-6, 4e-6, "1e-6 ± 4e-6"),
+        # No more digits than the value has.
+        (1.2345e-6, 1e-13, "1.23e-6 ± <1e-8"),
+        (0.0123, 1.02e-9, "0.0123 ± <1e-4"),
+        (0.0, 0.0, "0 ± 0"),
+        (1.5, 0.0, "1.50 ± 0"),
+    ],
+)
+def test_values_with_their_errors(value: float, error: float, shown: str) -> None:
+    assert quantities.signed_interval(value, error) == shown
+
+
 def test_quantities_in_words() -> None:
     assert quantities.wavelength(532e-9) == "532 nm"
     assert quantities.wavelength(632.8e-9) == "632.8 nm"
