@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 
 from lasescatter.assumptions import Assumption
 from lasescatter.matter import HenyeyGreenstein, SizeTable
+from lasescatter.optics.distributions import mean_power
 from lasescatter.optics.sizes import ParticleOptics
 from lasescatter.scene import Everywhere, Load, LoadReading
 
@@ -114,14 +115,14 @@ class Concentration:
     """How much of a load there is where its region's profile is 1."""
 
     number: float | None
-    """[m⁻³]; None for a stand-in."""
+    """Particles between the cuts of their sizes. [m⁻³]; None for a stand-in."""
     dry_mass: float | None
     """Without the water taken up. [kg m⁻³]; None where no density is stated, and for a stand-in."""
     mass: float | None
     """As the particles float, water included. [kg m⁻³]"""
     extinction_scale: float
-    """By what cross sections are multiplied: the number concentration [m⁻³], or for a stand-in, whose nominal
-    extinction is 1 m², its extinction coefficient [m⁻¹]."""
+    """By what cross sections are multiplied: the number concentration as if no sizes were cut [m⁻³], or for a stand-in,
+    whose nominal extinction is 1 m², its extinction coefficient [m⁻¹]."""
     known_at: float | None = None
     """Wavelength at which a stand-in's extinction was read; None: it follows from the particles at any. [m]"""
 
@@ -197,7 +198,8 @@ def concentration(
     if extinction is not None:
         number = extinction / optics_at(at).extinction
     elif reading.kind == "number":
-        number = reading.value
+        # What is counted lies between the cuts; distributions are normalised over all radii.
+        number = reading.value / _between_cuts(floating)
     else:
         particle = floating.mass if reading.basis == "ambient" else floating.dry_mass
         if particle is None:
@@ -205,7 +207,12 @@ def concentration(
         number = reading.value / particle
     dry = None if floating.dry_mass is None else number * floating.dry_mass
     wet = None if floating.mass is None else number * floating.mass
-    return Concentration(number, dry, wet, number)
+    return Concentration(number * _between_cuts(floating), dry, wet, number)
+
+
+def _between_cuts(floating: Floating) -> float:
+    """Share of the particles whose sizes are not cut away."""
+    return sum(mode.weight * mean_power(mode.shape, 0) for mode in floating.modes)
 
 
 def assumptions_of(loads: tuple[Load, ...], wavelengths: set[float]) -> tuple[Assumption, ...]:

@@ -31,6 +31,8 @@ _FEWEST_INTERVALS = 16
 _WIDEST_INTERVAL = 0.05
 # The two ends of a distribution.
 _TAILS = 2
+# Size parameter from which panels span several rungs of the ladder of tables, and how many.
+_LARGE_SPHERES, _RUNGS_OF_LARGE = 1500.0, 4
 
 NOTHING = SphereSum(0.0, 0.0, np.zeros((4, 1)))
 
@@ -263,7 +265,11 @@ class _Average:
         for end in limits:
             x = self._wavenumber * float(np.exp(end))
             check_size_parameter(x, x, f" (radius {np.exp(end):.4g} m, which a distribution of sizes reaches)")
-        edges = np.concatenate((np.log(block_edges() / self._wavenumber), distributions.corners(shape)))
+        edges = block_edges()
+        # Large spheres are few, and their tables are too large to keep: what a panel costs is its table.
+        large = int(np.searchsorted(edges, _LARGE_SPHERES))
+        edges = np.concatenate((edges[:large], edges[large::_RUNGS_OF_LARGE]))
+        edges = np.concatenate((np.log(edges / self._wavenumber), distributions.corners(shape)))
         inside = np.unique(edges[(edges > limits[0]) & (edges < limits[1])])
         widest = min(_WIDEST_INTERVAL, (limits[1] - limits[0]) / _FEWEST_INTERVALS)
         return [

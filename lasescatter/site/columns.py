@@ -27,6 +27,10 @@ _BRACKETS = (re.compile(r"(?P<name>.*?)\s*\[(?P<unit>[^\[\]]*)\]"), re.compile(r
 _LONGEST_CELL = 100
 
 
+_LOGARITHMIC = {"db", "b", "bel", "np", "neper", "log", "log10", "lg", "ln", "log2"}
+"""Units and words that mean the logarithm of a value."""
+
+
 @dataclass(frozen=True)
 class Column:
     """A column that a table may have."""
@@ -227,6 +231,9 @@ def _recognised(
                 faults.append((f"{where}: {quoted(unit)} {error.wrong}", f"{error.mend}, as in {column.header}"))
             if not unit:
                 faults.append((f"{where}: the column has no unit", f"Write it in brackets, as in {column.header}"))
+        elif unit and unit.strip().lower() in _LOGARITHMIC:
+            faults.append((f"{where}: plain values are due, and {quoted(unit)} says that these are logarithms",
+                           f"Write {column.header}, and the values themselves"))  # fmt: skip
         elif unit and not column.any_unit and unit not in ("1", "-"):
             faults.append((f"{where}: plain numbers are due, and {quoted(unit)} is given as their unit",
                            f"Write {column.header}, and the numbers without a unit"))  # fmt: skip

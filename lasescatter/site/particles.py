@@ -14,6 +14,8 @@ from lasescatter.matter import (
     Index,
     Material,
     MeasuredMatrix,
+    SizeMode,
+    SizeTable,
     Trust,
 )
 from lasescatter.scene import Load
@@ -32,6 +34,12 @@ from lasescatter.site.table import Seen, Table, key
 MOST_MODES = 20
 
 STAND_IN = Trust("stand-in", 5.0, "a Henyey–Greenstein function stands in for the scattering matrix")
+CUT_TABLE = Trust(
+    "weak",
+    3.0,
+    "the table of sizes ends where its particles still have a fifth or more of their greatest cross-section",
+)
+MUCH_LEFT = 0.2
 MATRIX = Trust("entered", 1.0, "the scattering matrix is the user's own")
 MATRIX_WITHOUT_F12 = Trust(
     "entered", 2.0, "the scattering matrix is the user's own, without F12: linear light may be up to twice as much"
@@ -130,7 +138,8 @@ class ParticlesTable(Table):
         if self.kind is not None:
             return self._of_kind(load, self.kind, place, ledger)
         index = cast(Index, self._own_index())
-        return replace(load, modes=modes_of(self.sizes), material=Material(index, self._own_density()), trust=ENTERED)
+        modes, material = modes_of(self.sizes), Material(index, self._own_density())
+        return replace(load, modes=modes, material=material, trust=CUT_TABLE if _is_cut(modes) else ENTERED)
 
     def _of_kind(self, load: Load, named: NamedKind, place: Place, ledger: Ledger) -> Load:
         """The load of a kind; what the entry states itself replaces what the kind says."""
@@ -138,6 +147,8 @@ class ParticlesTable(Table):
         trust, span, modes = kind.trust, kind.size_span, kind.modes
         if self.sizes:
             trust, span, modes = kind.trust_with_own_sizes, None, modes_of(self.sizes)
+            if _is_cut(modes) and trust.factor < CUT_TABLE.factor:
+                trust = CUT_TABLE
         material = kind.material
         if index is not None:
             material = replace(material, index=index)
@@ -234,3 +245,13 @@ def _one_index(seen: Seen) -> Iterator[Fault]:
     if seen.stated("index") and seen.stated("index_file"):
         yield Fault(("index_file",), "both index and index_file are given, and only one of them can hold",
                     "Keep one and leave the other out")  # fmt: skip
+
+
+def _is_cut(modes: tuple[SizeMode, ...]) -> bool:
+    """Whether a table of sizes ends where much of the cross-section may lie beyond."""
+    for mode in modes:
+        if isinstance(mode.shape, SizeTable):
+            areas = [n * r * r for n, r in zip(mode.shape.density, mode.shape.radii, strict=True)]
+            if max(areas[0], areas[-1]) >= MUCH_LEFT * max(areas):
+                return True
+    return False

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator, Mapping
+from statistics import NormalDist
 from typing import Annotated, ClassVar, cast
 
 from lasescatter.matter import Lognormal, ModifiedGamma, SingleSize, SizeMode, SizeShape
@@ -15,6 +16,9 @@ from lasescatter.site.table import Seen, Table, key
 
 WEIGHTS_OFF_ONE = 1e-3
 """How far the weights of several modes may add up from 1; they are then made to add up exactly."""
+
+LEAST_LEFT = 1e-6
+"""Cuts that leave less than this share of the particles are refused."""
 
 Radius = Annotated[float, Quantity("length", "1 nm", "100 um", "0.5 um")]
 Diameter = Annotated[float, Quantity("length", "1 nm", "200 um", "1 um")]
@@ -79,6 +83,8 @@ class SizeKeys(Table):
                             f"Leave it out; {quoted(shape)} takes {_listed(shape, wanted)}")  # fmt: skip
         if seen.good("smallest", "largest") and seen.get("smallest") >= seen.get("largest"):
             yield Fault(("largest",), "the largest radius is not above the smallest", "Swap the two")
+        elif shape == "lognormal" and len(stated) == 1 and seen.good("geometric_sd", *stated):
+            yield from _cut_faults(seen, stated[0])
 
     def to_shape(self) -> SizeShape:
         """In SI."""
@@ -118,6 +124,19 @@ class SizesTable(SizeKeys):
         return super().to_shape() if self.file is None else cast(SizeShape, self.file.content)
 
 
+def _cut_faults(seen: Seen, stated: str) -> Iterator[Fault]:
+    """Cuts that leave next to nothing of a mode, in which its number would mean nothing."""
+    cuts = [name for name in ("smallest", "largest") if seen.good(name)]
+    medians = {name: seen.get(name) for name in MEDIANS}
+    mode = SizeKeys.model_construct(
+        shape="lognormal", geometric_sd=seen.get("geometric_sd"), smallest=seen.get("smallest"),
+        largest=seen.get("largest"), **medians,
+    )  # fmt: skip
+    if cuts and _between_cuts(mode.to_shape()) <= LEAST_LEFT:
+        yield Fault((cuts[0],), f"next to nothing of the sizes is left beside the {stated.replace('_', ' ')}",
+                    "Give cuts that leave some of the particles")  # fmt: skip
+
+
 def weight_faults(sizes: tuple[SizeKeys, ...]) -> Iterator[Fault]:
     """What must hold between the modes of one entry; places count from the table that has `sizes`."""
     if len(sizes) > 1:
@@ -135,9 +154,23 @@ def weight_faults(sizes: tuple[SizeKeys, ...]) -> Iterator[Fault]:
 
 
 def modes_of(sizes: tuple[SizeKeys, ...]) -> tuple[SizeMode, ...]:
-    """The modes in SI, their weights brought to 1."""
-    total = sum(mode.weight or 1.0 for mode in sizes)
-    return tuple(SizeMode(mode.to_shape(), (mode.weight or 1.0) / total) for mode in sizes)
+    """The modes in SI, their weights brought to 1.
+
+    The file's weights are shares of the particles that there are; those of a `SizeMode` count a cut distribution whole.
+    """
+    shapes = [mode.to_shape() for mode in sizes]
+    whole = [(mode.weight or 1.0) / _between_cuts(shape) for mode, shape in zip(sizes, shapes, strict=True)]
+    return tuple(SizeMode(shape, weight / sum(whole)) for shape, weight in zip(shapes, whole, strict=True))
+
+
+def _between_cuts(shape: SizeShape) -> float:
+    """Share of a distribution that its cuts leave, and at least a trace."""
+    if not isinstance(shape, Lognormal):
+        return 1.0
+    number = NormalDist(math.log(shape.median_radius), math.log(shape.geometric_sd))
+    below = 0.0 if shape.smallest is None else number.cdf(math.log(shape.smallest))
+    above = 1.0 if shape.largest is None else number.cdf(math.log(shape.largest))
+    return max(above - below, LEAST_LEFT)
 
 
 def _listed(shape: str, wanted: Mapping[str, str]) -> str:

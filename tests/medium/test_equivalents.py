@@ -14,7 +14,7 @@ from lasescatter.optics.indices import IndexRangeError
 from lasescatter.scene import Everywhere, Load, LoadReading
 
 SECTIONS = {550e-9: 2e-12, 532e-9: 3e-12, 1064e-9: 1e-12}
-WET = SimpleNamespace(dry_mass=4e-15, mass=6e-15)
+WET = SimpleNamespace(dry_mass=4e-15, mass=6e-15, modes=(SizeMode(Lognormal(0.5e-6, 1.5)),))
 HAZE = Load("haze", (SizeMode(Lognormal(0.5e-6, 1.5)),), Material(1.4 + 0j, 1000.0), LoadReading("number", 5e10),
             Everywhere(), None, "haze")  # fmt: skip
 AMOUNT = Concentration(5e10, 2e-4, 3e-4, 5e10)

@@ -6,6 +6,7 @@ import math
 from dataclasses import replace
 from types import SimpleNamespace
 
+import numpy as np
 import pytest
 
 from lasescatter.matter import (
@@ -20,13 +21,16 @@ from lasescatter.matter import (
 )
 from lasescatter.medium import load as loads
 from lasescatter.medium.load import assumptions_of, concentration, extinction_of
+from lasescatter.optics.growth import as_they_float
+from lasescatter.optics.sizes import particle_optics
 from lasescatter.scene import Box, Everywhere, Load, LoadReading
 
 # Cross sections of an invented drop: 2 um² at 550 nm, 3 um² at 532 nm.
 SECTIONS = {550e-9: 2e-12, 532e-9: 3e-12}
-WET = SimpleNamespace(dry_mass=4e-15, mass=6e-15)
-UNWEIGHED = SimpleNamespace(dry_mass=None, mass=None)
-HAZE = Load("haze", (SizeMode(Lognormal(0.5e-6, 1.5)),), Material(1.4 + 0j, 1000.0), LoadReading("number", 1e9),
+MODES = (SizeMode(Lognormal(0.5e-6, 1.5)),)
+WET = SimpleNamespace(dry_mass=4e-15, mass=6e-15, modes=MODES)
+UNWEIGHED = SimpleNamespace(dry_mass=None, mass=None, modes=MODES)
+HAZE = Load("haze", MODES, Material(1.4 + 0j, 1000.0), LoadReading("number", 1e9),
             Everywhere(), None, "haze")  # fmt: skip
 VEIL = replace(HAZE, modes=(), material=None, stand_in=HenyeyGreenstein(0.7), albedo=1.0)
 
@@ -172,3 +176,22 @@ def test_what_errs_is_told_once_for_several_loads():
     found = assumptions_of((HAZE, replace(HAZE, name="second"), replace(VEIL, reading=GREEN)), {532e-9})
     assert len(found) == len(set(found)) and {loads.SPHERES, loads.STAND_IN, loads.PUFFS} <= set(found)
     assert ENTERED.factor == 1.0
+
+
+def test_a_number_counts_what_lies_between_the_cuts():
+    """An optical counter sees particles above its threshold alone: the same sizes as a table give the same light."""
+    median, sd, smallest = 0.05e-6, 1.8, 0.15e-6
+    cut = Lognormal(median, sd, smallest)
+    u = np.linspace(math.log(smallest), math.log(median) + 6 * math.log(sd), 2001)
+    heights = np.exp(-0.5 * ((u - math.log(median)) / math.log(sd)) ** 2)
+    heights /= np.trapezoid(heights, u)
+    table = SizeTable(tuple(np.exp(u).tolist()), tuple(heights.tolist()))
+    found = []
+    for shape in (cut, table):
+        modes, material = (SizeMode(shape),), Material(1.43 + 0j, 1000.0)
+        load = Load("drops", modes, material, LoadReading("number", 1e11), Everywhere(), None, "particles")
+        floating = as_they_float(modes, material, 0.0, 293.15)
+        amount = concentration(load, floating, lambda at, modes=modes: particle_optics(modes, 1.43 + 0j, at), 532e-9)
+        assert amount.number == pytest.approx(1e11, rel=1e-12, abs=0)
+        found.append((amount.extinction(particle_optics(modes, 1.43 + 0j, 532e-9)), amount.mass))
+    assert found[0] == pytest.approx(found[1], rel=2e-3, abs=0)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import shutil
 
 import pytest
 from site_cases import AIR, CATALOGUE, FOG, GOOD, TABLES, changed, read_text
@@ -179,3 +180,27 @@ def test_air_too_humid_for_what_takes_up_water_is_told_at_reading():
     assert problem.key == "air.relative_humidity"
     assert problem.line is not None
     assert "takes up water" in problem.wrong and "99 %" in problem.wrong
+
+
+def test_weights_of_cut_modes_are_shares_of_what_is_left():
+    """Of two modes alike but for a cut at the median, equal shares: the cut one stands for twice its share whole."""
+    text = ('shape = "lognormal"\nmedian_diameter = "0.6 um"\ngeometric_sd = 1.4\nsmallest = "0.1 um"\nweight = 0.75',
+            'shape = "lognormal"\nmedian_diameter = "0.6 um"\ngeometric_sd = 1.4\nsmallest = "0.3 um"\nweight = 0.5')
+    other = ('mass_median_diameter = "3 um"\ngeometric_sd = 1.5\nlargest = "4 um"\nweight = 0.25',
+             'median_diameter = "0.6 um"\ngeometric_sd = 1.4\nweight = 0.5')  # fmt: skip
+    load = next(load for load in scene_with(text, other).loads if load.name == "sieved drops")
+    assert [mode.weight for mode in load.modes] == pytest.approx([2 / 3, 1 / 3], rel=1e-12, abs=0)
+
+
+def test_cuts_that_leave_nothing_are_refused():
+    with pytest.raises(SiteError, match="next to nothing"):
+        scene_with(('smallest = "0.1 um"', 'smallest = "20 um"'))
+
+
+@pytest.mark.parametrize(("last", "factor"), [("0", 1.0), ("9e9", 3.0)])
+def test_a_table_that_ends_in_its_midst_is_trusted_less(tmp_path, last, factor):
+    folder = tmp_path / "site"
+    shutil.copytree(TABLES, folder)
+    (folder / "counts.csv").write_text(f"radius [um], dN/dlnr\n0.1, 0\n0.3, 5\n1, {last}\n", encoding="utf-8")
+    load = next(load for load in read_text(GOOD["good_catalogue"], folder=folder).loads if load.name == "counted drops")
+    assert load.trust.factor == factor

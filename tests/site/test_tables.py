@@ -254,3 +254,11 @@ def test_a_file_used_twice_is_read_once_and_judged_for_each_use(folder):
     assert [problem.key for problem in caught.value.problems if "wavelength [nm]" in problem.wrong] == [
         'particles["fog with sizes"].sizes.file', 'particles["counted drops"].sizes.file',
     ]  # fmt: skip
+
+
+@pytest.mark.parametrize("unit", ["dB", "log10", "ln"])
+def test_logarithms_are_no_values(folder, unit):
+    text = (folder / "matrix.csv").read_text(encoding="utf-8").replace("F11", f"F11 [{unit}]", 1)
+    (folder / "matrix.csv").write_text(text, encoding="utf-8")
+    with pytest.raises(SiteError, match="logarithms"):
+        read_text(GOOD["good_catalogue"], folder=folder)
