@@ -72,19 +72,19 @@ def received(field: LineField, observer: int, limit: Limit, wall_points: Floats)
     ]
     doubts = _doubts(field, observer, taken, error)
     doubters = field.doubters(observer)
-    named = ", ".join(f'"{name}" (×{factor:.3g})' for name, factor in doubters)
+    named = " and ".join(f'"{name}" (×{factor:.3g})' for name, factor in doubters)
     whose = f"{TRUST}the optical thickness of {named}"
     if doubters:
         # More extinction than stated: also more of the orders that are not computed.
         further = float(allowance(field.thickness_doubted[observer])) - raised_within_reach
         bound = taken.light_reach + error + sum(extra for _, extra in doubts)
-        allowed.append((f"{whose}, higher orders", bound * further))
+        allowed.append((f"{whose} for higher orders", bound * further))
     allowed += [(cause, extra * raised_within_reach) for cause, extra in doubts]
     if full_field(hazard_of(limit)) and not radiance:
         area = tight_room_area(wall_points)
         returned, most = field.set_free(), field.set_free(field.extinction_factors)
         allowed.append((f"walls of a room of {area:.0f} m²", wall_return(area, returned)))
-        allowed.append((f"{whose}, walls", wall_return(area, most - returned)))
+        allowed.append((f"{whose} for walls", wall_return(area, most - returned)))
     low = max(0.0, taken.light - error) + taken.stop + taken.direct
     return Received(tuple(by_origin), low, tuple(part for part in allowed if part[1] > 0), taken.window)
 

@@ -98,7 +98,7 @@ def test_reading_of_extinction_fixes_the_thickness_and_mass_does_not():
     assert optical.optical_thickness == pytest.approx(by_mass.optical_thickness, rel=1e-9)
     causes = [{cause for c in found.comparisons for cause, _ in c.allowances} for found in (optical, by_mass)]
     whose = 'trust in the optical thickness of "test haze" (×3)'
-    doubted = {f"{whose}, higher orders", f"{whose}, walls"}
+    doubted = {f"{whose} for higher orders", f"{whose} for walls"}
     assert not doubted & causes[0]
     assert doubted <= causes[1]
 
@@ -176,7 +176,7 @@ def test_the_bound_of_the_orders_not_computed_can_be_redone_by_hand():
     assert entry.thickness_doubted - entry.thickness_within_reach <= 2 * 2e-5 * 10
     (comparison,) = found.comparisons
     (cause,) = [cause for cause, _ in comparison.allowances if cause.endswith("higher orders")]
-    assert cause == 'trust in the optical thickness of "dust" (×3), higher orders'
+    assert cause == 'trust in the optical thickness of "dust" (×3) for higher orders'
     plain = only(eye_only(1e3, (thick, replace(dust, trust=weak(1.0)))))
     assert comparison.ratio_high == pytest.approx(plain.comparisons[0].ratio_high, rel=5e-3)
     light = (1 + 1.5 * entry.thickness_doubted) / (1 + 1.5 * entry.thickness_within_reach)
