@@ -152,6 +152,8 @@ class SizeSpan:
     high: float
     """[m]"""
     source: str
+    factor: float = 1.0
+    """Factor of trust that remains where the size is stated."""
 
 
 @dataclass(frozen=True)

@@ -13,7 +13,7 @@ from lasescatter.medium.profiles import profile_of
 from lasescatter.optics.air import LONGEST_WAVELENGTH, SHORTEST_WAVELENGTH, AirRangeError, air_optics
 from lasescatter.optics.growth import Floating, HumidityError, as_they_float
 from lasescatter.optics.indices import IndexRangeError
-from lasescatter.optics.measured import stand_in_optics
+from lasescatter.optics.measured import MatrixError, stand_in_optics
 from lasescatter.optics.mie import MieSpace, SizeRangeError
 from lasescatter.optics.sizes import Accuracy, ParticleOptics, particle_optics
 from lasescatter.problems import Problem, SiteError
@@ -166,7 +166,11 @@ class SiteOptics:
             key: tuple[object, ...] = (load.stand_in, load.albedo, wavelength)
             if key not in self._optics:
                 assert load.stand_in is not None and load.albedo is not None  # no floating particles: a stand-in
-                self._optics[key] = stand_in_optics(load.stand_in, load.albedo, wavelength)
+                try:
+                    self._optics[key] = stand_in_optics(load.stand_in, load.albedo, wavelength)
+                except MatrixError as fault:
+                    mend = "Give its rows closer together, above all where F11 is steep"
+                    raise SiteError([Problem(f"{load.key}.matrix_file", str(fault), mend)]) from fault
             return self._optics[key]
         indices = floating.indices(wavelength)
         key = (floating.modes, indices, wavelength)

@@ -31,6 +31,8 @@ class _Taken:
     """Numerical error of `light`, the average over sizes aside."""
     light_reach: float
     """Bound of the scattered light within reach."""
+    factors: Floats
+    """By which each component's light may be off, (components,)."""
     by_component: Floats
     """The same bound for each component alone, (components,); they sum to `light_reach` or more."""
     stop: float
@@ -97,7 +99,7 @@ def _doubts(field: LineField, observer: int, taken: _Taken, error: float) -> lis
     whole = float(taken.by_component.sum())
     found = []
     for component, factor, bound in zip(
-        field.mixture.components, field.factors[:, observer].tolist(), taken.by_component.tolist(), strict=True
+        field.mixture.components, taken.factors.tolist(), taken.by_component.tolist(), strict=True
     ):
         if factor > 1 and bound > 0:
             why = component.mark if factor <= component.trust else "sizes it may have"
@@ -114,6 +116,7 @@ def _full(field: LineField, observer: int, aperture: float) -> _Taken:
         light=float(field.greatest.irradiance[observer]),
         error=float(field.greatest.error[observer]),
         light_reach=float(by_component.sum()),
+        factors=field.factors[:, observer],
         by_component=by_component,
         stop=stop,
         stop_reach=_stop_within_reach(field, observer, stop),
@@ -143,6 +146,7 @@ def _in_field(field: LineField, observer: int, aperture: float, acceptance: floa
         light=total / solid,
         error=(float(field.greatest.error[observer]) + TABULATION_ERROR * total) / solid,
         light_reach=max(total, float(by_component.sum())) / solid,
+        factors=field.factors[:, observer],
         by_component=by_component / solid,
         stop=stop,
         stop_reach=stop_reach,
@@ -166,6 +170,7 @@ def _peak(field: LineField, observer: int, aperture: float) -> _Taken | str:
         light=light,
         error=TABULATION_ERROR * light,
         light_reach=max(light, field.hot_spot * float(sum(peak.within_reach[observer] for peak in peaks))),
+        factors=field.peak_factors[:, observer],
         by_component=field.hot_spot * np.sum([peak.by_component[:, observer] for peak in peaks], axis=0),
         stop=field.stop_radiance if field.stop_compared[observer] > 0 else 0.0,
         stop_reach=field.stop_radiance if field.sees_stop(observer) else 0.0,

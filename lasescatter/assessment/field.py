@@ -57,6 +57,8 @@ class LineField:
     spot_radius: float
     factors: Floats
     """By which the scattered light of each component may be off, (components, observers)."""
+    peak_factors: Floats
+    """The same for the greatest radiance."""
     extinction_factors: Floats
     """By which the extinction of each component may be off, (components,)."""
     known: dict[tuple[str, float], Any]
@@ -261,6 +263,7 @@ def line_field(beam: Beam, line: Line, mixture: Mixture, points: Floats, reaches
         spot=spot,
         spot_radius=spot_radius,
         factors=np.repeat([[component.trust] for component in mixture.components], len(points), axis=1),
+        peak_factors=np.repeat([[component.trust] for component in mixture.components], len(points), axis=1),
         extinction_factors=np.array([component.extinction_trust for component in mixture.components]),
         known={},
     )

@@ -130,11 +130,17 @@ class _AtSizes:
     """Share of the load in it."""
     bound: Floats
     """Of the load alone, within reach."""
+    brightest: Floats
+    """Most that the brightness of any element of the beam is, relative to the usual size."""
 
     def factors(self, usual: int) -> Floats:
         """Times which the light of the load may be that at the usual size, for its upper bound, (observers,)."""
         compared, bound = (_peak_over_usual(self.sizes, values, usual) for values in (self.compared, self.bound))
         return np.maximum(compared, bound)
+
+    def peak_factors(self, usual: int) -> Floats:
+        """The same for the greatest radiance, which moves more than the light of the whole beam."""
+        return np.maximum(self.factors(usual), _peak_over_usual(self.sizes, self.brightest, usual))
 
 
 def _of_load(
@@ -163,10 +169,13 @@ def _of_load(
             else coarse.component(scaled(load, size / span.usual), wavelength)
             for size in sizes
         ]
-        found = _at_sizes(field, index, components, sizes)
+        found = _at_sizes(field, index, components, sizes, usual)
         own[key] = powers[key] * found.own
         extinction = np.array([[component.extinction] for component in components])
-        raised[key] = _raised(field, index, found.factors(usual), float(peak_over(sizes, extinction)[0]))
+        # The size is in doubt, and with every size what remains in doubt where the size is stated.
+        remaining = optics.trust(replace(load, trust=replace(load.trust, factor=span.factor)), wavelength).factor
+        moved, peak_moved = (remaining * factors for factors in (found.factors(usual), found.peak_factors(usual)))
+        raised[key] = _raised(field, index, moved, peak_moved, float(peak_over(sizes, extinction)[0]))
         largest = np.maximum(largest, raised[key].factors[index])
     scattered, lines = _farthest([(fields[key].line.name, light) for key, light in own.items()], usual)
     movement = SizeMovement(
@@ -185,7 +194,8 @@ def _of_load(
 
 def _peak_over_usual(sizes: tuple[float, ...], values: Floats, usual: int) -> Floats:
     """Largest value over the sizes, relative to that at the usual one, (observers,)."""
-    return np.asarray(peak_over(sizes, values) / np.where(values[usual] > 0, values[usual], np.inf))
+    there = values[usual] > 0
+    return np.where(there, peak_over(sizes, values) / np.where(there, values[usual], 1.0), 1.0)
 
 
 def _farthest(own: list[tuple[str, Floats]], usual: int) -> tuple[tuple[tuple[float, ...], ...], tuple[str, ...]]:
@@ -202,7 +212,7 @@ def _farthest(own: list[tuple[str, Floats]], usual: int) -> tuple[tuple[tuple[fl
     return tuple(tuple(row) for row in chosen.tolist()), tuple(own[i][0] for i in line)
 
 
-def _at_sizes(field: LineField, index: int, others: list[Component], sizes: tuple[float, ...]) -> _AtSizes:
+def _at_sizes(field: LineField, index: int, others: list[Component], sizes: tuple[float, ...], usual: int) -> _AtSizes:
     """The light of one line with the component at every size."""
     components = list(field.mixture.components)
     # The largest particles have the matrix that changes fastest with angle: their nodes serve all sizes.
@@ -215,13 +225,12 @@ def _at_sizes(field: LineField, index: int, others: list[Component], sizes: tupl
         lights = scattered(field.legs, field.swings, mixture, points, radii, reaches, COARSE_TOLERANCE)
         exchanged = exchange(lights, mixture, index, points, reaches)
         found = [exchanged.light(other) for other in others]
-        parts.append(
-            [np.stack([getattr(light, name) for light in found]) for name in ("compared", "own", "within_reach")]
-        )
-    return _AtSizes(sizes, *(np.concatenate([part[i] for part in parts], axis=1) for i in range(3)))
+        rows = [np.stack([getattr(light, name) for light in found]) for name in ("compared", "own", "within_reach")]
+        parts.append([*rows, exchanged.brightest_over(others, usual)])
+    return _AtSizes(sizes, *(np.concatenate([part[i] for part in parts], axis=1) for i in range(4)))
 
 
-def _raised(field: LineField, index: int, moved: Floats, extinction: float) -> LineField:
+def _raised(field: LineField, index: int, moved: Floats, peak_moved: Floats, extinction: float) -> LineField:
     """A field whose light of one component may be as much more as it moves over the sizes, and whose optical
     thickness may be that of an extinction of the component [m⁻¹].
 
@@ -229,6 +238,8 @@ def _raised(field: LineField, index: int, moved: Floats, extinction: float) -> L
     polarization and for forward light the two differ.
     """
     factors, extinction_factors = field.factors.copy(), field.extinction_factors.copy()
+    peak_factors = field.peak_factors.copy()
     factors[index] = np.maximum(factors[index], moved)
+    peak_factors[index] = np.maximum(peak_factors[index], peak_moved)
     extinction_factors[index] = max(extinction_factors[index], extinction / field.mixture.components[index].extinction)
-    return replace(field, factors=factors, extinction_factors=extinction_factors)
+    return replace(field, factors=factors, peak_factors=peak_factors, extinction_factors=extinction_factors)

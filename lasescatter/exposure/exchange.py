@@ -6,6 +6,7 @@ fastest with angle: the largest.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -74,6 +75,24 @@ class Exchange:
             own=sums_by_owner(owner, (bright if self.component.steady else f * bright) * shielded, self.count),
             within_reach=np.sum([part[4] for part in parts], axis=0),
         )
+
+    def brightest_over(self, others: Sequence[Component], usual: int) -> Floats:
+        """Most that the brightness of any element may be with other components, as seen from within the reach,
+        relative to one of them, (others, observers); 1 where none is seen.
+
+        No peak of radiance moves more than that, wherever it stands.
+        """
+        most = np.ones((len(others), self.count))
+        for leg in self.legs:
+            nodes = leg.integrated.nodes
+            near = np.stack(
+                [other.scattering * other.matrix.greatest_near(nodes.theta, leg.turned) for other in others]
+            )
+            seen = (leg.value > 0) & (near[usual] > 0)
+            ratio = near[:, seen] / near[usual, seen]
+            for row, values in zip(most, ratio, strict=True):
+                np.maximum.at(row, nodes.owner[seen], values)
+        return most
 
     def _of_leg(self, leg: _Leg, other: Component) -> tuple[Floats, Floats, Floats, Floats, Floats]:
         nodes = leg.integrated.nodes

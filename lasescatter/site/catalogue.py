@@ -285,7 +285,8 @@ class _Maker:
         return Kind(
             name=table.name, also_called=table.also_called, what=table.what, modes=modes, material=material,
             trust=trust, trust_with_own_sizes=with_own_sizes,
-            size_span=None if table.size_span is None else table.size_span.to_span("; ".join(spans)),
+            size_span=None if table.size_span is None else table.size_span.to_span(
+                "; ".join(spans), with_own_sizes.factor),
             typical=tuple(load.to_typical(entry) for load, entry in zip(table.load, written, strict=True)),
             sources=source_lines(table), file=file.file, data=data, indices=used,
         )  # fmt: skip

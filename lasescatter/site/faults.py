@@ -35,6 +35,10 @@ def refusal(wrong: str, mend: str) -> PydanticCustomError:
     return PydanticCustomError("refused", "{wrong}", {"wrong": wrong, "mend": mend})
 
 
+HERE: Place = ("",)
+"""Place of a fault of the very value that is refused."""
+
+
 def refusals(faults: Sequence[Fault], own: Sequence[Mapping[str, Any]]) -> PydanticCustomError:
     """Several faults of one table at once; `own` are errors of the table's last field itself."""
     return PydanticCustomError("several", "several faults", {"faults": tuple(faults), "own": tuple(own)})

@@ -16,7 +16,7 @@ from pydantic_core import PydanticCustomError
 
 from lasescatter.problems import SiteError
 from lasescatter.site.columns import TableError
-from lasescatter.site.faults import Fault, quoted, refusal, refusals
+from lasescatter.site.faults import HERE, Fault, quoted, refusal, refusals
 from lasescatter.site.fields import Marker, Reading
 from lasescatter.site.syntax import decoded
 
@@ -68,18 +68,18 @@ class TableFile(Marker):
                 reading.made[known] = FromFile(name, content, told)
         found = reading.made[known]
         if isinstance(found, TableError):
-            raise _several(found, info.field_name or "")
+            raise _several(found)
         return found
 
     def schema(self) -> dict[str, Any]:
         return {"type": "string", "minLength": 1, "maxLength": LONGEST_NAME, "pattern": r"^[^/\\]"}
 
 
-def _several(error: TableError, field: str) -> PydanticCustomError:
+def _several(error: TableError) -> PydanticCustomError:
     """All faults of a file, at the key that names it."""
     if len(error.faults) == 1:
         return refusal(*error.faults[0])
-    return refusals([Fault((field,), wrong, mend) for wrong, mend in error.faults], ())
+    return refusals([Fault(HERE, wrong, mend) for wrong, mend in error.faults], ())
 
 
 def _name(value: Any, example: str) -> str:

@@ -13,8 +13,8 @@ from lasescatter.matter import TypicalLoad as Typical
 from lasescatter.site.faults import Fault, quoted, refusal
 from lasescatter.site.fields import Fraction, Number, Quantity, Text, Word
 from lasescatter.site.index_file import UNCONFIRMED, Mark
-from lasescatter.site.kind_sizes import SizesOfKind, SizeSpanTable, usual_size_faults
-from lasescatter.site.sizes import Radius, weight_faults
+from lasescatter.site.kind_sizes import SizeSpanTable, usual_size_faults
+from lasescatter.site.sizes import Radius, SizesOfKind, weight_faults
 from lasescatter.site.table import Seen, Table, key
 
 FORMAT = "lasescatter kind 1"

@@ -8,7 +8,7 @@ from typing import Annotated
 from lasescatter.matter import SizeSpan
 from lasescatter.site.faults import Fault
 from lasescatter.site.fields import Text, Word
-from lasescatter.site.sizes import Diameter, SizeKeys
+from lasescatter.site.sizes import Diameter, SizesOfKind
 from lasescatter.site.table import Seen, Table, key
 
 USUAL_OFF = 0.02
@@ -20,10 +20,6 @@ _SPANS = {
     "median diameter by number": "median_diameter",
     "median diameter by mass": "mass_median_diameter",
 }
-
-
-class SizesOfKind(SizeKeys):
-    """One mode of the sizes, dry."""
 
 
 class SizeSpanTable(Table):
@@ -42,9 +38,9 @@ class SizeSpanTable(Table):
         if seen.good("usual", "low", "high") and not seen.get("low") <= seen.get("usual") <= seen.get("high"):
             yield Fault(("usual",), "the usual size is not between low and high", "Order them: low, usual, high")
 
-    def to_span(self, source: str) -> SizeSpan:
-        """In SI."""
-        return SizeSpan(self.what, float(self.usual), float(self.low), float(self.high), source)
+    def to_span(self, source: str, factor: float) -> SizeSpan:
+        """In SI, with the factor of trust that remains where the size is stated."""
+        return SizeSpan(self.what, float(self.usual), float(self.low), float(self.high), source, factor)
 
 
 def usual_size_faults(span: SizeSpanTable | None, sizes: tuple[SizesOfKind, ...] | None) -> Iterator[Fault]:

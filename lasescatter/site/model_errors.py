@@ -9,7 +9,7 @@ from typing import Any, get_args
 
 from pydantic.fields import FieldInfo
 
-from lasescatter.site.faults import Fault, Place
+from lasescatter.site.faults import HERE, Fault, Place
 from lasescatter.site.spelling import Placeholder
 from lasescatter.site.table import Table
 
@@ -53,7 +53,8 @@ def faults_of(base: Place, errors: Sequence[Mapping[str, Any]], in_words: InWord
         elif error["type"] == "several":
             # Rules run with a table's last field; their places count from the table.
             table = place[:-1]
-            yield from (Fault((*table, *fault.place), fault.wrong, fault.mend) for fault in error["ctx"]["faults"])
+            for fault in error["ctx"]["faults"]:
+                yield Fault(place if fault.place == HERE else (*table, *fault.place), fault.wrong, fault.mend)
             yield from faults_of(place, error["ctx"]["own"], in_words)
         else:
             yield Fault(place, *in_words(place, error))

