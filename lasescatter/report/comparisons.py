@@ -48,7 +48,7 @@ def comparison_section(assessment: Assessment) -> list[Any]:
 def _bounds(low: float | None, high: float | None) -> str:
     if low is None or high is None:
         return ABSENT
-    return f"{few_digits(low)} to {few_digits(high)}"
+    return f"{few_digits(low)}\u00a0to\u00a0{few_digits(high)}"
 
 
 def _hazard_row(hazard: HazardJudgement) -> list[Any]:
@@ -77,7 +77,8 @@ def _judged(number: int, observer: ObserverOutcome, assessment: Assessment) -> l
         CondPageBreak(_LEAST_BLOCK),
         observer_head(number, observer, f" – {verdict_words(observer.verdict)}"),
         paragraph(
-            f"{markup(standing(observer, lacking(assessment)))}{'; ' + markup(observer.governing, 300) if observer.governing else ''}.",
+            "; ".join(markup(text, 900) for text in (standing(observer, lacking(assessment)), observer.governing) if text)
+            + ".",
             "note",
         ),
     ]
@@ -104,7 +105,7 @@ def _judged(number: int, observer: ObserverOutcome, assessment: Assessment) -> l
     below = range(2, len(rows), 2)
     table = ruled(
         rows,
-        [30, 25, 20, 21, 20, 12, 23, 7, 16],
+        [29, 24, 19, 20, 19, 12, 28, 7, 16],
         numeric=(3, 4, 5, 6, 7),
         extra=[("SPAN", (0, row), (-1, row)) for row in below]
         + [("TOPPADDING", (0, row), (-1, row), 0) for row in below],

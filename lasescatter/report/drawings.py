@@ -81,7 +81,7 @@ def _frame(axes: Axes, view: View, unit: LengthUnit, enlarged: bool) -> None:
     ):
         low = start / unit.metres
         step = view.scale / 1000.0 / unit.metres
-        values = ticks(low, low + size * step, wanted)
+        values = ticks(low, low + size * step, wanted, 2)
         setter([(value - low) / step for value in values])
         labels([printable(trimmed(value).replace("-", "−")) for value in values], fontsize=6.5)
     across, up = view.axis_names

@@ -24,7 +24,7 @@ from lasescatter.report.standing import (
     standing,
 )
 from lasescatter.report.styles import INK, MM, heads, number_cell, paragraph, ruled, verdict_words, words
-from lasescatter.report.typography import SANS, fitted, markup, printable
+from lasescatter.report.typography import SANS, both_ends, markup, printable
 
 FRONT_LINES = 6
 """Beam lines in the short table of the first page; all are in their own section."""
@@ -33,7 +33,8 @@ FRONT_OBSERVERS = 8
 BRIEF = 240
 """Characters of reasons in the table of the first page; a third of it where there are many observers."""
 FEW_OBSERVERS = 4
-NAME = 60
+NAME = 120
+"""Longest name in a table or a heading."""
 _NAME_WIDTH = 34
 """Of an observer's name in the first table. [mm]"""
 
@@ -221,7 +222,7 @@ def _verdict_table(numbered: list[tuple[int, ObserverOutcome]], missing: str) ->
         rows.append(
             [
                 str(number),
-                paragraph(markup(fitted(printable(observer.name), SANS, 7.3, (_NAME_WIDTH - 2) * MM)), "cell"),
+                paragraph(markup(both_ends(printable(observer.name), NAME)), "cell"),
                 paragraph(verdict_words(observer.verdict), "cell"),
                 paragraph(markup(standing(observer, missing)), "cell"),
                 paragraph(_because(observer, room), "cell"),

@@ -6,6 +6,7 @@ from typing import Any
 
 from lasescatter.assessment.outcome import Assessment
 from lasescatter.report.front import NAME
+from lasescatter.report.own_tables import own_tables
 from lasescatter.report.quantities import duration, per_square_centimetre, small_length, trimmed, wavelength
 from lasescatter.report.styles import heads, paragraph, ruled, words
 from lasescatter.report.typography import markup
@@ -25,6 +26,7 @@ def input_section(assessment: Assessment) -> list[Any]:
             "left is printed as its number, for example [U+6F22], here and in the drawings."
         ),
         ruled(rows, [68, 53, 53]) if len(rows) > 1 else paragraph("No inputs are on record."),
+        *own_tables(assessment),
     ]
 
 

@@ -25,6 +25,8 @@ DIGITS = 5
 _COLUMNS = 4
 MOST_BLOCKS = 60
 """More would bury the reader: then only what matters is printed, the rest stays in the record."""
+SAME_DENSITY = 1e-5
+"""Scattering coefficients that differ by less, relatively, print alike."""
 SHARE_PRINTED = 0.01
 """Of the observer's light; blocks above it are printed in any case."""
 _COMPONENT_NAME = 40
@@ -131,7 +133,8 @@ def blocks(assessment: Assessment) -> list[Any]:
             scattered += 1
             if check.program > least:
                 title = f"Hand check {scattered}: observer {number}, {leg_title(scene, check)}"
-                story.append(CheckBlock(title, _hand_lines(check, leg_distance(scene, observer.position, check))))
+                distance = leg_distance(scene, observer.position, check)
+                story.append(CheckBlock(title, _hand_lines(check, distance, height_note(assessment, check))))
             else:
                 hidden.append(check.program)
         for stop in observer.stop_checks:
@@ -241,8 +244,28 @@ def _item_lines(found: list[tuple[str, str, str]]) -> list[str]:
     return ["".join(f"{item:<{_CELL}}" for item in row).rstrip() for row in rows]
 
 
-def _hand_lines(check: HandCheck, distance: float | None) -> list[str]:
+def height_note(assessment: Assessment, check: HandCheck) -> str:
+    """Where beta_sca holds, if it is not that of the table of components: air that thins with height; else ""."""
+    beam = next((beam for beam in assessment.scene.beams if beam.name == check.beam), None)
+    if beam is None or not 0 < check.leg < len(beam.points):
+        return ""
+    wave = next((line.wavelength for line in beam.lines if line.name == check.line), None)
+    listed = [c.scattering for c in assessment.components if (c.name, c.wavelength) == (check.component, wave)]
+    if not listed or abs(check.scattering - listed[0]) <= SAME_DENSITY * listed[0]:
+        return ""
+    start, end = beam.points[check.leg - 1], beam.points[check.leg]
+    unit = assessment.scene.length_unit
+    height = start[2] + check.s_mid * (end[2] - start[2]) / math.dist(start, end)
+    return (
+        f"beta_sca at the element at theta_mid, z = {digits(height / unit.metres, 4)} {unit.name}; "
+        f"{digits(listed[0], DIGITS)} 1/m in the table of components, at z = 0"
+    )
+
+
+def _hand_lines(check: HandCheck, distance: float | None, note: str = "") -> list[str]:
     lines = []
+    if note:
+        lines += textwrap.wrap(printable(note), _COLUMNS * _CELL - 4)
     if distance is not None and check.b > distance * (1 + 1e-6):
         lines.append(
             f"b used: never less than the beam's radius; the observer is {digits(distance)} m from the leg's line"

@@ -39,7 +39,8 @@ def print_list(kinds: Sequence[Kind], console: Console) -> None:
     """All kinds as a table: how far each is trusted, where its data answer, whether its size must be stated."""
     page = TextPage(console)
     rows = [[_called(kind), kind.trust.mark, *_answers(reach_of(kind)), _asked(kind)] for kind in kinds]
-    page.table(("Kind", "Trust", "Answers [nm]", "of these weak [nm]", "Size to state: median diameter [µm]"), rows, (22, 11, 9, 15, 15))
+    head = ("Kind", "Trust", "Answers [nm]", "of these weak [nm]", "Size to state: median diameter [µm]")
+    page.table(head, rows, (22, 11, 9, 15, 15))
     page.gap()
     factors: dict[str, set[float]] = {}
     for kind in kinds:
@@ -212,15 +213,15 @@ def _modes(entries: Sequence[KindAtWavelength], found: KindOptics, page: TextPag
     names = mode_names(len(kind.modes), kind.data)
     rows = mode_rows(kind.modes, kind.material, found.air, waves, names)
     body = []
-    for row in rows:
-        grown = f", radii times {digits(row.growth, 4)}" if row.growth > 1 else ""
-        indices = [index for index in row.indices if index is not None]
-        share = f"{digits(100 * row.share)} % by number{grown}"
-        body.append([f"{plain(row.name)}: {share}; index n", *(digits(index.real, 5) for index in indices)])
-        body.append(["  its index k", *(digits(index.imag) for index in indices)])
     page.gap()
     page.say("Modes as they float:", style="bold")
-    page.table(("", *(wavelength(at) for at in waves)), body, (_LABEL, *[_CELL] * len(waves)), numeric=1)
+    for row in rows:
+        grown = f", radii {digits(row.growth, 4)} times the dry ones" if row.growth > 1 else ""
+        page.item(f"{plain(row.name)}: {digits(100 * row.share)} % by number{grown}")
+        indices = [index for index in row.indices if index is not None]
+        body.append([f"{plain(row.name)}, n", *(digits(index.real, 5) for index in indices)])
+        body.append(["  k", *(digits(index.imag) for index in indices)])
+    page.table(("Index", *(wavelength(at) for at in waves)), body, (_LABEL, *[_CELL] * len(waves)), numeric=1)
 
 
 def _gaps(found: KindOptics, page: TextPage) -> None:
@@ -249,8 +250,8 @@ def _load(load: LoadOfKind, found: KindOptics, page: TextPage) -> None:
     span = found.kind.size_span
     if span is not None:
         page.say(
-            f"At the usual size, {_short(span.usual * 1e6)} µm; at another size the same reading stands for other values: "
-            "extinction per mass and per particle over the sizes are in the tables above.", indent=2,
+            f"At the usual size, {_short(span.usual * 1e6)} µm; at another size the same reading stands for other "
+            "values: extinction per mass and per particle over the sizes are in the tables above.", indent=2,
         )  # fmt: skip
     rows = reading_rows(load.equivalents)
     waves = list(dict.fromkeys(wave for row in rows for wave in row.cells if wave is not None))

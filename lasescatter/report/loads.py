@@ -18,6 +18,8 @@ from lasescatter.matter import (
     SizeShape,
 )
 from lasescatter.report.front import NAME
+from lasescatter.report.left_out import wavelengths
+from lasescatter.report.modes import mode_names, mode_rows
 from lasescatter.report.quantities import digits, small_length, trimmed, wavelength
 from lasescatter.report.readings import ReadingRow, reading_rows, reading_words
 from lasescatter.report.size_movement import movement_section
@@ -63,10 +65,16 @@ def load_sections(assessment: Assessment) -> list[Any]:
 def _facts(assessment: Assessment, load: Load, entries: list[ComponentSummary]) -> Any:
     facts = [("Kind", _kind(assessment, load))]
     if load.stand_in is None:
-        facts += [("Sizes, dry", _sizes(load.modes)), ("As they float", _floating(assessment.scene.air, entries))]
-        facts += [("Material, dry", _material(load)), ("Index as they float", _indices(assessment, load, entries))]
+        names = _names(assessment, load)
+        facts.append(("Sizes, dry", _sizes(load.modes, names)))
+        facts.append(("As they float", _floating(assessment.scene.air, entries)))
+        facts += [("Material, dry", _material(load, names))]
+        facts += [("Index as they float", _indices(assessment, load, entries, names))]
     else:
         facts.append(("Scattering matrix", _stand_in(load)))
+    named = _own_tables(assessment, load)
+    if named:
+        facts.append(("Own tables", f"{named}: printed at the end of the section on inputs"))
     facts.append(("Trust", _trust(load, entries)))
     rows = [[paragraph(name, "cell bold"), paragraph(told, "cell")] for name, told in facts]
     return ruled(rows, [30, 144], head_rows=0)
@@ -82,6 +90,31 @@ def _kind(assessment: Assessment, load: Load) -> str:
     origin = markup(load.kind_from, NAME) if load.kind_from else "the catalogue that comes with the program"
     told = f"<b>{markup(load.kind, NAME)}</b>, from {origin}"
     return f"{told}: {markup(str(what), 600)}" if what else told
+
+
+def _names(assessment: Assessment, load: Load) -> tuple[str, ...]:
+    """Names of the modes; "" for the one mode of a load that has no more."""
+    if len(load.modes) == 1:
+        return ("",)
+    own = assessment.scene.rules.get("particles", {}).get(load.kind)
+    # Sizes that the user states take the place of the kind's.
+    return mode_names(len(load.modes), own if isinstance(own, dict) else None)
+
+
+def _own_tables(assessment: Assessment, load: Load) -> str:
+    """Files of the user's own that a load names."""
+    entered = next((entry for entry in assessment.scene.source.get("particles", [])
+                    if isinstance(entry, dict) and entry.get("name") == load.name), {})  # fmt: skip
+    files = [name for name in assessment.scene.files if name in _texts(entered)]
+    return ", ".join(markup(name, 120) for name in files)
+
+
+def _texts(value: Any) -> list[str]:
+    """Every text in nested tables."""
+    if isinstance(value, str):
+        return [value]
+    inner = value.values() if isinstance(value, dict) else value if isinstance(value, list) else []
+    return [text for part in inner for text in _texts(part)]
 
 
 def _shape(shape: SizeShape) -> str:
@@ -111,10 +144,13 @@ def _radius(value: float) -> str:
     return small_length(float(f"{value:.4g}"), None)
 
 
-def _sizes(modes: tuple[SizeMode, ...]) -> str:
+def _sizes(modes: tuple[SizeMode, ...], names: tuple[str, ...]) -> str:
     if len(modes) == 1:
         return f"{_shape(modes[0].shape)} (by number)"
-    told = [f"{digits(100 * mode.weight)} % by number: {_shape(mode.shape)}" for mode in modes[:MOST_MODES]]
+    told = [
+        f"{markup(name, NAME)}: {digits(100 * mode.weight)} % by number: {_shape(mode.shape)}"
+        for name, mode in zip(names[:MOST_MODES], modes, strict=False)
+    ]
     if len(modes) > MOST_MODES:
         told.append(f"{len(modes) - MOST_MODES} more modes, in the inputs or the catalogue")
     return "<br/>".join(told)
@@ -134,13 +170,16 @@ def _grows(load: Load) -> bool:
     return any(material is not None and material.growth is not None for material in materials)
 
 
-def _material(load: Load) -> str:
-    found: list[Material] = []
-    for mode in load.modes:
+def _material(load: Load, names: tuple[str, ...]) -> str:
+    found: dict[Material, list[str]] = {}
+    for name, mode in zip(names, load.modes, strict=True):
         material = mode.material or load.material
-        if material is not None and material not in found:
-            found.append(material)
-    return "<br/>".join(_one_material(material) for material in found[:MOST_MODES]) or "not stated"
+        if material is not None:
+            found.setdefault(material, []).append(name)
+    told = [_one_material(material) for material in found]
+    if len(found) > 1:
+        told = [f"<b>{markup(', '.join(names), 200)}</b>: {text}" for names, text in zip(found.values(), told, strict=True)]
+    return "<br/>".join(told[:MOST_MODES]) or "not stated"
 
 
 def _one_material(material: Material) -> str:
@@ -167,9 +206,13 @@ def index_words(index: complex) -> str:
     return f"{trimmed(index.real)} + {trimmed(index.imag)}i" if index.imag else trimmed(index.real)
 
 
-def _indices(assessment: Assessment, load: Load, entries: list[ComponentSummary]) -> str:
+def _indices(
+    assessment: Assessment, load: Load, entries: list[ComponentSummary], names: tuple[str, ...]
+) -> str:
+    if len(load.modes) > 1:
+        return _indices_of_modes(assessment, load, entries, names)
     known = {entry.wavelength: entry for entry in entries}
-    waves = dict.fromkeys(line.wavelength for beam in assessment.scene.beams for line in beam.lines)
+    waves = wavelengths(assessment.scene)
     told = []
     for wave in waves:
         entry = known.get(wave)
@@ -177,8 +220,26 @@ def _indices(assessment: Assessment, load: Load, entries: list[ComponentSummary]
             told.append(f"{wavelength(wave)}: not established, this load is left out there")
         elif entry.index is not None:
             told.append(f"{wavelength(wave)}: {_rounded(entry.index)}")
-    first = " (first mode)" if len(load.modes) > 1 else ""
-    return "; ".join(told) + first if told else "not computed"
+    return "; ".join(told) if told else "not computed"
+
+
+def _indices_of_modes(
+    assessment: Assessment, load: Load, entries: list[ComponentSummary], names: tuple[str, ...]
+) -> str:
+    waves = [entry.wavelength for entry in entries]
+    told = []
+    for row in mode_rows(load.modes, load.material, assessment.scene.air, waves, names)[:MOST_MODES]:
+        grown = f", radii {digits(row.growth, 4)} times the dry ones" if row.growth > 1 else ""
+        known = [
+            f"{wavelength(wave)}: {_rounded(index)}"
+            for wave, index in zip(waves, row.indices, strict=True)
+            if index is not None
+        ]
+        told.append(f"<b>{markup(row.name, NAME)}</b>{grown}; {'; '.join(known)}" if known or grown else "")
+    out = [wavelength(wave) for wave in wavelengths(assessment.scene) if wave not in waves]
+    if out:
+        told.append(f"{', '.join(out)}: not established, this load is left out there")
+    return "<br/>".join(text for text in told if text) or "not computed"
 
 
 def _rounded(index: complex) -> str:

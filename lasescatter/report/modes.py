@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -59,4 +60,5 @@ def mode_names(count: int, data: Mapping[str, Any] | None = None) -> tuple[str, 
 
 
 def _plain(name: str) -> str:
-    return "".join(name.split()).casefold()
+    """A name as the catalogue compares it: case, spaces, hyphens, underscores and commas do not count."""
+    return re.sub(r"[\s\-_,()]+", "", name).casefold()

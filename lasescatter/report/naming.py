@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from lasescatter.report.quantities import line_label, wavelength
-from lasescatter.report.typography import printable, shortened
+from lasescatter.report.typography import both_ends, printable
 from lasescatter.scene import Line, Scene
 
-NAME = 60
-"""Longest name in a table or a heading; the full one is in the inputs."""
+NAME = 120
+"""Longest name in a table or a heading, cut in its middle; the full one is in the inputs."""
 
 
 def beam_letter(place: int) -> str:
@@ -36,7 +36,7 @@ def line_sign(scene: Scene, beam: str, line: str) -> str:
 
 def named_line(scene: Scene, beam: str, line: str, limit: int = NAME) -> str:
     """A beam line for a table: "A, 532 nm: alignment beam"; only the name is ever cut. Printable text."""
-    name = shortened(printable(line_label(beam, line)), limit)
+    name = both_ends(printable(line_label(beam, line)), limit)
     sign = line_sign(scene, beam, line)
     return f"{sign}: {name}" if sign else name
 
@@ -44,7 +44,7 @@ def named_line(scene: Scene, beam: str, line: str, limit: int = NAME) -> str:
 def named_beam(scene: Scene, beam: str, limit: int = NAME) -> str:
     """A beam by letter and name: "A: alignment beam". Printable text."""
     letter, _ = _found(scene, beam, "")
-    name = shortened(printable(beam), limit)
+    name = both_ends(printable(beam), limit)
     return f"{letter}: {name}" if letter else name
 
 

@@ -27,7 +27,7 @@ def component_section(assessment: Assessment, figure_size: tuple[float, float] |
         return [
             _air(assessment),
             *_gaps(assessment),
-            paragraph(f"<b>No scattered light is computed</b>{_of_whom(assessment)}: there are no values and no curves."),
+            paragraph(f"<b>No scattered light is computed</b>{_of_whom(assessment)}: no values and no curves."),
             *load_sections(assessment),
         ]
     rows: list[list[Any]] = [

@@ -12,7 +12,7 @@ from lasescatter.report.left_out import NOT_COMPUTED, all_left_out, lacking, lef
 from lasescatter.report.naming import named_beam, named_line
 from lasescatter.report.quantities import digits, duration, length, point, signed_interval, small_length, trimmed
 from lasescatter.report.styles import heads, number_cell, paragraph, ruled, words
-from lasescatter.report.typography import markup
+from lasescatter.report.typography import both_ends, markup, printable
 from lasescatter.scene import Scene
 
 FORMULAS = (
@@ -31,7 +31,7 @@ _LEAST_BLOCK = 110
 
 def observer_head(number: int, observer: ObserverOutcome, tail: str = "") -> Any:
     """The heading of one observer's block."""
-    return paragraph(f"Observer {number}: {markup(observer.name, NAME)}{tail}", "subsection")
+    return paragraph(f"Observer {number}: {markup(both_ends(printable(observer.name), NAME))}{tail}", "subsection")
 
 
 # ---------------------------------------------------------------- in the beam
@@ -238,7 +238,8 @@ def _line_row(line: LineExposure, scene: Scene, told: Callable[[str], str]) -> l
 def _pulse_row(line: LineExposure, told: Callable[[str], str]) -> list[Any]:
     return [
         paragraph("– per pulse, in J/m²; compared with stop light included", "cell"),
-        number_cell(told(digits(line.pulse_scattered))), "", number_cell(_with_stop(line, told)), "", digits(line.pulse_diffuse), "", digits(line.pulse_direct),
+        number_cell(told(digits(line.pulse_scattered))), "", number_cell(_with_stop(line, told)), "",
+        digits(line.pulse_diffuse), "", digits(line.pulse_direct),
     ]  # fmt: skip
 
 

@@ -213,9 +213,16 @@ def scale_words(scale: float) -> str:
     return f"{1 / scale:.10g} : 1"
 
 
-def ticks(low: float, high: float, wanted: int) -> list[float]:
-    """Round values between two ends, about as many as wanted."""
-    step = nice_at_least((high - low) / max(1, wanted))
+def ticks(low: float, high: float, wanted: int, least: int = 1) -> list[float]:
+    """Round values between two ends, about as many as wanted and no fewer than `least`."""
+    for share in range(max(1, wanted), max(1, wanted) + 20 * least):
+        found = _multiples(nice_at_least((high - low) / share), low, high)
+        if len(found) >= least:
+            break
+    return found
+
+
+def _multiples(step: float, low: float, high: float) -> list[float]:
     first = math.ceil(low / step - 1e-9)
     last = math.floor(high / step + 1e-9)
     return [step * i for i in range(first, last + 1)]

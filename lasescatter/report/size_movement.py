@@ -65,8 +65,8 @@ def size_request(load: Load, span: SizeSpan) -> str:
     sizes = size_range(span.low, span.high, "um")
     usual = trimmed(float(f"{span.usual * 1e6:.3g}"))
     return (
-        f"{_named(load.name, load.kind)}: size not stated ({plain(span.what)} is taken as {usual} um; it may be {sizes}): "
-        "state it as [particles.sizes], for example with mass_median_diameter and geometric_sd"
+        f"{_named(load.name, load.kind)}: size not stated ({plain(span.what)} is taken as {usual} um; it may be "
+        f"{sizes}): state it as [particles.sizes], for example with mass_median_diameter and geometric_sd"
     )
 
 
@@ -88,10 +88,10 @@ def movement_section(movement: SizeMovement, assessment: Assessment) -> list[Any
     if len(missing) == len(wavelengths(assessment.scene)):
         return [
             paragraph(
-                f"<b>State the size</b>, for when the load can be computed. The size of {markup(movement.kind, NAME)} is "
-                f"uncertain ({markup(movement.what)} of {size_range(movement.sizes[0], movement.sizes[-1])}) and the "
-                f"site file does not state it. The light of this load is <b>not computed</b> at {_waves(missing)}, so how "
-                f"it moves with the size is not known. Sizes from: {markup(movement.source, 300)}."
+                f"<b>State the size</b>, for when the load can be computed. The size of {markup(movement.kind, NAME)} "
+                f"is uncertain ({markup(movement.what)} of {size_range(movement.sizes[0], movement.sizes[-1])}) and the "
+                f"site file does not state it. The light of this load is <b>not computed</b> at {_waves(missing)}, so "
+                f"how it moves with the size is not known. Sizes from: {markup(movement.source, 300)}."
             )
         ]
     moved = (

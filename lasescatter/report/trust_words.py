@@ -16,6 +16,9 @@ _MARKS = {
 
 def trust_word(trust: Trust) -> str:
     """The mark and its factor: "weak, factor 3"."""
+    if trust.mark == "entered" and trust.factor > 1:
+        # No doubt about the user's own data: without F12 nothing is known of the light's polarization.
+        return f"{_MARKS[trust.mark]}, no F12 given"
     return f"{_MARKS[trust.mark]}, factor {trimmed(trust.factor)}"
 
 

@@ -97,6 +97,14 @@ def shortened(text: str, limit: int) -> str:
     return text if len(text) <= limit else text[: max(1, limit - 1)] + "…"
 
 
+def both_ends(text: str, limit: int) -> str:
+    """Text cut to `limit` characters in its middle: names often differ at their end only."""
+    if len(text) <= limit:
+        return text
+    tail = (limit - 3) // 2
+    return f"{text[: limit - 3 - tail].rstrip()} … {text[len(text) - tail :].lstrip()}"
+
+
 def abridged(text: str, limit: int) -> str:
     """Text cut to `limit` characters, with its true length where it was cut."""
     if len(text) <= limit:

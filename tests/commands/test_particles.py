@@ -21,9 +21,9 @@ def own(tmp_path: Path) -> Path:
     folder = tmp_path / "rules of mine"
     (folder / "particles").mkdir(parents=True)
     text = (SHIPPED / "particles" / "glycol_haze.toml").read_text(encoding="utf-8")
-    replaced = re.sub(r'mass_median_diameter = "[^"]+"', 'mass_median_diameter = "1 um"', text)
-    replaced = re.sub(r'(?m)^usual = "[^"]+"', 'usual = "1 um"', replaced)
-    assert replaced.count('"1 um"') == 2
+    replaced = re.sub(r'mass_median_diameter = "[^"]+"', 'mass_median_diameter = "1.1 um"', text)
+    replaced = re.sub(r'(?m)^usual = "[^"]+"', 'usual = "1.1 um"', replaced)
+    assert replaced.count('"1.1 um"') == 2
     (folder / "particles" / "glycol_haze.toml").write_text(replaced, encoding="utf-8")
     added = re.sub(r'(?m)^name = ".*"', 'name = "haze of hall four"', text)
     added = re.sub(r"(?m)^also_called = .*\n", "", added)
@@ -64,7 +64,7 @@ def test_list_with_rules_of_ones_own(own: Path):
     shipped = {kind["name"]: kind for kind in json.loads(run("particles", "list", "--json").stdout)}
     kinds = {kind["name"]: kind for kind in json.loads(run("particles", "list", "--json", "--rules", own).stdout)}
     assert set(kinds) - set(shipped) == {"haze of hall four"}
-    assert kinds["glycol haze"]["size"]["usual_m"] == 1e-6 != shipped["glycol haze"]["size"]["usual_m"]
+    assert kinds["glycol haze"]["size"]["usual_m"] == pytest.approx(1.1e-6, rel=1e-12, abs=0) != shipped["glycol haze"]["size"]["usual_m"]
 
 
 # ------------------------------------------------------------------ show
@@ -169,7 +169,8 @@ def test_an_extinction_needs_no_wavelength_of_its_own_where_there_is_but_one():
 def test_check_asks_for_a_size_that_is_uncertain(tmp_path: Path):
     done = run("check", hazed(tmp_path))
     (asked,) = [line for line in done.stdout.splitlines() if "size not stated" in line]
-    assert asked.startswith("test haze (glycol haze): size not stated: state it as [particles.sizes]")
+    assert asked.startswith("test haze (glycol haze): size not stated (median diameter by mass is taken as")
+    assert max(map(len, done.stdout.splitlines())) <= 80
     assert json.loads(run("check", tmp_path / "bay.toml", "--json").stdout)["size_not_stated"] == ["test haze"]
     assert run("check", tmp_path / "bay.toml", "--quiet").stdout == ""
     sizes = '[particles.sizes]\nshape = "lognormal"\nmedian_radius = "0.3 um"\ngeometric_sd = 1.5\n'
@@ -182,8 +183,12 @@ def test_assess_warns_of_a_size_that_is_uncertain(tmp_path: Path):
     done = run("assess", site, "--out", tmp_path / "out")
     assert done.returncode == 0
     assert re.fullmatch(
-        r"test haze \(glycol haze\): size not stated; light moves by [\d.]+ to [\d.]+ over 0.5 to 1.5 um\n", done.stderr
+        r"test haze \(glycol haze\): size not stated; light is [\d.]+ to [\d.]+ times that of the usual size over a "
+        r"median diameter by mass of 0.5 to 1.5 um, which the bounds carry",
+        " ".join(done.stderr.split()),
     )
+    assert max(map(len, done.stderr.splitlines())) <= 80
+    assert "bounds include factor 3 for test haze (weak)" in done.stdout
     table = (tmp_path / "out" / "bay.csv").read_bytes()
     quiet = run("assess", site, "--out", tmp_path / "out2", "--quiet")
     assert quiet.stderr == "" and (tmp_path / "out2" / "bay.csv").read_bytes() == table

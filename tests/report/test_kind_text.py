@@ -87,7 +87,7 @@ def test_list_has_a_row_for_each_kind() -> None:
     text = shown(print_list, [HAZE, SOOT])
     assert text.splitlines()[0].split()[:3] == ["Kind", "Trust", "Answers"]
     # Between 400 and 600 nm one node of the index is unconfirmed; the water reaches farther than the index.
-    assert cells(text, "glycol haze") == ["weak", "400-1100", "400-600", "0.5-1.5"]
+    assert cells(text, "glycol haze") == ["weak", "400-1100", "400-600", "0.5-1.5", "mass"]
     assert cells(text, "soot[U+001B][U+202E]") == ["non-spheres", "any"]
     assert "non-spheres 3; weak 3" in " ".join(text.split())
 
@@ -165,7 +165,10 @@ def test_equivalent_readings_of_a_load() -> None:
     text = shown(print_kind, FOUND)
     block = text[text.index("Load: mass of particles 8 mg/m³, without water taken up") :]
     block = block[: block.index("\n\n")]
-    assert block.splitlines()[1].split() == ["Instruments", "would", "read", "at", "any", "532", "nm", "1064", "nm"]
+    assert "At the usual size, 1 µm; at another size" in block
+    head = block[block.index("Instruments") :].splitlines()
+    assert head[0].split() == ["Instruments", "would", "read", "any", "532", "nm", "1064", "nm"]
+    assert head[1].split() == ["wavelength"]
     assert cells(block, "extinction coefficient [1/m]") == ["0.300", "0.100"]
     assert cells(block, "transmittance over 10 m") == ["0.0498", "0.368"]
     assert cells(block, "number of particles [1/cm³]") == ["5400"]

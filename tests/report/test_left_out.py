@@ -98,8 +98,8 @@ def test_no_page_tells_light_that_is_not_computed_as_zero(nothing: Assessment) -
     exposures = section(flat, 3, "Exposure of each observer", "Comparison with the limits")
     assert "0±0" not in flat
     assert exposures.count("taunotcomputed") == len(nothing.observers) and ";tau=" not in exposures
-    # Stated, without F12 and compared, for three lines and their sum.
-    assert exposures.count("notcomputed") == len(nothing.observers) * (3 * 4 + 2 + 1)
+    # In the text; stated, without F12 and compared, for three lines and their sum; per pulse; tau; whose light it is.
+    assert exposures.count("notcomputed") == 1 + len(nothing.observers) * (3 * 4 + 1 + 1 + 1)
     assert exposures.count(listed) == len(nothing.observers)
     particles = section(flat, 6, "Light on air and particles", "Hand check")
     assert joined("No scattered light is computed") in particles

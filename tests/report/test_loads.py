@@ -49,7 +49,7 @@ def everything() -> str:
     [
         # The kind and what it is, with everything a user may type shown as typed.
         "Load: test haze",
-        "glycol & <haze>, from the catalogue: Droplets of <glycol> & water that a hazer makes",
+        "glycol & <haze>, from the catalogue that comes with the program: Droplets of <glycol> & water that a",
         "described by the user: sizes and index",
         "described by the user: a stand-in for the scattering matrix, without sizes or mass",
         # Sizes, dry and as they float.
@@ -62,7 +62,10 @@ def everything() -> str:
         "density 1060 kg/m³; index from the table “glycol <mix>”, 400 nm to 1100 nm (invented for this test)",
         "density not stated",
         "532 nm: 1.4100 + 1.00e-6i; 1064 nm: 1.4100 + 1.00e-6i; 650 nm: 1.4100 + 1.00e-6i",
-        "532 nm: not established, this load is left out there",
+        "532 nm, 1064 nm, 650 nm: not established, this load is left out there",
+        # Each mode of a mixture by itself, and what it is made of.
+        "mode 1: 70.0 % by number: lognormal",
+        "mode 1: density 1800 kg/m³; index 1.53 + 0.008i at every wavelength; takes up no water",
         # Stand-ins.
         "Henyey–Greenstein with asymmetry 0.8, named by the user",
         "measured, file matrix <a>.csv: F11 at 3 angles; F11 was divided by 1.2500 to bring its mean",
@@ -129,8 +132,9 @@ def test_light_that_does_not_arrive_moves_nowhere(result: Assessment) -> None:
     assert extremes(dark) is None
     made = replace(result, size_movements=(dark,), components=(), observers=result.observers[:1])
     assert joined("no scattered light of it arrives") in printed(made)
-    assert size_warnings(made) == ["test haze (glycol & <haze>): size not stated; no light of it arrives over a mass median "
-                                   "diameter of 0.5 to 1.5 um"]  # fmt: skip
+    assert size_warnings(made) == [
+        "test haze (glycol & <haze>): size not stated; no light of it arrives over a mass median diameter of 0.5 to 1.5 um"
+    ]
 
 
 def test_warning_of_one_line(result: Assessment) -> None:
@@ -163,7 +167,7 @@ def test_every_reading_is_printed_under_its_wavelength(result: Assessment, text:
     for row in rows:
         shown = " ".join(row.cells[wave] for wave in row.cells)
         assert joined(f"{row.name} {row.unit} {shown}") in flat, row.name
-    assert joined("Reading Unit at any 532 nm 1064 nm 650 nm") in flat
+    assert joined("Reading Unit any wavelength 532 nm 1064 nm 650 nm") in flat
 
 
 def test_rows_of_readings_agree_with_one_another() -> None:
