@@ -72,15 +72,12 @@ def _judged(number: int, observer: ObserverOutcome, assessment: Assessment) -> l
     scene = assessment.scene
     waves = {(line.beam, line.line): line.wavelength for line in observer.lines}
 
+    heading = (standing(observer, lacking(assessment)), observer.governing)
     in_rows = {reason for hazard in observer.hazards for reason in hazard.reasons}
     story: list[Any] = [
         CondPageBreak(_LEAST_BLOCK),
         observer_head(number, observer, f" – {verdict_words(observer.verdict)}"),
-        paragraph(
-            "; ".join(markup(text, 900) for text in (standing(observer, lacking(assessment)), observer.governing) if text)
-            + ".",
-            "note",
-        ),
+        paragraph("; ".join(markup(text, 900) for text in heading if text) + ".", "note"),
     ]
     elsewhere = [reason for reason in observer.reasons if reason not in in_rows]
     story += [words(reason, "item", 900) for reason in grouped(elsewhere)]

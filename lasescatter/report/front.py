@@ -31,7 +31,7 @@ FRONT_LINES = 6
 FRONT_OBSERVERS = 8
 """Observers in the table of the first page; where there are more, a full table follows."""
 BRIEF = 240
-"""Characters of reasons in the table of the first page; a third of it where there are many observers."""
+"""Characters of reasons in the table of the first page; half of it where there are many observers."""
 FEW_OBSERVERS = 4
 NAME = 120
 """Longest name in a table or a heading."""
@@ -217,7 +217,7 @@ def _verdict_table(numbered: list[tuple[int, ObserverOutcome]], missing: str) ->
     rows: list[list[Any]] = [
         heads("No.", "Observer", "Verdict", "Greatest summed ratio to its limit", "Reasons in brief")
     ]
-    room = BRIEF if len(numbered) <= FEW_OBSERVERS else BRIEF // 3
+    room = BRIEF if len(numbered) <= FEW_OBSERVERS else BRIEF // 2
     for number, observer in numbered:
         rows.append(
             [

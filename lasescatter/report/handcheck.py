@@ -117,9 +117,7 @@ def blocks(assessment: Assessment) -> list[Any]:
     missing = lacking(assessment)
     if missing:
         story.append(
-            paragraph(
-                f"<b>Not computed</b>, so in no block and in no tau of this section: {markup(missing)}."
-            )
+            paragraph(f"<b>Not computed</b>, so in no block and in no tau of this section: {markup(missing)}.")
         )
     scattered = stops = 0
     for number, observer in enumerate(assessment.observers, start=1):

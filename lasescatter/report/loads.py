@@ -178,7 +178,8 @@ def _material(load: Load, names: tuple[str, ...]) -> str:
             found.setdefault(material, []).append(name)
     told = [_one_material(material) for material in found]
     if len(found) > 1:
-        told = [f"<b>{markup(', '.join(names), 200)}</b>: {text}" for names, text in zip(found.values(), told, strict=True)]
+        named = [markup(", ".join(these), 200) for these in found.values()]
+        told = [f"<b>{these}</b>: {text}" for these, text in zip(named, told, strict=True)]
     return "<br/>".join(told[:MOST_MODES]) or "not stated"
 
 
@@ -206,9 +207,7 @@ def index_words(index: complex) -> str:
     return f"{trimmed(index.real)} + {trimmed(index.imag)}i" if index.imag else trimmed(index.real)
 
 
-def _indices(
-    assessment: Assessment, load: Load, entries: list[ComponentSummary], names: tuple[str, ...]
-) -> str:
+def _indices(assessment: Assessment, load: Load, entries: list[ComponentSummary], names: tuple[str, ...]) -> str:
     if len(load.modes) > 1:
         return _indices_of_modes(assessment, load, entries, names)
     known = {entry.wavelength: entry for entry in entries}

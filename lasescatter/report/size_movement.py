@@ -88,8 +88,9 @@ def movement_section(movement: SizeMovement, assessment: Assessment) -> list[Any
     if len(missing) == len(wavelengths(assessment.scene)):
         return [
             paragraph(
-                f"<b>State the size</b>, for when the load can be computed. The size of {markup(movement.kind, NAME)} "
-                f"is uncertain ({markup(movement.what)} of {size_range(movement.sizes[0], movement.sizes[-1])}) and the "
+                f"<b>State the size</b>, for when the load can be computed. The size of "
+                f"{markup(movement.kind, NAME)} is uncertain ({markup(movement.what)} of "
+                f"{size_range(movement.sizes[0], movement.sizes[-1])}) and the "
                 f"site file does not state it. The light of this load is <b>not computed</b> at {_waves(missing)}, so "
                 f"how it moves with the size is not known. Sizes from: {markup(movement.source, 300)}."
             )

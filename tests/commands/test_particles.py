@@ -10,6 +10,7 @@ from pathlib import Path
 
 import pytest
 from commands.calls import ROOT, SAMPLE, run
+from pypdf import PdfReader
 
 SHIPPED = ROOT / "rules"
 HAZE = ("particles", "show", "glycol haze", "--wavelength", "532 nm")
@@ -64,7 +65,32 @@ def test_list_with_rules_of_ones_own(own: Path):
     shipped = {kind["name"]: kind for kind in json.loads(run("particles", "list", "--json").stdout)}
     kinds = {kind["name"]: kind for kind in json.loads(run("particles", "list", "--json", "--rules", own).stdout)}
     assert set(kinds) - set(shipped) == {"haze of hall four"}
-    assert kinds["glycol haze"]["size"]["usual_m"] == pytest.approx(1.1e-6, rel=1e-12, abs=0) != shipped["glycol haze"]["size"]["usual_m"]
+    usual = [found["glycol haze"]["size"]["usual_m"] for found in (kinds, shipped)]
+    assert usual[0] == pytest.approx(1.1e-6, rel=1e-12, abs=0) and usual[1] < 1e-6
+    assert {name: kind["origin"] for name, kind in kinds.items() if kind["origin"] != "shipped"} == {
+        "haze of hall four": "added",
+        "glycol haze": "replacing",
+    }
+    listed = " ".join(run("particles", "list", "--rules", own).stdout.split())
+    assert "haze of hall four (own)" not in shipped and listed.count("(own") == 2
+    shown = run("particles", "show", "haze of hall four", "-w", "532 nm", "--rules", own)
+    assert "From: particles/mine.toml of the user's own rules folder, beside" in " ".join(shown.stdout.split())
+
+
+def test_show_takes_532_nm_where_no_wavelength_is_given():
+    done, asked = run(*HAZE[:3]), run(*HAZE[:3], "--wavelength", "532 nm")
+    assert done.returncode == 0 and done.stdout == asked.stdout
+    assert done.stderr == "no --wavelength was given: 532 nm is shown\n" and asked.stderr == ""
+
+
+def test_modes_of_a_mixture_are_shown_one_by_one():
+    done = run("particles", "show", "urban air", "-w", "532 nm", "--humidity", "70 %")
+    flat = " ".join(done.stdout.split())
+    # Hess, Koepke & Schult 1998, table 4: urban air is 1.5, 28000 and 130000 particles per cm³ of these three.
+    for name, number in (("insoluble particles", 1.5), ("water-soluble particles", 28000), ("ambient soot", 130000)):
+        share = float(re.search(rf"- {name}: (\S+) % by number", flat)[1])
+        assert share == pytest.approx(100 * number / 158001.5, rel=5e-3, abs=0)
+        assert f"{name}, n" in flat
 
 
 # ------------------------------------------------------------------ show
@@ -125,7 +151,6 @@ def test_nothing_is_drawn_where_nothing_is_known(tmp_path: Path):
     [
         (["hazze", "-w", "532 nm"], 'KIND: there is no kind "hazze". Perhaps "glycol haze"'),
         (["\x1b[31mqqqq", "-w", "532 nm"], "there is no kind"),
-        (["glycol haze"], "Missing option"),
         (["glycol haze", "-w", "532"], '--wavelength: "532" has no unit'),
         (["glycol haze", "-w", "532 mm"], "outside what is accepted for a wavelength"),
         (["glycol haze", "-w", "532 nm", "--humidity", "60"], '--humidity: "60" has no unit'),
@@ -200,8 +225,14 @@ def test_rules_of_ones_own_serve_a_site(own: Path, tmp_path: Path):
     assert run("check", site, "--rules", own).returncode == 0
     done = run("assess", site, "--rules", own, "--out", tmp_path / "out", "--quiet")
     assert done.returncode == 0, done.stderr
+    assert done.stderr == ""
     record = json.loads((tmp_path / "out" / "bay.json").read_text(encoding="utf-8"))
     assert "haze of hall four" in json.dumps(record["rules"])
+    told = '"haze of hall four" is from particles/mine.toml of the user\'s own rules folder'
+    for call in (["check", site], ["assess", site, "--out", tmp_path / "out"]):
+        assert told in " ".join(run(*call, "--rules", own).stderr.split())
+    first = PdfReader(tmp_path / "out" / "bay.pdf").pages[0].extract_text()
+    assert told in " ".join(first.split())
     piped = run("check", "-", "--rules", own, stdin=site.read_text(encoding="utf-8"))
     assert piped.returncode == 0, piped.stderr
 

@@ -209,6 +209,12 @@ def test_observers_over_one_another_share_a_label() -> None:
     assert {"1 seated", "2 standing", "3 apart"} <= side
 
 
+def test_an_axis_has_two_heights_at_least() -> None:
+    for low, high in ((-0.17, 1.37), (0.0, 1.0), (-9.0, 99.0), (0.4, 1.9), (-0.3, 2.4)):
+        found = ticks(low, high, 2, 2)
+        assert len(found) >= 2 and all(low <= value <= high for value in found), (low, high)
+
+
 def test_elevation_shows_height_zero() -> None:
     for beams in ((UP,), BEAMS, (LONG_WAY,)):
         view = views(site_with(*beams))["elevation"]

@@ -132,9 +132,11 @@ def test_light_that_does_not_arrive_moves_nowhere(result: Assessment) -> None:
     assert extremes(dark) is None
     made = replace(result, size_movements=(dark,), components=(), observers=result.observers[:1])
     assert joined("no scattered light of it arrives") in printed(made)
-    assert size_warnings(made) == [
-        "test haze (glycol & <haze>): size not stated; no light of it arrives over a mass median diameter of 0.5 to 1.5 um"
-    ]
+    (told,) = size_warnings(made)
+    assert told == (
+        "test haze (glycol & <haze>): size not stated; no light of it arrives over a mass median diameter of 0.5 to "
+        "1.5 um"
+    )
 
 
 def test_warning_of_one_line(result: Assessment) -> None:

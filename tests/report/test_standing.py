@@ -68,8 +68,8 @@ def test_headlines(result: Assessment) -> None:
 def test_signs_are_never_cut(result: Assessment) -> None:
     scene = result.scene
     assert named_line(scene, "alignment beam", "alignment beam") == "A, 532 nm: alignment beam"
-    assert named_line(scene, scene.beams[1].name, "pointer", 24) == "B, 650 nm: ranging <i>& pulses / p…"
-    assert named_beam(scene, "alignment beam", 4) == "A: ali…"
+    assert named_line(scene, scene.beams[1].name, "pointer", 24) == "B, 650 nm: ranging <i> … / pointer"
+    assert named_beam(scene, "alignment beam", 9) == "A: ali … eam"
     assert named_line(scene, "unknown", "unknown") == "unknown"
     assert leg_sign(scene, scene.beams[1].name, 2) == "B2"
 
