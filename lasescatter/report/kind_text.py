@@ -14,16 +14,15 @@ from lasescatter.assessment.kind_optics import (
     Reach,
     reach_of,
 )
+from lasescatter.assessment.modes import mode_names, mode_rows
 from lasescatter.matter import Kind
 from lasescatter.report.loads import air_words
-from lasescatter.report.modes import mode_names, mode_rows
 from lasescatter.report.own_kinds import ORIGIN_WORDS
 from lasescatter.report.quantities import digits, trimmed, wavelength
 from lasescatter.report.readings import reading_rows, reading_words
 from lasescatter.report.text_page import TextPage
 from lasescatter.report.trust_words import trust_effect, trust_word
 from lasescatter.report.typography import plain
-from lasescatter.site.kinds import origin_text
 
 if TYPE_CHECKING:
     from rich.console import Console
@@ -130,7 +129,7 @@ def _about(found: KindOptics, page: TextPage) -> None:
     page.say(plain(kind.name), style="bold")
     page.say(plain(kind.what))
     if kind.origin != "shipped":
-        page.say(f"From: {plain(origin_text(kind))}", indent=2)
+        page.say(f"From: {plain(kind.origin_words)}", indent=2)
     if kind.also_called:
         page.say(f"Also called: {plain(', '.join(kind.also_called))}", indent=2)
     page.say(f"Wavelengths: {reach_words(reach_of(kind))}", indent=2)

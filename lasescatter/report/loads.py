@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
+from lasescatter.assessment.modes import mode_names, mode_rows
 from lasescatter.assessment.outcome import Assessment, ComponentSummary
 from lasescatter.matter import (
     HenyeyGreenstein,
@@ -19,7 +20,6 @@ from lasescatter.matter import (
 )
 from lasescatter.report.front import NAME
 from lasescatter.report.left_out import wavelengths
-from lasescatter.report.modes import mode_names, mode_rows
 from lasescatter.report.quantities import digits, small_length, trimmed, wavelength
 from lasescatter.report.readings import ReadingRow, reading_rows, reading_words
 from lasescatter.report.size_movement import movement_section

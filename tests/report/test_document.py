@@ -25,6 +25,7 @@ from lasescatter.assessment.outcome import Assessment
 from lasescatter.cautions import cautions, not_covered
 from lasescatter.limits.verdict import margin
 from lasescatter.report.document import SECTIONS, pdf_bytes, write_pdf
+from lasescatter.report.handcheck import height_note
 from lasescatter.report.quantities import digits, signed_interval
 from lasescatter.report.typography import printable
 
@@ -277,6 +278,20 @@ def test_an_observer_inside_the_beam_is_told_which_b_was_used(result: Assessment
     told = "b used: never less than the beam's radius; the observer is 2.00e-4 m from the leg's line"
     assert told in "\n".join(pages)
     assert float(hand_check_blocks(pages)[1]["b"]) == 1.5e-3
+
+
+def test_a_beta_that_is_not_that_of_the_table_says_its_height(result: Assessment) -> None:
+    check = result.observers[0].hand_checks[0]
+    assert height_note(result, check) == ""
+    listed = next(c.scattering for c in result.components if c.name == check.component and c.wavelength == 532e-9)
+    assert check.scattering == pytest.approx(listed, rel=1e-12, abs=0)
+    # The first leg of the alignment beam runs level at 1.2 m; the second rises from 1.2 to 1.8 m over its length.
+    assert height_note(result, replace(check, scattering=0.99 * listed)).startswith(
+        f"beta_sca at the element at theta_mid, z = 1.200 m; {digits(listed, 5)} 1/m in the table"
+    )
+    length = math.hypot(3.0, 0.6)
+    risen = replace(check, scattering=0.99 * listed, leg=2, s_mid=length / 2)
+    assert "z = 1.500 m" in height_note(result, risen)
 
 
 def test_printed_b_table_gives_the_printed_difference(pages: list[str]) -> None:

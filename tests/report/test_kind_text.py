@@ -250,6 +250,25 @@ def test_drawn_values_are_those_of_the_kind() -> None:
         np.testing.assert_allclose(lower.lines[0].get_ydata(), expected, rtol=1e-12, atol=0)
 
 
+def test_a_wavelength_outside_the_data_is_named_under_the_curves(tmp_path: Path) -> None:
+    with rc_context({**RC, "svg.fonttype": "none"}):
+        figure = draw_curves([Curve("532 nm", 0, 0, *phase_curve())], "a kind", 2, "not established: 10600 nm")
+    texts = [text.get_text() for axes in figure.axes for text in axes.texts]
+    assert texts[-2:] == ["2 more in the tables only", "not established: 10600 nm"]
+
+
+def phase_curve() -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    return np.asarray(ANGLES), *(np.asarray(part) for part in phase("test haze", 532e-9))
+
+
+def test_a_limit_for_breathing_is_no_typical_load() -> None:
+    limit = TypicalLoad("breathing limit, peak", "50 mg/m^3", "mass", "no source", "M")
+    kind = replace(HAZE, typical=(*HAZE.typical, limit))
+    text = shown(print_kind, replace(FOUND, kind=kind))
+    assert "Typical: a beam just seen: mass = 0.5 mg/m^3" in text
+    assert "For comparison: breathing limit, peak: mass = 50 mg/m^3" in text
+
+
 def test_an_unknown_f12_is_not_drawn_as_none() -> None:
     entry = at(532e-9)
     known = Curve("a", 0, 0, entry.angles, entry.phase, entry.phase_12)

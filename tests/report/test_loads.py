@@ -241,6 +241,11 @@ def test_trust_in_words() -> None:
     assert not re.search(r"\b(safe|pass|ok)\b", trust_effect(WEAK), re.IGNORECASE)
 
 
+def test_own_matrix_without_f12_is_no_doubt_about_its_data() -> None:
+    assert trust_word(Trust("entered", 2.0, "linear light may be up to twice")) == "entered by the user, no F12 given"
+    assert trust_word(ENTERED) == "entered by the user, factor 1"
+
+
 def test_air_in_words() -> None:
     assert air_words(Air()) == "the same everywhere, 20 °C, 1013.25 hPa, relative humidity 0 %"
 
