@@ -194,3 +194,13 @@ class Kind:
     """The file as read, for the record."""
     indices: dict = field(repr=False, compare=False, default_factory=dict)
     """The index files it uses, as read, by name."""
+
+    @property
+    def origin_words(self) -> str:
+        """Where a kind of the user's own is from; "" for a shipped one."""
+        if self.origin == "shipped":
+            return ""
+        beside = (
+            "in place of the shipped kind of that name" if self.origin == "replacing" else "beside the shipped kinds"
+        )
+        return f"{'/'.join(self.file.split('/')[-2:])} of the user's own rules folder, {beside}"

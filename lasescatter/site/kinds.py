@@ -85,14 +85,6 @@ class KindName(Marker):
         return {"type": "string", "minLength": 1}
 
 
-def origin_text(kind: Kind) -> str:
-    """Where a kind of the user's own is from; "" for a shipped one."""
-    if kind.origin == "shipped":
-        return ""
-    beside = "in place of the shipped kind of that name" if kind.origin == "replacing" else "beside the shipped kinds"
-    return f"{'/'.join(kind.file.split('/')[-2:])} of the user's own rules folder, {beside}"
-
-
 def shape_text(shape: SizeShape) -> str:
     """A size distribution in words, SI."""
     if isinstance(shape, Lognormal):

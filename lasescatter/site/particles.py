@@ -23,7 +23,7 @@ from lasescatter.site.faults import Fault, Place, quoted, refusal
 from lasescatter.site.fields import Fraction, Number, Quantity, RefractiveIndex, Text
 from lasescatter.site.files import FromFile, TableFile
 from lasescatter.site.index_csv import index_table
-from lasescatter.site.kinds import KindName, NamedKind, growth_text, index_text, mode_text, origin_text
+from lasescatter.site.kinds import KindName, NamedKind, growth_text, index_text, mode_text
 from lasescatter.site.ledger import Ledger
 from lasescatter.site.load import LoadTable
 from lasescatter.site.matrix_csv import measured_matrix
@@ -166,7 +166,7 @@ class ParticlesTable(Table):
             ledger.took((*place, "index"), f"{index_text(material.index)} (from the kind)")
         if density is None and material.density is not None and any(mode.material is None for mode in modes):
             ledger.took((*place, "density"), f"{material.density:.9g} kg/m³ (from the kind)")
-        return replace(load, modes=modes, material=material, kind=kind.name, kind_from=origin_text(kind),
+        return replace(load, modes=modes, material=material, kind=kind.name, kind_from=kind.origin_words,
                        trust=trust, size_span=span)  # fmt: skip
 
     def _own_index(self) -> Index | None:

@@ -57,7 +57,7 @@ def test_what_an_extinction_weighs(case):
     load = Load("smoke", (SizeMode(Lognormal(1e-7, 2.0)),), Material(1.5 + 0j, 1.0), reading_of(given), Everywhere(),
                 None, "smoke")  # fmt: skip
     optics = SimpleNamespace(extinction=given["mass_extinction"])
-    amount = concentration(load, SimpleNamespace(dry_mass=1.0, mass=1.0), lambda _: optics, AT)
+    amount = concentration(load, SimpleNamespace(dry_mass=1.0, mass=1.0, modes=load.modes), lambda _: optics, AT)
     assert amount.mass * 1e6 == of(case)
 
 

@@ -184,8 +184,10 @@ def test_air_too_humid_for_what_takes_up_water_is_told_at_reading():
 
 def test_weights_of_cut_modes_are_shares_of_what_is_left():
     """Of two modes alike but for a cut at the median, equal shares: the cut one stands for twice its share whole."""
-    text = ('shape = "lognormal"\nmedian_diameter = "0.6 um"\ngeometric_sd = 1.4\nsmallest = "0.1 um"\nweight = 0.75',
-            'shape = "lognormal"\nmedian_diameter = "0.6 um"\ngeometric_sd = 1.4\nsmallest = "0.3 um"\nweight = 0.5')
+    text = (
+        'shape = "lognormal"\nmedian_diameter = "0.6 um"\ngeometric_sd = 1.4\nsmallest = "0.1 um"\nweight = 0.75',
+        'shape = "lognormal"\nmedian_diameter = "0.6 um"\ngeometric_sd = 1.4\nsmallest = "0.3 um"\nweight = 0.5',
+    )
     other = ('mass_median_diameter = "3 um"\ngeometric_sd = 1.5\nlargest = "4 um"\nweight = 0.25',
              'median_diameter = "0.6 um"\ngeometric_sd = 1.4\nweight = 0.5')  # fmt: skip
     load = next(load for load in scene_with(text, other).loads if load.name == "sieved drops")
