@@ -130,7 +130,8 @@ def exposure_section(assessment: Assessment) -> list[Any]:
             "the whole beam in view, on a surface that faces each element (E2); beside it the same with F12 left "
             "out, as if the light were unpolarized. <b>Compared</b>: the greatest over every part of the load "
             "that may be present, since a load that thins may let more light through; no loss in the load is "
-            "credited to stop and direct light. ± is the numerical error alone. 1&nbsp;W/m²&nbsp;= 0.1&nbsp;mW/cm²."
+            "credited to stop and direct light. ± is the numerical error alone; “±&nbsp;&lt;” stands where it "
+            "is below the last digit printed. 1&nbsp;W/m²&nbsp;= 0.1&nbsp;mW/cm²."
         ),
         paragraph(
             "<b>tau</b> is the largest extinction optical thickness that the scattered light of an observer meets: "
@@ -205,6 +206,8 @@ def _raised(observer: ObserverOutcome) -> float:
     return max((p[ORIGINS[1]] / p["scattered"] for p in found if p.get(ORIGINS[1]) and p["scattered"]), default=0.0)
 
 
+MORE = 1.01
+"""A doubted thickness that is larger by less is not told."""
 PART = " (part)"
 """Beside a value that lacks some of the light."""
 
@@ -212,7 +215,10 @@ PART = " (part)"
 def _thickness(observer: ObserverOutcome, missing: str, none_at_all: bool) -> str:
     if none_at_all:
         return f"tau {NOT_COMPUTED}"
-    return f"tau = {digits(observer.optical_thickness)}{' without what is not computed' if missing else ''}"
+    told = f"tau = {digits(observer.optical_thickness)}{' without what is not computed' if missing else ''}"
+    if observer.thickness_doubted > MORE * max(observer.optical_thickness, observer.thickness_within_reach):
+        told += f" (up to {digits(observer.thickness_doubted)} within reach and with the loads' extinction as doubted)"
+    return told
 
 
 def _computed(assessment: Assessment, wavelength: float) -> Callable[[str], str]:
