@@ -55,12 +55,13 @@ KINDS = Assumption(
     name="Particles of a kind are as the catalogue describes them",
     direction="either",
     size="by the factor printed with each kind (checked 1.5, weak 3, non-spheres 3), which the upper bounds carry",
-    source="the catalogue's entry, its sources and their marks",
+    source="the factors: modelling choice; the kind itself: the catalogue's entry, its sources and their marks",
 )
 OWN_PARTICLES = Assumption(
     name="Sizes, index or scattering matrix entered by the user are right",
     direction="either",
-    size="not quantified: no factor is put on the user's own data",
+    size="not quantified: no factor is put on the user's own data, but 2 on a matrix without F12 and 3 on a table of "
+    "sizes that ends in its midst",
     source="entered by the user",
 )
 CUT_SIZES = Assumption(
