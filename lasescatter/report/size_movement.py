@@ -98,7 +98,7 @@ def movement_section(movement: SizeMovement, assessment: Assessment) -> list[Any
     moved = (
         "no scattered light of it arrives"
         if found is None
-        else f"scattered light moves from {digits(found[0])} to {digits(found[1])} of that at the usual size"
+        else f"its scattered light moves from {digits(found[0])} to {digits(found[1])} of that at the usual size"
     )
     story: list[Any] = [
         paragraph(
@@ -133,7 +133,10 @@ def movement_section(movement: SizeMovement, assessment: Assessment) -> list[Any
         )
     widths = [*[14.0] * len(sizes), 25.0, *([17.0] if movement.factor else [])]
     story.append(ruled(rows, [8, 166 - sum(widths), *widths], numeric=tuple(range(2, 2 + len(widths)))))
-    notes = [f"All scattered light as compared, all lines together, relative to the usual {markup(movement.what)}."]
+    notes = [
+        "This load's own share of the scattered light as compared, on the beam line on which it moves most, relative to "
+        f"the usual {markup(movement.what)}."
+    ]
     if movement.factor:
         notes.append(
             "Factor in bounds: times which the upper bound of a ratio takes the light of this load, for trust and for "
