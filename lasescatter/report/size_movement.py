@@ -134,8 +134,8 @@ def movement_section(movement: SizeMovement, assessment: Assessment) -> list[Any
     widths = [*[14.0] * len(sizes), 25.0, *([17.0] if movement.factor else [])]
     story.append(ruled(rows, [8, 166 - sum(widths), *widths], numeric=tuple(range(2, 2 + len(widths)))))
     notes = [
-        "This load's own share of the scattered light as compared, on the beam line on which it moves most, relative to "
-        f"the usual {markup(movement.what)}."
+        "This load's own share of the scattered light as compared, on the beam line on which it moves most, relative "
+        f"to the usual {markup(movement.what)}."
     ]
     if movement.factor:
         notes.append(
