@@ -23,6 +23,9 @@ WATER_DENSITY = 997.05
 _MOLAR_MASS = 0.01801528
 _GAS_CONSTANT = 8.314462618
 
+# Water per dry volume that is lost in rounding.
+_NOTHING = 1e-18
+
 MOST_HUMIDITY = 0.99
 """Above it small errors of the humidity change the size without bound, and drops may form."""
 
@@ -91,7 +94,7 @@ def growth_factor(
     _check_humidity(relative_humidity, MOST_HUMIDITY)
     # Without curvature the law is solved for the water per dry volume; with it there is less.
     most = kappa * relative_humidity / (1 - relative_humidity)
-    if not curvature:
+    if not curvature or most < _NOTHING:
         return float((1 + most) ** (1 / 3))
     shrink = _kelvin_diameter(temperature) / dry_diameter
     aim = log(relative_humidity)

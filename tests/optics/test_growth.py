@@ -10,7 +10,7 @@ import math
 import miepython
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from lasescatter.matter import (
@@ -61,6 +61,7 @@ def test_the_factor_solves_the_balance(d, kappa, rh, t):
 
 
 @settings(max_examples=300, deadline=None)
+@example(d=6e-5, kappa=1.0, rh=5e-324, t=250.0, more=2.0, damper=0.0)
 @given(d=diameter, kappa=kappas, rh=humidity, t=temperature, more=st.floats(1.0, 2.0), damper=st.floats(0, 1))
 def test_growth_rises_with_humidity_kappa_and_size(d, kappa, rh, t, more, damper):
     factor = growth_factor(d, kappa, rh, t)
